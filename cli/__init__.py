@@ -1,0 +1,1 @@
+"""The `upstroke` command: parse, call, render. It holds no science."""

@@ -1,0 +1,1 @@
+"""A pressure-area trace becomes numbers, each with its uncertainty."""

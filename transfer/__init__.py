@@ -1,0 +1,1 @@
+"""A dipping log becomes a verdict, stroke by stroke."""
