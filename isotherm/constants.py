@@ -8,8 +8,16 @@ from __future__ import annotations
 
 from typing import Final
 
-__all__ = ["AVOGADRO", "BOLTZMANN", "BOLTZMANN_MN_NM", "ELEMENTARY_CHARGE", "EPSILON_0", "FARADAY",
-           "GAS_CONSTANT", "ZERO_CELSIUS"]
+__all__ = [
+    "AVOGADRO",
+    "BOLTZMANN",
+    "BOLTZMANN_MN_NM",
+    "ELEMENTARY_CHARGE",
+    "EPSILON_0",
+    "FARADAY",
+    "GAS_CONSTANT",
+    "ZERO_CELSIUS",
+]
 
 # Exact by definition of the SI (2019).
 AVOGADRO: Final = 6.02214076e23  # 1/mol
