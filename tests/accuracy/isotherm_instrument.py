@@ -5,10 +5,10 @@ from __future__ import annotations
 from dataclasses import dataclass, replace
 
 import numpy as np
+from isotherm_truth import Film, FloatArray, Truth
 
 from isotherm.source import Source
 from isotherm.trace import Trace
-from isotherm_truth import Film, FloatArray, Truth
 
 __all__ = ["Instrument", "draw_instrument", "record", "record_sparse"]
 
@@ -114,10 +114,7 @@ def record(film: Film, tool: Instrument, rng: np.random.Generator) -> tuple[Trac
     trough = area * per_molecule + tool.jitter * rng.normal(0.0, 1.0, n)
     trough = np.round(np.round(trough / tool.area_step) * tool.area_step, 6)
     time = np.round(np.cumsum(1.0 + 0.01 * rng.normal(0.0, 1.0, n)), 2)
-    if tool.cycles or tool.pauses or tool.with_time:
-        times = time
-    else:
-        times = None
+    times = time if tool.cycles or tool.pauses or tool.with_time else None
     trace = Trace(
         area=trough / per_molecule,
         pressure=pressure,

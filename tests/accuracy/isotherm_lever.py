@@ -11,9 +11,6 @@ from __future__ import annotations
 import math
 
 import numpy as np
-from scipy.ndimage import gaussian_filter1d
-from scipy.special import expit
-
 from isotherm_pieces import KT, after_collapse, volmer
 from isotherm_recipe import Recipe
 from isotherm_truth import (
@@ -23,6 +20,8 @@ from isotherm_truth import (
     finish_truth,
     limiting_area,
 )
+from scipy.ndimage import gaussian_filter1d
+from scipy.special import expit
 
 __all__ = ["gas_film", "lever_film"]
 

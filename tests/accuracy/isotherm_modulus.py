@@ -3,10 +3,9 @@
 from __future__ import annotations
 
 import math
+from itertools import pairwise
 
 import numpy as np
-from scipy.special import expit, ndtr
-
 from isotherm_recipe import Recipe
 from isotherm_truth import (
     Film,
@@ -15,6 +14,7 @@ from isotherm_truth import (
     finish_truth,
     limiting_area,
 )
+from scipy.special import expit, ndtr
 
 __all__ = ["modulus_film"]
 
@@ -98,7 +98,7 @@ def modulus_film(recipe: Recipe, rng: np.random.Generator) -> Film:
     dx = x[1] - x[0]
     pressure = np.concatenate([[0.0], np.cumsum(0.5 * (modulus[1:] + modulus[:-1]) * dx)])
     # Each branch extended: its own profile integrated from the middle of its segment.
-    centres = [0.5 * starts[0], *(0.5 * (a + b) for a, b in zip(starts, starts[1:], strict=False))]
+    centres = [0.5 * starts[0], *(0.5 * (a + b) for a, b in pairwise(starts))]
     branches = []
     for profile, centre in zip(profiles, centres, strict=True):
         whole = np.concatenate([[0.0], np.cumsum(0.5 * (profile[1:] + profile[:-1]) * dx)])

@@ -6,8 +6,6 @@ import math
 from collections.abc import Callable
 
 import numpy as np
-from scipy.optimize import brentq
-
 from isotherm_recipe import Recipe
 from isotherm_rounding import FORMS, excess
 from isotherm_truth import (
@@ -17,6 +15,7 @@ from isotherm_truth import (
     finish_truth,
     limiting_area,
 )
+from scipy.optimize import brentq
 
 __all__ = ["after_collapse", "condensed", "fluid", "pieces_film", "volmer"]
 

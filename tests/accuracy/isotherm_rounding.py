@@ -7,9 +7,8 @@ either side, extended, still meet at the knee itself.
 from __future__ import annotations
 
 import numpy as np
-from scipy.special import ndtr
-
 from isotherm_truth import FloatArray
+from scipy.special import ndtr
 
 __all__ = ["FORMS", "excess"]
 

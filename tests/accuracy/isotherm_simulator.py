@@ -7,14 +7,14 @@ records it. Even seeds are for tuning, odd seeds for reporting, and nobody tunes
 from __future__ import annotations
 
 import numpy as np
-
-from isotherm.trace import Trace
 from isotherm_instrument import draw_instrument, record, record_sparse
 from isotherm_lever import gas_film, lever_film
 from isotherm_modulus import modulus_film
 from isotherm_pieces import pieces_film
 from isotherm_recipe import FILM_FAMILIES, draw_recipe
 from isotherm_truth import Film, Truth
+
+from isotherm.trace import Trace
 
 __all__ = ["FAMILIES", "family_of", "make_film", "simulate"]
 
