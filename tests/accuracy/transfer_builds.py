@@ -1,0 +1,103 @@
+"""Draw what is built: substrate, ratio of every stroke, deposition type. No physics, no time here."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from transfer_truth import Body
+
+__all__ = ["Build", "decidable_type", "draw_body", "draw_build"]
+
+DROP = 0.8  # a "20 % drop": later strokes take this part of what the earlier ones took
+KINDS = ("Y", "X", "Z", "XY", "fading", "drop", "peel", "wetting")
+KIND_SHARES = (0.30, 0.10, 0.10, 0.10, 0.10, 0.12, 0.06, 0.12)
+
+
+@dataclass(frozen=True)
+class Build:
+    """ratios : (n,) TR intended for each stroke; first : direction of stroke 1; drop_after : or None."""
+
+    kind: str
+    type: str
+    first: str
+    ratios: NDArray[np.float64]
+    drop_after: int | None
+    steady: bool
+
+    def direction(self, index: int) -> str:
+        """Direction of stroke `index` (from 0)."""
+        other = "up" if self.first == "down" else "down"
+        return self.first if index % 2 == 0 else other
+
+
+def draw_body(rng: np.random.Generator) -> Body:
+    """Plate of 10–40 mm or rod of 6–18 mm, sizes in 0.1 mm as a caliper gives them."""
+    if rng.random() < 0.25:
+        return Body("rod", diameter=round(float(rng.uniform(6.0, 18.0)), 1))
+    return Body(
+        "plate",
+        width=round(float(rng.uniform(10.0, 40.0)), 1),
+        thickness=round(float(rng.uniform(0.3, 3.0)), 1),
+    )
+
+
+def _count(rng: np.random.Generator, kind: str) -> int:
+    if kind == "drop":
+        return int(rng.integers(10, 33))
+    if kind == "peel":
+        return int(rng.integers(8, 25))
+    if kind == "fading":
+        return int(rng.integers(6, 33))
+    share = rng.random()
+    if share < 0.15:
+        return int(rng.integers(1, 4))
+    return int(rng.integers(4, 13)) if share < 0.65 else int(rng.integers(13, 33))
+
+
+def draw_build(rng: np.random.Generator) -> Build:
+    """Draw kind, number of strokes, first direction and the TR of each stroke."""
+    kind = str(rng.choice(KINDS, p=KIND_SHARES))
+    count = _count(rng, kind)
+    first = "up" if rng.random() < 0.4 else "down"
+    scatter = float(rng.choice([0.005, 0.01, 0.02]))
+    down_level, up_level = rng.uniform(0.9, 1.03, 2)
+    if kind in ("fading", "drop"):
+        up_level = down_level * rng.uniform(0.98, 1.02)
+    if kind == "X":
+        up_level = 0.0
+    elif kind == "Z":
+        down_level = 0.0
+    elif kind == "XY":
+        weak = float(rng.uniform(0.3, 0.7))
+        down_level, up_level = (down_level, weak) if rng.random() < 0.6 else (weak, up_level)
+    down = np.array([(i % 2 == 0) == (first == "down") for i in range(count)])
+    ratios = np.where(down, down_level, up_level) + scatter * rng.standard_normal(count)
+    drop_after = None
+    if kind == "fading":
+        ratios *= np.linspace(1.0, float(rng.uniform(0.5, 0.8)), count)
+    elif kind == "drop":
+        drop_after = count // 2 + int(rng.integers(-1, 2))
+        ratios[drop_after:] *= DROP
+    elif kind == "peel":
+        ratios[int(rng.integers(3, count))] = float(rng.uniform(-0.9, -0.3))
+    elif kind == "wetting":
+        ratios[0] = 0.005 * float(rng.standard_normal())
+    type_ = kind if kind in ("X", "Z", "XY") else "Y"
+    steady = kind == "Y"
+    return Build(kind, type_, first, ratios, drop_after, steady)
+
+
+def decidable_type(build: Build, judgeable: list[bool]) -> str | None:
+    """Type the judgeable strokes can tell, or None.
+
+    A first stroke that takes nothing says nothing (the substrate may be wetting), and a type needs a
+    stroke in each direction besides it.
+    """
+    seen = set()
+    for index, usable in enumerate(judgeable):
+        if usable and not (index == 0 and abs(build.ratios[0]) < 0.1):
+            seen.add(build.direction(index))
+    return build.type if seen == {"down", "up"} else None
