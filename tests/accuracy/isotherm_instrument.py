@@ -113,7 +113,9 @@ def record(film: Film, tool: Instrument, rng: np.random.Generator) -> tuple[Trac
     per_molecule = tool.start_area / film.area[0]  # cm^2 of trough per nm^2 of molecule
     trough = area * per_molecule + tool.jitter * rng.normal(0.0, 1.0, n)
     trough = np.round(np.round(trough / tool.area_step) * tool.area_step, 6)
-    time = np.round(np.cumsum(1.0 + 0.01 * rng.normal(0.0, 1.0, n)), 2)
+    time: FloatArray = np.asarray(
+        np.round(np.cumsum(1.0 + 0.01 * rng.normal(0.0, 1.0, n)), 2), dtype=np.float64
+    )
     times = time if tool.cycles or tool.pauses or tool.with_time else None
     trace = Trace(
         area=trough / per_molecule,

@@ -113,7 +113,7 @@ def argmax_script(trace: Trace) -> Branch:
 def _beside(
     area: FloatArray, pressure: FloatArray, knee: float, far: float
 ) -> np.polynomial.Polynomial | None:
-    """A parabola over the part of a stretch nearest `knee`, its rounding and spikes left out."""
+    """A cubic (few rows: a parabola) beside `knee`, its rounding and the spikes left out."""
     reach = far - knee
     way = (area - knee) / reach
     for share in (0.45, 0.9):
@@ -123,11 +123,12 @@ def _beside(
     else:
         return None
     a, p = area[inside], pressure[inside]
-    fit = np.polynomial.Polynomial.fit(a, p, 2)
+    degree = 3 if a.size > 60 else 2
+    fit = np.polynomial.Polynomial.fit(a, p, degree)
     for _ in range(2):
         rest = np.abs(p - fit(a))
         keep = rest < 4 * 1.4826 * np.median(rest) + 1e-9
-        fit = np.polynomial.Polynomial.fit(a[keep], p[keep], 2)
+        fit = np.polynomial.Polynomial.fit(a[keep], p[keep], degree)
     return fit
 
 
@@ -181,7 +182,6 @@ def told_fit(trace: Trace, truth: Truth) -> Branch:
         reach = 0.02 * place
         near = np.abs(area - place) < reach
         fit = np.polynomial.Polynomial.fit(area[near], pressure[near] - level, 2)
-        roots = fit.roots()
-        roots = roots[np.isreal(roots)].real
+        roots = np.asarray([r.real for r in fit.roots() if np.isreal(r)], dtype=np.float64)
         areas[level] = float(roots[np.argmin(np.abs(roots - place))]) if roots.size else None
     return _branch(offset, lift_off, transitions, collapse, float(pressure.max()), limiting, areas)

@@ -21,8 +21,9 @@ if __name__ == "__main__":  # run as a script: the packages lie two folders up
 
 from isotherm_failures import plot_trace
 from isotherm_marks import Marks, mark_trace
+from isotherm_recipe import FILM_FAMILIES
 from isotherm_rivals import argmax_script, told_fit
-from isotherm_simulator import FAMILIES, FILM_FAMILIES, family_of, simulate
+from isotherm_simulator import FAMILIES, family_of, simulate
 from isotherm_tables import summarise, table
 from isotherm_truth import Truth
 
