@@ -1,0 +1,112 @@
+"""`upstroke isotherm`: a pressure-area trace becomes numbers."""
+
+from __future__ import annotations
+
+from typing import TYPE_CHECKING, Annotated, Any
+
+import typer
+
+from cli.options import (
+    AtOption,
+    ColumnOption,
+    CsvOption,
+    FigureOption,
+    ForceOption,
+    JsonOption,
+    SheetOption,
+    TracesArgument,
+    parse_numbers,
+)
+
+if TYPE_CHECKING:
+    from isotherm.result import IsothermResult
+
+__all__ = ["app"]
+
+app = typer.Typer(add_completion=False, rich_markup_mode=None)
+
+
+@app.command()
+def isotherm(
+    traces: TracesArgument,
+    sheet: SheetOption = None,
+    at: AtOption = "10,20,30,40",
+    column: ColumnOption = None,
+    json: JsonOption = None,
+    csv: CsvOption = None,
+    figure: FigureOption = None,
+    force: ForceOption = False,
+    keep_going: Annotated[
+        bool,
+        typer.Option(
+            "--keep-going", help="Of several traces, report the bad ones and do the rest."
+        ),
+    ] = False,
+) -> None:
+    """Areas, phases, transitions, collapse and modulus of a compression.
+
+    Reads text exports of any layout, finds compressions and expansions, and reports each feature with
+    its uncertainty. Several traces give a list.
+
+    \b
+    Examples:
+      upstroke isotherm run.txt --sheet run.toml
+      upstroke isotherm run.txt -s run.toml --json run.json --figure run.svg
+      upstroke isotherm digitised.csv --column molecular_area=1:A^2 --column pressure=2
+    """
+    from cli.outputs import OutputChoice, Renderers, plan_outputs
+
+    pressures = parse_numbers(at, option="--at")
+    inputs = [*traces, *([sheet] if sheet else [])]
+    plan = plan_outputs(OutputChoice(json, csv, figure, force=force), inputs)
+
+    from cli.inputs import load_sheet, sheet_settings
+    from cli.several import run_each
+    from isotherm.analysis import analyse
+    from isotherm.trace_read import read_trace
+
+    run_sheet = load_sheet(sheet, column)
+    settings = {"command": "isotherm", "at": list(pressures), **sheet_settings(sheet, column)}
+    done = run_each(
+        traces,
+        lambda path: analyse(read_trace(path, run_sheet), at=pressures),
+        keep_going=keep_going,
+    )
+    plan.deliver(
+        Renderers(
+            text=lambda: _text(done.results),
+            json=lambda: _json(done.results, settings, as_list=len(traces) > 1),
+            csv=lambda: _csv(done.results),
+            figure=lambda suffix: _figure(done.results, suffix),
+        )
+    )
+    if done.failed:
+        raise typer.Exit(1)
+
+
+def _text(results: list[IsothermResult]) -> str:
+    from cli.isotherm_text import isotherm_text
+    from cli.terminal import terminal_width
+
+    width = terminal_width()
+    return f"\n{'─' * width}\n".join(isotherm_text(result, width) for result in results)
+
+
+def _json(results: list[IsothermResult], settings: dict[str, Any], *, as_list: bool) -> bytes:
+    from cli.serialise import json_bytes, with_provenance
+
+    payloads = [with_provenance(result.to_json(), settings) for result in results]
+    return json_bytes(payloads if as_list else payloads[0])
+
+
+def _csv(results: list[IsothermResult]) -> bytes:
+    from cli.isotherm_csv import isotherm_csv
+
+    return isotherm_csv(results)
+
+
+def _figure(results: list[IsothermResult], suffix: str) -> bytes:
+    from isotherm.figures import isotherm_figure
+    from isotherm.figures_style import figure_bytes
+
+    return figure_bytes(isotherm_figure(*results), suffix)
