@@ -67,12 +67,13 @@ def plot_trace(
     low.set_xlabel("area per molecule, nm²")
     low.set_ylabel("modulus, mN/m")
     top.set_ylabel("surface pressure, mN/m")
-    about = ", ".join(f"{k} {v:g}" for k, v in truth.settings.items() if isinstance(v, int | float))
+    about = ", ".join(f"{k} {v:.3g}" for k, v in truth.settings.items() if not isinstance(v, str))
     top.set_title(
-        f"{marks.family} {marks.seed} ({marks.generator}): {about}\n"
+        f"{marks.family} {marks.seed} ({marks.generator})\n{about}\n"
         f"true: {marks.expected}   found: {marks.error or marks.called}",
-        fontsize=8,
+        fontsize=7,
     )
+    figure.tight_layout()
     path = folder / f"{asked}_{marks.seed}.png"
     figure.savefig(path, dpi=70)
     plt.close(figure)

@@ -136,7 +136,7 @@ def lever_film(recipe: Recipe, rng: np.random.Generator) -> Film:
         )
         later = after_collapse(rng, recipe.collapse, last, recipe.top)(fine)
         pressure = np.where(fine < last, np.minimum(pressure, later), pressure)
-    smear = 10 ** float(rng.uniform(-3.4, -2.4))
+    smear = min(recipe.softness, 2.0) * 10 ** float(rng.uniform(-3.4, -2.4))
     step = abs(x[1] - x[0])
     pressure = _smear(pressure, smear / step)
     truth = finish_truth(

@@ -86,7 +86,8 @@ def modulus_film(recipe: Recipe, rng: np.random.Generator) -> Film:
     steps = []
     for i, (name, length, _, _) in enumerate(segments):
         before = starts[i] - (starts[i - 1] if i else 0.0)
-        width = min(10 ** float(rng.uniform(-3.5, -2.2)), 0.05 * min(before, length))
+        width = recipe.softness * 10 ** float(rng.uniform(-3.5, -2.2))
+        width = min(width, 0.05 * min(recipe.softness, 1.5) * min(before, length))
         if name == "collapse":
             width *= 0.5
         if name == "lift_off" and recipe.fluid_top is not None:

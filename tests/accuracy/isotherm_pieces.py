@@ -128,6 +128,7 @@ def _round(
     knees: list[float],
     names: list[str],
     edges: list[float],
+    soft: float,
 ) -> FloatArray:
     """The pressure (m,) over `area` (m,): sharp pieces plus the rounding of every knee."""
     index = np.searchsorted(-np.array(knees), -area)
@@ -137,7 +138,8 @@ def _round(
     for i, knee in enumerate(knees):
         before, after = (edges[i] - knee), (knee - edges[i + 2])
         shorter = min(before, after)
-        width = min(knee * 10 ** float(rng.uniform(-3.3, -1.95)), 0.1 * shorter)
+        width = soft * knee * 10 ** float(rng.uniform(-3.3, -1.95))
+        width = min(width, 0.1 * min(soft, 1.5) * shorter)
         if names[i] == "collapse":
             width *= 0.5
         step = _slope(curves[i + 1], knee) - _slope(curves[i], knee)
@@ -186,7 +188,7 @@ def pieces_film(recipe: Recipe, rng: np.random.Generator) -> Film:
     area = np.linspace(recipe.start, last, POINTS)
     places = [k.area for k in knees.values()]
     edges = [recipe.start, *places, last]
-    pressure = _round(rng, area, curves, places, list(knees), edges)
+    pressure = _round(rng, area, curves, places, list(knees), edges, recipe.softness)
     truth = finish_truth(
         area,
         pressure,

@@ -35,6 +35,7 @@ class Recipe:
     top : pressure of collapse, or where the trace stops when `collapse` is None.
     fluid_top : area where a fluid film reaches `top`.
     overrun : how far, in ln area, the barrier goes on after collapse.
+    softness : factor on the rounding of every knee.
     """
 
     family: str
@@ -48,6 +49,7 @@ class Recipe:
     kink_pressure: float | None = None
     fluid_top: float | None = None
     overrun: float = 0.1
+    softness: float = 1.0
 
     @property
     def fluid(self) -> bool:

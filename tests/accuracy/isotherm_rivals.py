@@ -136,7 +136,7 @@ def told_fit(trace: Trace, truth: Truth) -> Branch:
     """Fit a quadratic to each true stretch and cross neighbours; areas from the nearest stretch."""
     area, pressure = _first_compression(trace)
     offset = 0.0
-    if truth.knees:
+    if truth.knees and truth.foot < area[0]:
         base = pressure[area > truth.knees[0] + 0.2 * (area[0] - truth.knees[0])]
         offset = float(np.median(base)) if base.size else 0.0
     pressure = pressure - offset
@@ -146,7 +146,7 @@ def told_fit(trace: Trace, truth: Truth) -> Branch:
         i = edges.index(knee)
         one = _beside(area, pressure, knee, edges[i - 1])
         two = _beside(area, pressure, knee, edges[i + 1])
-        if i == 1:  # the gas side is the zero already taken off
+        if i == 1 and truth.foot < area[0]:  # the gas side is the zero already taken off
             one = np.polynomial.Polynomial([0.0])
         if one is None or two is None:
             return _p(knee, float(np.interp(knee, area[::-1], pressure[::-1])))
