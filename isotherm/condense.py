@@ -1,0 +1,154 @@
+"""A branch of any length becomes a few hundred nodes, evenly spaced along the curve."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import Final
+
+import numpy as np
+from numpy.typing import NDArray
+
+from isotherm.branches import MAD_TO_SIGMA, quantum
+
+__all__ = ["Nodes", "condense", "despike", "row_noise"]
+
+FloatArray = NDArray[np.float64]
+
+SKELETON: Final = 320  # blocks that measure the curve's length
+NODES: Final = 256  # nodes the search works on
+SPIKE_SIGMAS: Final = 6.0  # a row this far from the median of its neighbours is a spike
+SPIKE_WINDOW: Final = 7  # rows; isolates spikes up to three rows long
+DENSE: Final = 100  # rows from which spikes can be told from shape
+
+
+@dataclass(frozen=True)
+class Nodes:
+    """Means of consecutive rows, largest area first. All (m,).
+
+    x : -ln(A / nm^2), so that dΠ/dx is the compression modulus. area nm^2, pressure mN/m (as recorded).
+    count : rows in each node. sigma : standard uncertainty of the mean pressure, mN/m.
+    noise : scatter of one row, mN/m. first : (m,) index of each node's first row among the branch's rows.
+    """
+
+    x: FloatArray
+    area: FloatArray
+    pressure: FloatArray
+    count: FloatArray
+    sigma: FloatArray
+    noise: float
+    first: NDArray[np.int64]
+
+
+def row_noise(area: FloatArray, pressure: FloatArray) -> float:
+    """Scatter of one pressure reading about the curve, mN/m, from (n,) area nm^2 and pressure mN/m.
+
+    Each point is compared with the straight line through its two neighbours in travel; the MAD makes
+    knees and spikes harmless. Never below the rounding error of a quantised reading.
+    """
+    if pressure.size < 5:
+        return 0.0
+    left, mid, right = area[:-2], area[1:-1], area[2:]
+    gap = right - left
+    safe = np.where(np.abs(gap) > 0, gap, 1.0)
+    share = np.clip(np.where(np.abs(gap) > 0, (mid - left) / safe, 0.5), 0.0, 1.0)
+    if pressure.size > DENSE:
+        share = np.full_like(share, 0.5)  # in a dense run the area's own jitter would mislead
+    residual = pressure[1:-1] - (1.0 - share) * pressure[:-2] - share * pressure[2:]
+    scale = np.sqrt(1.0 + share**2 + (1.0 - share) ** 2)
+    sigma = MAD_TO_SIGMA * float(np.median(np.abs(residual / scale)))
+    return max(sigma, quantum(pressure) / np.sqrt(12.0))
+
+
+def despike(pressure: FloatArray, noise: float) -> NDArray[np.bool_]:
+    """Mark isolated outliers of (n,) pressure, mN/m: True where a row is a spike.
+
+    A spike stands out from the median of its neighbourhood by `SPIKE_SIGMAS` and by more than the
+    curve itself covers there; only runs of up to three rows qualify. Sparse runs are never despiked.
+    """
+    n = pressure.size
+    spikes = np.zeros(n, dtype=np.bool_)
+    if n < DENSE:
+        return spikes
+    suspects = _suspects(pressure, noise)
+    if suspects.size == 0:
+        return spikes
+    half = SPIKE_WINDOW // 2 + 1
+    offsets = np.concatenate([np.arange(-half - 2, -2), np.arange(3, half + 3)])
+    index = np.clip(suspects[:, None] + offsets, 0, n - 1)
+    around = pressure[index]
+    middle = np.median(around, axis=1)
+    # what the curve covers across the window: median of the right side minus median of the left
+    travel = np.abs(np.median(around[:, half:], axis=1) - np.median(around[:, :half], axis=1))
+    spikes[suspects] = np.abs(pressure[suspects] - middle) > SPIKE_SIGMAS * noise + travel
+    return spikes
+
+
+def _suspects(pressure: FloatArray, noise: float) -> NDArray[np.int64]:
+    """Rows whose step to either neighbour is unusually large; cheap, linear, over-complete."""
+    step = np.abs(np.diff(pressure))
+    usual = float(np.median(step))
+    large = step > 4.0 * noise + 2.0 * usual
+    mark = np.zeros(pressure.size, dtype=np.bool_)
+    mark[:-1] |= large
+    mark[1:] |= large
+    # the middle of a spike three rows long may have small steps to both sides
+    mark[1:-1] |= mark[:-2] & mark[2:]
+    return np.flatnonzero(mark)
+
+
+def condense(area: FloatArray, pressure: FloatArray, noise: float, nodes: int = NODES) -> Nodes:
+    """Average consecutive rows into at most `nodes` nodes, evenly spaced along the curve's length.
+
+    Parameters
+    ----------
+    area, pressure : (n,) nm^2 and mN/m, in the order of compression.
+    noise : scatter of one row, mN/m.
+
+    Notes
+    -----
+    The length is measured in the plane of x and Π, each divided by its range, on `SKELETON` equal
+    blocks, so that steep and flat stretches both get nodes; its noise part is taken out. A mean of a
+    straight stretch lies on it, so condensing loses no information there.
+    """
+    n = area.size
+    if n <= nodes:
+        starts = np.arange(n)
+    else:
+        starts = _even_length_starts(area, pressure, noise, nodes)
+    counts = np.diff(np.append(starts, n)).astype(np.float64)
+    mean_area = np.add.reduceat(area, starts) / counts
+    mean_pressure = np.add.reduceat(pressure, starts) / counts
+    order = np.argsort(-mean_area, kind="stable")
+    mean_area, mean_pressure, counts, starts = (
+        mean_area[order],
+        mean_pressure[order],
+        counts[order],
+        starts[order],
+    )
+    step = quantum(pressure)
+    crossed = 1.0 + np.abs(np.gradient(mean_pressure)) / step if step > 0 else 1.0
+    rounding = step / np.sqrt(12.0) / np.sqrt(crossed) if step > 2.0 * noise else 0.0
+    sigma = np.sqrt(noise**2 / counts + np.square(rounding))
+    return Nodes(-np.log(mean_area), mean_area, mean_pressure, counts, sigma, noise, starts)
+
+
+def _even_length_starts(
+    area: FloatArray, pressure: FloatArray, noise: float, nodes: int
+) -> NDArray[np.int64]:
+    n = area.size
+    edges = np.unique(np.linspace(0, n, min(n, SKELETON) + 1).astype(np.int64))
+    counts = np.diff(edges)
+    block_x = -np.log(np.maximum(np.add.reduceat(area, edges[:-1]) / counts, 1e-300))
+    block_p = np.add.reduceat(pressure, edges[:-1]) / counts
+    span_x = max(float(np.ptp(block_x)), 1e-12)
+    span_p = max(float(np.ptp(block_p)), 1e-12)
+    dx = np.diff(block_x) / span_x
+    variance = 2.0 * noise**2 / float(np.mean(counts))
+    dp2 = np.maximum(np.diff(block_p) ** 2 - variance, 0.0) / span_p**2
+    centres = 0.5 * (edges[:-1] + edges[1:])
+    # the even share keeps a minimum of nodes wherever rows are
+    length = np.cumsum(np.sqrt(dx**2 + dp2) + 0.25 / dx.size)
+    position = np.concatenate([[0.0], length])
+    rows = np.interp(np.linspace(0.0, position[-1], nodes + 1), position, centres)
+    rows[0], rows[-1] = 0, n
+    return np.unique(rows.astype(np.int64))[:-1]

@@ -1,0 +1,308 @@
+"""Numbers read off a fitted branch: knees, limiting area, modulus, areas at pressures."""
+
+from __future__ import annotations
+
+import math
+from dataclasses import dataclass
+from typing import Final
+
+import numpy as np
+from numpy.typing import NDArray
+
+from isotherm.condense import Nodes
+from isotherm.knee_model import KneeModel
+from isotherm.modulus import LocalFit
+from isotherm.phases import Reading, phase_name
+from isotherm.quantity import Quantity
+from isotherm.result import AreaAt, Collapse, MaxModulus, Phase, Point, Tangent, Transition
+
+__all__ = [
+    "BranchView",
+    "area_at",
+    "collapse",
+    "gradual_lift_off",
+    "highest_pressure",
+    "knee_point",
+    "limiting_area",
+    "modulus_max",
+    "phases",
+    "transitions",
+]
+
+FloatArray = NDArray[np.float64]
+
+LIFT_OFF_SIGMAS: Final = 3.0  # a gradual lift-off: pressure above zero by this many σ of one row
+ROUNDED: Final = 2.0  # widths next to a knee that belong to neither neighbour
+
+
+@dataclass(frozen=True)
+class BranchView:
+    """Everything the features are read from.
+
+    zero : offset to subtract (mN/m). relative_u : of the area scale. pressure_u : of the pressure scale.
+    """
+
+    nodes: Nodes
+    model: KneeModel
+    reading: Reading
+    local: LocalFit
+    zero: Quantity
+    relative_u: float | None
+    pressure_u: float | None
+
+    @property
+    def offset(self) -> float:
+        return self.zero.value
+
+    def area(self, x: float, u_x: float, u_systematic_x: float = 0.0) -> Quantity:
+        """Area per molecule at x = -ln A, nm^2, from the random and systematic u of x."""
+        value = math.exp(-x)
+        systematic = value * math.hypot(self.relative_u or 0.0, u_systematic_x)
+        return Quantity.combine(value, "nm^2", u_random=value * u_x, u_systematic=systematic)
+
+    def pressure(self, value: float, u_random: float) -> Quantity:
+        """A recorded pressure less the zero, mN/m, with the zero's and the scale's uncertainty."""
+        return Quantity.combine(
+            value - self.offset,
+            "mN/m",
+            u_random=math.hypot(u_random, self.zero.u_random or 0.0),
+            u_systematic=math.hypot(self.zero.u_systematic or 0.0, self.pressure_u or 0.0),
+        )
+
+
+def knee_point(view: BranchView, knee: int) -> Point:
+    """Area and pressure of a knee: where its two neighbours meet when extended."""
+    model = view.model
+    index = model.coefficients.size + knee
+    u_x = math.sqrt(max(float(model.covariance[index, index]), 0.0))
+    value, gradient = model.knee_pressure(knee)
+    variance = float(gradient @ model.covariance @ gradient)
+    return Point(
+        view.area(float(model.knots[knee]), u_x),
+        view.pressure(value, math.sqrt(max(variance, 0.0))),
+    )
+
+
+def transitions(view: BranchView) -> tuple[Transition, ...]:
+    """Coexistences and kinks, in the order of compression."""
+    reading = view.reading
+    found: list[tuple[int, Transition]] = []
+    for onset, end in reading.coexistences:
+        found.append(
+            (
+                onset,
+                Transition(
+                    "coexistence",
+                    onset=knee_point(view, onset),
+                    end=None if end is None else knee_point(view, end),
+                ),
+            )
+        )
+    for kink in reading.kinks:
+        found.append((kink, Transition("kink", at=knee_point(view, kink))))
+    return tuple(transition for _, transition in sorted(found, key=lambda pair: pair[0]))
+
+
+def collapse(view: BranchView) -> Collapse | None:
+    """The collapse, or None where it was not reached."""
+    knee = view.reading.collapse
+    if knee is None:
+        return None
+    point = knee_point(view, knee)
+    kind = "constant-area" if view.reading.falls else "constant-pressure"
+    return Collapse(kind, point.area, point.pressure)
+
+
+def gradual_lift_off(view: BranchView) -> Quantity | None:
+    """Area where the smoothed pressure first stays above zero by `LIFT_OFF_SIGMAS` of one row."""
+    local, nodes = view.local, view.nodes
+    level = view.offset + LIFT_OFF_SIGMAS * max(nodes.noise, 1e-9)
+    above = local.pressure > level
+    if above.all() or not above.any():
+        return None
+    below = np.flatnonzero(~above)
+    peak = int(np.argmax(local.pressure))
+    below = below[below < peak]
+    if below.size == 0:
+        return None
+    i = int(below[-1])
+    low, high = float(local.pressure[i]), float(local.pressure[i + 1])
+    share = (level - low) / max(high - low, 1e-12)
+    x = float(nodes.x[i] + share * (nodes.x[i + 1] - nodes.x[i]))
+    slope = max(float(local.modulus[i : i + 2].mean()), 1e-6)
+    u_x = math.hypot(float(local.u_pressure[i]), view.zero.u_random or 0.0) / slope
+    step = float(nodes.x[i + 1] - nodes.x[i])
+    return view.area(x, math.hypot(min(u_x, 1.0), step / math.sqrt(12.0)))
+
+
+def phases(view: BranchView) -> tuple[Phase, ...]:
+    """The stretches with their names, coexistences whole, in the order of compression."""
+    reading, model = view.reading, view.model
+    groups: list[tuple[int, int, str]] = []
+    inside = {}
+    for onset, end in reading.coexistences:
+        stop = len(reading.stretches) - 1 if end is None else end
+        for j in range(onset + 1, stop + 1):
+            inside[j] = onset
+    n = len(reading.stretches)
+    j = 0
+    while j < n:
+        stop = j
+        if j in inside:
+            while stop + 1 < n and inside.get(stop + 1) == inside[j]:
+                stop += 1
+            name = "coexistence"
+        elif reading.collapse is not None and j > reading.collapse:
+            stop, name = n - 1, "collapsed"
+        elif j == 0 and reading.baseline:
+            name = "gaseous"
+        else:
+            name = ""
+        groups.append((j, stop, name))
+        j = stop + 1
+    out = []
+    for first, stop, name in groups:
+        start_x, stop_x = reading.stretches[first].start, reading.stretches[stop].stop
+        ends = []
+        for knee, x in ((first - 1, start_x), (stop, stop_x)):
+            if 0 <= knee < model.knots.size:
+                value, gradient = model.knee_pressure(knee)
+                ends.append(
+                    (value, math.sqrt(max(float(gradient @ model.covariance @ gradient), 0.0)))
+                )
+            else:
+                i = 0 if knee < 0 else -1
+                value = float(model.pressure(np.array([x]))[0])
+                ends.append((value, float(view.local.u_pressure[i])))
+        length = max(stop_x - start_x, 1e-12)
+        modulus = (ends[1][0] - ends[0][0]) / length
+        u = math.hypot(ends[0][1], ends[1][1]) / length
+        out.append(
+            Phase(
+                name or phase_name(modulus),
+                (math.exp(-start_x), math.exp(-stop_x)),
+                (ends[0][0] - view.offset, ends[1][0] - view.offset),
+                Quantity.combine(modulus, "mN/m", u_random=u, u_systematic=None),
+            )
+        )
+    return tuple(out)
+
+
+def _stiffest(view: BranchView) -> int | None:
+    """Index of the stiffest rising stretch that is not baseline, plateau or collapsed film."""
+    reading = view.reading
+    plateau = set()
+    for onset, end in reading.coexistences:
+        plateau |= set(range(onset + 1, (len(reading.stretches) if end is None else end + 1)))
+    first = 1 if reading.baseline and len(reading.stretches) > 1 else 0
+    best = None
+    for j in range(first, reading.last + 1):
+        stretch = reading.stretches[j]
+        if j in plateau or stretch.modulus <= 0:
+            continue
+        if best is None or stretch.modulus > reading.stretches[best].modulus:
+            best = j
+    return best
+
+
+def limiting_area(view: BranchView) -> tuple[Quantity, Tangent] | None:
+    """Regression of Π on A over the whole stiffest stretch, extended to Π = 0.
+
+    The roundings at the stretch's ends are left out. The regression's covariance is scaled to its
+    residuals, so that a curved stretch shows in u.
+    """
+    j = _stiffest(view)
+    if j is None:
+        return None
+    model, nodes = view.model, view.nodes
+    stretch = view.reading.stretches[j]
+    low, high = stretch.start, stretch.stop
+    margin_low = ROUNDED * float(model.widths[j - 1]) if j > 0 else 0.0
+    margin_high = ROUNDED * float(model.widths[j]) if j < model.knots.size else 0.0
+    room = 0.3 * (high - low)
+    inside = (nodes.x >= low + min(margin_low, room)) & (nodes.x <= high - min(margin_high, room))
+    if int(inside.sum()) < 3:
+        inside = (nodes.x >= low) & (nodes.x <= high)
+    if int(inside.sum()) < 3:
+        return None
+    area, y = nodes.area[inside], nodes.pressure[inside] - view.offset
+    w = 1.0 / nodes.sigma[inside] ** 2
+    total = float(w.sum())
+    centre = float((w * area).sum()) / total
+    mean = float((w * y).sum()) / total
+    spread = float((w * (area - centre) ** 2).sum())
+    slope = float((w * (area - centre) * y).sum()) / spread
+    if slope >= 0:
+        return None
+    residual = y - mean - slope * (area - centre)
+    scale = max(1.0, float((w * residual**2).sum()) / max(y.size - 2, 1))
+    value = centre - mean / slope
+    variance = scale * ((1.0 / total) / slope**2 + (mean / slope**2) ** 2 / spread)
+    zero = (view.zero.u_random or 0.0) / abs(slope)
+    systematic = math.hypot(view.zero.u_systematic or 0.0, view.pressure_u or 0.0) / abs(slope)
+    quantity = Quantity.combine(
+        value,
+        "nm^2",
+        u_random=math.hypot(math.sqrt(variance), zero),
+        u_systematic=math.hypot(value * (view.relative_u or 0.0), systematic),
+    )
+    return quantity, Tangent(slope, mean - slope * centre, (float(area.max()), float(area.min())))
+
+
+def modulus_max(view: BranchView) -> MaxModulus | None:
+    """The largest local modulus, judged at its lower one-u bound so that noise does not choose it."""
+    local, nodes, reading = view.local, view.nodes, view.reading
+    start = reading.stretches[1 if reading.baseline and len(reading.stretches) > 1 else 0].start
+    stop = reading.stretches[reading.last].stop
+    inside = (nodes.x >= start) & (nodes.x <= stop) & np.isfinite(local.u_modulus)
+    if not inside.any():
+        return None
+    bound = np.where(inside, local.modulus - local.u_modulus, -np.inf)
+    i = int(np.argmax(bound))
+    if local.modulus[i] <= 0:
+        return None
+    modulus = Quantity.combine(
+        float(local.modulus[i]), "mN/m", u_random=float(local.u_modulus[i]), u_systematic=None
+    )
+    return MaxModulus(
+        modulus,
+        view.pressure(float(local.pressure[i]), float(local.u_pressure[i])),
+        view.area(float(nodes.x[i]), 0.0),
+    )
+
+
+def highest_pressure(view: BranchView) -> Quantity:
+    """The largest smoothed pressure of the branch."""
+    i = int(np.argmax(view.local.pressure))
+    return view.pressure(float(view.local.pressure[i]), float(view.local.u_pressure[i]))
+
+
+def area_at(view: BranchView, pressure: float) -> AreaAt:
+    """Area and modulus where the branch first reaches `pressure` (mN/m) for good, before collapse."""
+    local, nodes, reading = view.local, view.nodes, view.reading
+    stop = reading.stretches[reading.last].stop
+    last = max(int(np.searchsorted(nodes.x, stop, side="right")), 2)
+    level = local.pressure[:last] - view.offset
+    peak = int(np.argmax(level))
+    below = np.flatnonzero(level[: peak + 1] < pressure)
+    if pressure > level[peak] or below.size == 0:
+        return AreaAt(pressure, None, None)
+    i = int(below[-1])
+    share = (pressure - level[i]) / max(level[i + 1] - level[i], 1e-12)
+    x = float(nodes.x[i] + share * (nodes.x[i + 1] - nodes.x[i]))
+    near = slice(i, i + 2)
+    modulus = float((1 - share) * local.modulus[i] + share * local.modulus[i + 1])
+    u_modulus = float(np.max(local.u_modulus[near]))
+    u_pressure = math.hypot(float(np.max(local.u_pressure[near])), view.zero.u_random or 0.0)
+    systematic = math.hypot(view.zero.u_systematic or 0.0, view.pressure_u or 0.0)
+    stiff = max(modulus, 1e-3)
+    return AreaAt(
+        pressure,
+        view.area(x, u_pressure / stiff, systematic / stiff),
+        Quantity.combine(
+            modulus,
+            "mN/m",
+            u_random=u_modulus if math.isfinite(u_modulus) else None,
+            u_systematic=None,
+        ),
+    )

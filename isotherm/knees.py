@@ -1,0 +1,140 @@
+"""From nodes to a fitted branch: search, joint fit, refinement on rows, and a last test of each knee."""
+
+from __future__ import annotations
+
+from typing import Final
+
+import numpy as np
+from numpy.typing import NDArray
+
+from isotherm.condense import Nodes
+from isotherm.knee_model import INDIFFERENT, KneeModel, choose_degrees, fit_knees
+from isotherm.knee_search import Candidate, search
+
+__all__ = ["find_knees", "refine_knees"]
+
+FloatArray = NDArray[np.float64]
+
+HIGHEST_DEGREE: Final = 5  # of a stretch; a fluid branch from lift-off to collapse needs about 4
+NODES_PER_DEGREE: Final = 4  # nodes a stretch must have for each degree
+STEP_SIGMAS: Final = 4.0  # a knee whose step of slope is not this many u above zero is dropped
+ROWS_PER_KNEE: Final = 120  # rows, or means of neighbouring rows, a knee is refined on
+NEIGHBOURHOOD: Final = 4  # nodes each side of a knee that are replaced by rows
+
+
+def find_knees(nodes: Nodes) -> KneeModel:
+    """Find and fit the knees of one branch on its nodes.
+
+    Returns
+    -------
+    KneeModel
+        With no knots where the branch is one smooth curve.
+    """
+    x, y, sigma = nodes.x, nodes.pressure, nodes.sigma
+    candidates = search(x, y, sigma)
+    model = _fit(x, y, sigma, candidates)
+    while True:
+        weak = _weakest(model)
+        if weak is None:
+            return model
+        fewer = candidates[:weak] + candidates[weak + 1 :]
+        simpler = _fit(x, y, sigma, fewer)
+        if _bic(simpler, y, sigma) > _bic(model, y, sigma):
+            return model
+        candidates, model = fewer, simpler
+
+
+def _fit(x: FloatArray, y: FloatArray, sigma: FloatArray, candidates: list[Candidate]) -> KneeModel:
+    knots = np.array([c.x for c in candidates])
+    widths = np.array([c.width for c in candidates])
+    edges = np.concatenate([[x[0] - 1.0], knots, [x[-1] + 1.0]])
+    inside = np.diff(np.searchsorted(x, edges))
+    highest = tuple(int(np.clip(c // NODES_PER_DEGREE, 1, HIGHEST_DEGREE)) for c in inside)
+    if x.size <= 2 + sum(highest) + 2 * knots.size:
+        highest = tuple(1 for _ in highest)
+    degrees = choose_degrees(x, y, sigma, knots, widths, highest)
+    model = fit_knees(x, y, sigma, knots, widths, degrees)
+    again = choose_degrees(x, y, sigma, model.knots, model.widths, highest)
+    if again != degrees:
+        model = fit_knees(x, y, sigma, model.knots, model.widths, again)
+    return model
+
+
+def _bic(model: KneeModel, y: FloatArray, sigma: FloatArray) -> float:
+    floor = float(np.sum(sigma**-2.0)) * (INDIFFERENT * max(float(np.ptp(y)), 1e-9)) ** 2
+    parameters = model.coefficients.size + 2 * model.knots.size
+    return float(y.size * np.log(model.rss + floor) + parameters * np.log(y.size))
+
+
+def _weakest(model: KneeModel) -> int | None:
+    """The knee whose step of slope is least significant, when it is not significant at all."""
+    if model.knots.size == 0:
+        return None
+    ratios = [
+        abs(step) / max(u, 1e-12) for step, u in map(model.slope_step, range(model.knots.size))
+    ]
+    worst = int(np.argmin(ratios))
+    return worst if ratios[worst] < STEP_SIGMAS else None
+
+
+def refine_knees(
+    model: KneeModel, nodes: Nodes, area: FloatArray, pressure: FloatArray, stop: float
+) -> KneeModel:
+    """Fit again with rows instead of nodes near every knee, up to x = `stop`.
+
+    Parameters
+    ----------
+    area, pressure : (n,) rows the nodes were made of, in their order, nm^2 and mN/m.
+    """
+    keep = nodes.x <= stop
+    knots = model.knots[model.knots < stop]
+    x, y, sigma = nodes.x[keep], nodes.pressure[keep], nodes.sigma[keep]
+    if not np.all(nodes.count == 1):
+        x, y, sigma = _with_rows(nodes, keep, knots, model.widths, area, pressure)
+    k = knots.size
+    return fit_knees(x, y, sigma, knots, model.widths[:k], model.degrees[: k + 1])
+
+
+def _with_rows(
+    nodes: Nodes,
+    keep: NDArray[np.bool_],
+    knots: FloatArray,
+    widths: FloatArray,
+    area: FloatArray,
+    pressure: FloatArray,
+) -> tuple[FloatArray, FloatArray, FloatArray]:
+    m = nodes.x.size
+    near = np.zeros(m, dtype=np.bool_)
+    for knot, width in zip(knots, widths, strict=False):
+        low = int(np.searchsorted(nodes.x, knot - 2.0 * width)) - NEIGHBOURHOOD
+        high = int(np.searchsorted(nodes.x, knot + 2.0 * width)) + NEIGHBOURHOOD
+        near[max(low, 0) : high] = True
+    near &= keep & (nodes.count > 1)
+    budget = ROWS_PER_KNEE * max(knots.size, 1)
+    chosen = np.flatnonzero(near)
+    if chosen.size == 0:
+        return nodes.x[keep], nodes.pressure[keep], nodes.sigma[keep]
+    parts = max(2, budget // chosen.size)
+    starts: list[NDArray[np.int64]] = []
+    stops: list[NDArray[np.int64]] = []
+    for i in chosen:
+        count = int(nodes.count[i])
+        cuts = nodes.first[i] + np.linspace(0, count, min(count, parts) + 1).astype(np.int64)
+        starts.append(cuts[:-1])
+        stops.append(cuts[1:])
+    a, b = np.concatenate(starts), np.concatenate(stops)
+    counts = (b - a).astype(np.float64)
+    # sums of rows by running totals: a and b need not be contiguous between nodes
+    low, high = int(a.min()), int(b.max())
+    total_area = np.concatenate([[0.0], np.cumsum(area[low:high])])
+    total_pressure = np.concatenate([[0.0], np.cumsum(pressure[low:high])])
+    mean_area = (total_area[b - low] - total_area[a - low]) / counts
+    mean_pressure = (total_pressure[b - low] - total_pressure[a - low]) / counts
+    far = keep & ~near
+    floor = np.sqrt(np.maximum(nodes.sigma**2 - nodes.noise**2 / nodes.count, 0.0))
+    per_part = np.repeat(floor[chosen], [s.size for s in starts])
+    x = np.concatenate([nodes.x[far], -np.log(mean_area)])
+    y = np.concatenate([nodes.pressure[far], mean_pressure])
+    s = np.concatenate([nodes.sigma[far], np.sqrt(nodes.noise**2 / counts + per_part**2)])
+    order = np.argsort(x, kind="stable")
+    return x[order], y[order], s[order]
