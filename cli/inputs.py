@@ -11,20 +11,7 @@ import typer
 if TYPE_CHECKING:
     from isotherm.sheet import ColumnHint, RunSheet
 
-__all__ = ["COLUMN_ROLES", "column_hints", "load_sheet", "sheet_settings"]
-
-COLUMN_ROLES = (
-    "time",
-    "area",
-    "molecular_area",
-    "barrier_position",
-    "pressure",
-    "tension",
-    "temperature",
-    "dipper_position",
-    "potential",
-)
-
+__all__ = ["column_hints", "load_sheet", "sheet_settings"]
 
 def column_hints(texts: list[str] | None) -> tuple[ColumnHint, ...]:
     """Read `--column ROLE=WHICH[:UNIT]` options.
@@ -37,6 +24,7 @@ def column_hints(texts: list[str] | None) -> tuple[ColumnHint, ...]:
         Wrong usage: no such role, or nothing after the equals sign.
     """
     from isotherm.sheet import ColumnHint
+    from isotherm.sheet_schema import ROLES
 
     hints = []
     for text in texts or []:
@@ -49,9 +37,9 @@ def column_hints(texts: list[str] | None) -> tuple[ColumnHint, ...]:
                 f"'{text}' is not ROLE=WHICH[:UNIT]; write for example area=2:cm^2",
                 param_hint="--column",
             )
-        if role not in COLUMN_ROLES:
+        if role not in ROLES:
             raise typer.BadParameter(
-                f"'{role}' is no role; use one of {', '.join(COLUMN_ROLES)}", param_hint="--column"
+                f"'{role}' is no role; use one of {', '.join(ROLES)}", param_hint="--column"
             )
         if which.isdecimal():
             hints.append(ColumnHint(role, index=int(which), unit=unit or None))

@@ -15,7 +15,7 @@ from cli.terminal import say
 from cli.whole import StagedFiles
 from isotherm.errors import UpstrokeError
 
-__all__ = ["FIGURE_SUFFIXES", "OutputChoice", "OutputPlan", "Renderers", "plan_outputs"]
+__all__ = ["FIGURE_SUFFIXES", "OutputChoice", "OutputPlan", "Renderers", "check_target", "plan_outputs"]
 
 FIGURE_SUFFIXES = (".svg", ".png", ".pdf")
 
@@ -148,6 +148,19 @@ def plan_outputs(choice: OutputChoice, inputs: Sequence[Path]) -> OutputPlan:
         report=targets.get("--report"),
         force=choice.force,
     )
+
+
+def check_target(path: Path, *, force: bool) -> Path:
+    """Return the place a single output goes to, after the checks that need no inputs.
+
+    Raises
+    ------
+    UpstrokeError
+        It exists (without `force`), is no regular file, or its directory is missing or closed.
+    """
+    target = _resolved(path)
+    _check_free(path, target, force=force)
+    return target
 
 
 def _resolved(path: Path) -> Path:

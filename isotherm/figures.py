@@ -29,6 +29,7 @@ if TYPE_CHECKING:
 __all__ = ["isotherm_figure"]
 
 PAPER = (7.6, 7.2)  # inches: the width of a text block on A4
+MOST_LABELS = 24  # names of runs that can be read beside the axes
 PLOT_WIDTH = 0.625  # of the paper; the rest holds axis labels and the side rail
 
 
@@ -247,6 +248,7 @@ def _draw_several(results: tuple[IsothermResult, ...], upper: Axes, lower: Axes)
             [curve.area[top]], [curve.pressure[top]], marker="o", markersize=4, color=colour,
             zorder=4,
         )  # fmt: skip
-    side_rail(upper, labels)
+    if len(labels) <= MOST_LABELS:
+        side_rail(upper, labels)
     scale_modulus(lower, max(float(np.nanmax(r.headline.curve.modulus)) for r in results))
     upper.set_title(f"{len(results)} isotherms, first compression of each", pad=10)
