@@ -102,10 +102,11 @@ def find_bend(
         found = found / max(float(white @ white) - found, 1e-300)
     p_value = float((1 + np.count_nonzero(drawn >= found)) / (1 + _DRAWS))
     near = [k for k, fall in zip(places, falls, strict=True) if falls[best] - fall <= _NOT_WORSE]
+    scale = 1.0 if line.noise_scale is None else line.noise_scale**2
     fit = fit_line(
         x,
         y,
-        cov_y,
+        cov_y * scale,
         cov_x,
         free_intercept=line.free_intercept,
         hinge=float(reached[places[best]]),

@@ -203,16 +203,14 @@ def _solve(
     hinge: float | None,
     scale: float | None = None,
 ) -> LineFit:
-    parameters = np.linalg.lstsq(design, y, rcond=None)[0]
+    parameters: FloatArray = np.linalg.lstsq(design, y, rcond=None)[0].astype(np.float64)
     for _ in range(_TURNS):
         slope = _local_slope(x, parameters, free_intercept, hinge)
         covariance = cov_y + slope[:, None] * cov_x * slope[None, :]
         weight = _inverse(covariance)
         residuals = y - design @ parameters
         # where the true layers most likely lie, given line and point (York's adjusted points)
-        adjusted = _design(
-            x + cov_x @ (slope * (weight @ residuals)), free_intercept, hinge
-        )
+        adjusted = _design(x + cov_x @ (slope * (weight @ residuals)), free_intercept, hinge)
         normal = adjusted.T @ weight @ design
         step = np.linalg.solve(normal, adjusted.T @ weight @ residuals)
         parameters = parameters + step
@@ -225,8 +223,10 @@ def _solve(
     adjusted = _design(x + cov_x @ (slope * (weight @ residuals)), free_intercept, hinge)
     return LineFit(
         parameters=parameters,
-        covariance=np.linalg.inv(adjusted.T @ weight @ adjusted),
-        operator=np.linalg.solve(adjusted.T @ weight @ design, adjusted.T @ weight),
+        covariance=np.linalg.inv(adjusted.T @ weight @ adjusted).astype(np.float64),
+        operator=np.linalg.solve(adjusted.T @ weight @ design, adjusted.T @ weight).astype(
+            np.float64
+        ),
         local_slope=slope,
         residuals=residuals,
         weight=weight,

@@ -63,7 +63,7 @@ class LedgerView:
     @property
     def cumulative(self) -> FloatArray:
         """Layers on the substrate before the first stroke and after each, (n + 1,)."""
-        return np.concatenate(([0.0], np.cumsum(self.added)))
+        return np.concatenate((np.zeros(1), np.cumsum(self.added)))
 
     @property
     def total(self) -> Quantity:
@@ -120,7 +120,7 @@ class LedgerView:
 
     def weighted(self, weights: FloatArray) -> FloatArray:
         """Cumulative Σ weight × layers before the first stroke and after each, (n + 1,)."""
-        return np.concatenate(([0.0], np.cumsum(self.added * weights)))
+        return np.concatenate((np.zeros(1), np.cumsum(self.added * weights)))
 
     def weighted_rows(self, index: NDArray[np.int64], weights: FloatArray) -> FloatArray:
         """Return rows R so that R @ added is `weighted(weights)[index]`, shape (m, n)."""
