@@ -2,18 +2,37 @@
 
 from __future__ import annotations
 
+import hashlib
+from collections.abc import Sequence
 from dataclasses import dataclass, field
 from pathlib import Path
+from typing import Final
 
 import numpy as np
 from numpy.typing import NDArray
 
+from isotherm.errors import UpstrokeError
 from isotherm.sheet import RunSheet
-from isotherm.source import Source
+from isotherm.source import ColumnSource, Source
+from isotherm.table_header import Header, HeaderCell, find_header, split_header
+from isotherm.table_roles import (
+    Assigned,
+    assign_roles,
+    columns_from_text,
+    describe,
+    wanted_roles,
+)
+from isotherm.table_units import column_conversion
+from isotherm.text_bytes import decode, is_workbook, read_bytes
+from isotherm.text_clock import clock_seconds
+from isotherm.text_layout import Block, find_block
+from isotherm.text_numbers import Numbers, read_numbers
 
 __all__ = ["Table", "read_table"]
 
 FloatArray = NDArray[np.float64]
+
+_HEAD: Final = 1 << 16  # bytes looked at first to find the rows; more when they begin later
 
 
 @dataclass(frozen=True)
@@ -22,6 +41,7 @@ class Table:
 
     values : role -> (n,) array; `barrier_position` is (n,) or (n, 2), mm. time s, area cm^2,
         molecular_area nm^2, pressure and tension mN/m, temperature degC, dipper_position mm, potential mV.
+        A missing reading is NaN, an overload infinite.
     lines : (n,) line number in the file of each row, from 1.
     """
 
@@ -31,6 +51,285 @@ class Table:
     warnings: tuple[str, ...] = field(default=())
 
 
-def read_table(path: str | Path, sheet: RunSheet | None = None, *, needs: tuple[str, ...] = ()) -> Table:
-    """Read one export (see the module's helper)."""
-    raise NotImplementedError
+@dataclass(frozen=True)
+class _Text:
+    """The export in an encoding that keeps ASCII, with the lines up to its rows."""
+
+    data: bytes
+    encoding: str
+    lines: tuple[str, ...]
+    block: Block
+    start: int
+
+
+def read_table(
+    path: str | Path, sheet: RunSheet | None = None, *, needs: tuple[str, ...] = ()
+) -> Table:
+    """Read one export: any delimiter, decimal mark and encoding, any text above, among and below the rows.
+
+    Parameters
+    ----------
+    path : str or Path
+        A text file, or an .xlsx workbook where the `excel` extra is installed.
+    sheet : RunSheet, optional
+        Its `columns` say what a column is where the file does not, or overrule it.
+    needs : tuple of str
+        Roles that must be there; alternatives as `"pressure|tension"`.
+
+    Returns
+    -------
+    Table
+        What was understood is in `source.columns`, what was assumed or skipped in `warnings`.
+
+    Raises
+    ------
+    UpstrokeError
+        When the file cannot be read, holds no rows of numbers, two columns could play one role, a needed
+        role is missing, or a unit is unknown or missing.
+    """
+    where = str(path)
+    data = read_bytes(path)
+    digest = hashlib.sha256(data).hexdigest()
+    warnings: list[str] = []
+    if is_workbook(data):
+        from isotherm.table_workbook import workbook_text
+
+        data = workbook_text(data, where)
+    if not data.strip():
+        raise UpstrokeError("the file is empty", where=where, remedy="export the run again")
+    text = _find_rows(data, where)
+    hints = sheet.columns if sheet is not None else ()
+    header = _header(text, warnings)
+    taken, notes = assign_roles(header.cells, text.block.kinds, hints, needs, where)
+    warnings += notes
+    _check_needs(needs, taken, header, text, where)
+    if not taken:
+        raise _nothing_known(header, text, where)
+    numeric = [one.column for one in taken if text.block.kinds[one.column] != "C"]
+    clocks = [one.column for one in taken if text.block.kinds[one.column] == "C"]
+    numbers = read_numbers(
+        text.data, text.start, text.block.first + 1, text.block, numeric, clocks, text.encoding
+    )
+    _check_repeats(numbers, header, text, where, warnings)
+    values, columns = _convert(numbers, taken, needs, where, warnings)
+    _report_gaps(numbers, taken, values, warnings)
+    rows = len(numbers.lines)
+    return Table(Source(where, digest, rows, columns), values, numbers.lines, tuple(warnings))
+
+
+def _find_rows(data: bytes, where: str) -> _Text:
+    """Decode, and find where the rows begin and how they are laid out."""
+    decoded = decode(data[: 4 * _HEAD], where=where, whole=len(data) <= 4 * _HEAD)
+    encoding = decoded.encoding
+    if encoding.startswith("utf-16") or encoding.startswith("utf-32"):
+        data = decode(data, where=where).text.encode("utf-8", "replace")
+        encoding = "utf-8"
+    elif data.startswith(b"\xef\xbb\xbf"):
+        data = data[3:]
+    size = _HEAD
+    while True:
+        complete = size >= len(data)
+        head = data if complete else data[:size]
+        raw = head.splitlines(keepends=True)
+        if not complete and raw and not raw[-1].endswith((b"\n", b"\r")):
+            raw.pop()
+        lines = tuple(line.decode(encoding, "replace").rstrip("\r\n") for line in raw)
+        block = find_block(lines, complete=complete)
+        if block is not None:
+            start = sum(len(line) for line in raw[: block.first])
+            return _Text(data, encoding, lines, block, start)
+        if complete:
+            raise _no_rows(lines, where)
+        size *= 8
+
+
+def _no_rows(lines: Sequence[str], where: str) -> UpstrokeError:
+    from isotherm.text_cells import cell_kind
+
+    filled = [line.strip(" \t;,|") for line in lines[:2000] if line.strip()]
+    single = sum(cell_kind(line, mark) == "N" for line in filled for mark in ".,") > 0
+    if single and sum(
+        cell_kind(line, ".") == "N" or cell_kind(line, ",") == "N" for line in filled
+    ) >= max(1, len(filled) // 2):
+        return UpstrokeError(
+            "one column of numbers only",
+            where=where,
+            remedy="an export needs at least two, such as area and pressure",
+        )
+    return UpstrokeError(
+        f"no rows of numbers in its {len(lines)} lines",
+        where=where,
+        remedy="export the readings as text, one row per reading",
+    )
+
+
+def _header(text: _Text, warnings: list[str]) -> Header:
+    """Header of the block, or what the free text above says of headerless columns."""
+    block = text.block
+    header = find_header(text.lines, block)
+    numbers = [c for c, kind in enumerate(block.kinds) if kind == "N"]
+    told = header.cells and all(header.cells[c].roles and header.cells[c].unit for c in numbers)
+    if told:
+        return header
+    cells = columns_from_text(text.lines[max(0, block.first - 20) : block.first], len(numbers))
+    if cells:
+        out = [HeaderCell("", "")] * block.columns
+        for column, cell in zip(numbers, cells, strict=True):
+            out[column] = cell
+        said = ", ".join(
+            f"column {c + 1} {cell.name} in {cell.unit}"
+            for c, cell in zip(numbers, cells, strict=True)
+        )
+        warnings.append(f"the columns have no header; taken from the text above: {said}")
+        return Header(tuple(out))
+    if header.cells:
+        return header
+    return Header(tuple(HeaderCell("", "") for _ in range(block.columns)))
+
+
+def _check_needs(
+    needs: Sequence[str], taken: Sequence[Assigned], header: Header, text: _Text, where: str
+) -> None:
+    have = {one.role for one in taken}
+    for need in needs:
+        roles = need.split("|")
+        if have.isdisjoint(roles):
+            raise _missing_role(roles, header, text, where)
+
+
+def _missing_role(
+    roles: Sequence[str], header: Header, text: _Text, where: str
+) -> UpstrokeError:
+    cells = header.cells
+    shown = ", ".join(describe(c, cell) for c, cell in enumerate(cells[:12]))
+    names = " or ".join(role.replace("_", " ") for role in roles)
+    if any(cell.text for cell in cells):
+        what = f"no column is known as {names}; there are: {shown}"
+    else:
+        row = text.lines[text.block.first].strip()[:60]
+        what = f"the {len(cells)} columns have no header (first row: {row}), so none is known as {names}"
+    return UpstrokeError(
+        what,
+        where=where,
+        remedy=f'add to the run sheet: [[columns]] with role = "{roles[0]}", index = N (the first '
+        "column is 1) and its unit",
+    )
+
+
+def _nothing_known(header: Header, text: _Text, where: str) -> UpstrokeError:
+    return _missing_role(("area", "molecular_area", "pressure"), header, text, where)
+
+
+def _check_repeats(
+    numbers: Numbers, header: Header, text: _Text, where: str, warnings: list[str]
+) -> None:
+    """Lines of text among the rows: the header again is fine, another header is not."""
+    if not numbers.skipped_count:
+        return
+    names = [cell.text for cell in header.cells]
+    above = {line.strip() for line in text.lines[: text.block.first]}
+    other = []
+    repeats = 0
+    for skipped in numbers.skipped:
+        if skipped.text in above:
+            repeats += 1
+            continue
+        cells = split_header(skipped.text, text.block.layout, text.block.columns)
+        if cells is not None and cells != names:
+            from isotherm.table_header import parse_cell
+
+            parsed = [parse_cell(cell) for cell in cells]
+            if sum(bool(cell.roles) for cell in parsed) >= 2:
+                raise UpstrokeError(
+                    f"the columns change to '{skipped.text[:60]}'",
+                    where=f"{where}, line {skipped.line}",
+                    remedy="give each part its own file",
+                )
+        other.append(skipped)
+    if repeats:
+        warnings.append(f"the header is repeated among the rows ({repeats} lines skipped)")
+    count = numbers.skipped_count - repeats
+    if count and other:
+        first = other[0]
+        lines = "1 line" if count == 1 else f"{count} lines"
+        warnings.append(
+            f"{lines} among or below the rows are no rows and were skipped; first, line "
+            f"{first.line}: '{first.text[:60]}'"
+        )
+
+
+def _convert(
+    numbers: Numbers,
+    taken: Sequence[Assigned],
+    needs: Sequence[str],
+    where: str,
+    warnings: list[str],
+) -> tuple[dict[str, FloatArray], dict[str, ColumnSource]]:
+    """Columns in fixed units, and what each was taken for."""
+    wanted = wanted_roles(needs)
+    values: dict[str, FloatArray] = {}
+    columns: dict[str, ColumnSource] = {}
+    for one in taken:
+        named = f"{where}, column {describe(one.column, one.cell)}"
+        header = one.cell.text
+        if one.column in numbers.clocks:
+            values[one.role] = clock_seconds(numbers.clocks[one.column], where=named)
+            columns[one.role] = ColumnSource(header, "clock", one.column + 1)
+            continue
+        raw = numbers.columns[one.column]
+        convert, warning = column_conversion(
+            one,
+            raw,
+            needed=one.role in wanted,
+            optional=bool(wanted) and one.role not in wanted and not one.hinted,
+            where=where,
+        )
+        if warning:
+            warnings.append(warning)
+        if convert is None:
+            continue
+        converted = convert(raw)
+        if one.role in values:  # the second barrier
+            both = np.column_stack([values[one.role], converted])
+            values[one.role] = both
+            before = columns[one.role]
+            columns[one.role] = ColumnSource(
+                f"{before.header}, {header}", f"{before.unit}, {convert.text}", before.index
+            )
+            continue
+        values[one.role] = converted
+        columns[one.role] = ColumnSource(header, convert.text, one.column + 1)
+    return values, columns
+
+
+def _report_gaps(
+    numbers: Numbers,
+    taken: Sequence[Assigned],
+    values: dict[str, FloatArray],
+    warnings: list[str],
+) -> None:
+    """Count missing, infinite and unreadable cells of each column."""
+    for one in taken:
+        if one.role not in values:
+            continue
+        column = numbers.columns.get(one.column)
+        if column is None:
+            column = values[one.role]
+        if np.isfinite(column).all():
+            continue
+        nan, infinite = np.isnan(column), np.isinf(column)
+        texts = numbers.unreadable.get(one.column)
+        named = describe(one.column, one.cell)
+        if texts is not None:
+            warnings.append(
+                f"column {named}: {texts[0]} cells are text (first, line {texts[1]}: '{texts[2]}')"
+            )
+        missing = int(nan.sum()) - (texts[0] if texts is not None else 0)
+        for count, mask, word in (
+            (missing, nan, "missing"),
+            (int(infinite.sum()), infinite, "infinite"),
+        ):
+            if count:
+                line = int(numbers.lines[int(np.argmax(mask))])
+                cells = "1 cell is" if count == 1 else f"{count} cells are"
+                warnings.append(f"column {named}: {cells} {word} (first, line {line})")

@@ -1,0 +1,257 @@
+"""From the text above the rows to a name and a unit for every column."""
+
+from __future__ import annotations
+
+import re
+from collections.abc import Iterator, Sequence
+from dataclasses import dataclass
+from typing import Final
+
+from isotherm.table_words import plain_words, roles_of
+from isotherm.text_cells import MISSING, cell_kind
+from isotherm.text_layout import Block, Layout
+from isotherm.units import is_unit
+
+__all__ = ["Header", "HeaderCell", "find_header", "parse_cell", "split_header"]
+
+_LINES_ABOVE: Final = 12  # text lines looked at above the rows
+_COMMENT_SIGNS: Final = "#%!*/'>"
+_BRACKETS: Final = re.compile(r"[(\[{<]([^()\[\]{}<>]{0,40})[)\]}>]")
+_CLOCK_FORMAT: Final = re.compile(r"[hHmMsSdDyYjJtT]{1,4}(?:[:.\-/ ][hHmMsSfFdDyYjJtT]{1,4})+", re.ASCII)
+# What stands in brackets beside a name without being a unit.
+_NOTES: Final = frozenset(
+    "raw filtered smoothed corrected mean average avg left right front back rear top bottom measured calculated "
+    "calc absolute abs pi gamma a t p v x y sensor probe channel ch kanal links rechts total actual ist signal "
+    "optional plate paper side l r".split()
+)
+
+
+@dataclass(frozen=True)
+class HeaderCell:
+    """What the header says of one column. `unknown` is text in the place of a unit that is none."""
+
+    text: str
+    name: str
+    unit: str | None = None
+    unknown: str | None = None
+    clock: bool = False
+
+    @property
+    def roles(self) -> tuple[str, ...]:
+        """Roles the column may play by its name and unit."""
+        return roles_of(self.name, self.unit)
+
+
+@dataclass(frozen=True)
+class Header:
+    """The cells, one for each column, and the line (0-based) the names are on; None without any header."""
+
+    cells: tuple[HeaderCell, ...]
+    line: int | None = None
+
+
+def parse_cell(text: str) -> HeaderCell:
+    """Tell name and unit apart in one header cell.
+
+    Units stand in brackets, after a slash, a comma, `in`, a colon or an underscore, or simply at the end.
+    """
+    text = " ".join(text.strip().strip("\"'").split())
+    plain = text[:200]
+    groups = list(_BRACKETS.finditer(plain))
+    outer = re.search(r"[(\[](.{1,40})[)\]]\s*$", plain)
+    for match in [*reversed(groups), *([outer] if outer else [])]:
+        inside = match.group(1).strip()
+        name = " ".join((plain[: match.start()] + " " + plain[match.end() :]).split())
+        if _CLOCK_FORMAT.fullmatch(inside):
+            return HeaderCell(text, name, clock=True)
+        # one letter in brackets after a name is as often its symbol: then the unit must suit the name
+        if is_unit(inside) and (len(inside) > 1 or _suits(name, inside)):
+            return HeaderCell(text, name.rstrip(" /,:;"), inside)
+    found = _bare_unit(plain)
+    if found is not None:
+        return HeaderCell(text, found[0].rstrip(" /,:;-_"), found[1])
+    unknown = None
+    if groups:
+        inside = groups[-1].group(1).strip()
+        words = plain_words(inside).split()
+        if inside and words and not _NOTES.intersection(words) and len(inside) <= 20:
+            unknown = inside
+    elif "/" in plain:
+        name, _, right = plain.partition("/")
+        right = right.strip()
+        if roles_of(name, None) and 0 < len(right) <= 20 and not plain_words(right).startswith("molec"):
+            unknown = right
+    name = plain if unknown is None else plain.replace(unknown, " ").strip(" ()[]{}<>/")
+    return HeaderCell(text, name, unknown=unknown)
+
+
+def _suits(name: str, unit: str) -> bool:
+    return bool(roles_of(name, unit))
+
+
+def _bare_unit(text: str) -> tuple[str, str] | None:
+    """A unit without brackets; of several ways to cut, the first that gives a known column."""
+    ways = list(_bare_ways(text))
+    known = (way for way in ways if _suits(*way))
+    return next(known, ways[0] if ways else None)
+
+
+def _bare_ways(text: str) -> Iterator[tuple[str, str]]:
+    """The whole cell, or what follows a slash, comma, colon, `in`, the last blanks or underscores."""
+    if len(text) > 1 and is_unit(text) and not roles_of(text, None):
+        yield "", text
+    for match in re.finditer(r"/", text):
+        name, right = text[: match.start()].strip(), text[match.end() :].strip()
+        if name and is_unit(right):
+            yield name, right
+    for sign in (", ", ",", " in ", ": ", ":", ";"):
+        name, found, right = text.rpartition(sign)
+        if found and name.strip() and is_unit(right):
+            yield name.strip(), right.strip()
+    words = text.split()
+    for count in (3, 2, 1):
+        name, right = " ".join(words[:-count]), " ".join(words[-count:])
+        if name and is_unit(right) and (len(right) > 1 or (right != "A" and _suits(name, right))):
+            yield name, right
+    parts = text.split("_")
+    for count in (3, 2, 1):
+        name = " ".join(parts[:-count])
+        for joiner in ("/", " ", ""):
+            right = joiner.join(parts[-count:])
+            if name and is_unit(right) and _suits(name, right):
+                yield name, right
+
+
+def split_header(line: str, layout: Layout, columns: int) -> list[str] | None:
+    """Cut a text line into exactly `columns` cells, or None when it does not go."""
+    line = line.strip()
+    if layout.delimiter != "\t":
+        line = line.strip("\ufeff")
+    stripped = line.lstrip(_COMMENT_SIGNS + (";" if layout.delimiter != ";" else "")).strip()
+    for text in dict.fromkeys((line, stripped)):
+        for cells in _cuttings(text, layout):
+            while len(cells) > columns and not cells[-1]:
+                cells = cells[:-1]
+            if len(cells) == columns:
+                return cells
+            if layout.delimiter != " " and len(cells) > columns:
+                joined = _join_units(cells)
+                if len(joined) == columns:
+                    return joined
+    return None
+
+
+def _cuttings(text: str, layout: Layout) -> list[list[str]]:
+    """Every sensible way to cut a header line, best first."""
+    if layout.delimiter != " ":
+        ways = [layout.split(text)]
+        ways += [Layout(d, ".").split(text) for d in "\t;,|" if d != layout.delimiter and d in text]
+        if len(text.split("  ")) > 1:
+            ways.append([cell.strip() for cell in re.split(r" {2,}|\t", text)])
+        return ways
+    ways = []
+    if "\t" in text:
+        ways.append([cell.strip() for cell in re.split(r"\t+", text)])
+    if "  " in text:
+        ways.append([cell.strip() for cell in re.split(r"[ \t]{2,}", text)])
+    ways += [Layout(d, ".").split(text) for d in ";,|" if d in text]
+    if '"' in text:
+        ways.append([cell.strip() for cell in re.findall(r'"([^"]*)"', text)])
+    ways.append([c.strip() for c in re.findall(r"[^()\[\]]*[(\[][^()\[\]]*[)\]]", text)])
+    words = text.split()
+    ways.append(words)
+    ways.append(_join_units(words))
+    return ways
+
+
+def _join_units(cells: list[str]) -> list[str]:
+    """Put units that were cut off their names back beside them."""
+    out: list[str] = []
+    for cell in cells:
+        bare = cell.strip("()[] ")
+        if out and cell and is_unit(bare) and not is_unit(out[-1]) and (len(bare) > 1 or bare != "A"):
+            out[-1] = f"{out[-1]} ({bare})"
+        else:
+            out.append(cell)
+    return out
+
+
+def _is_unit_cell(cell: str) -> bool:
+    bare = cell.strip("()[]{}<> ")
+    return is_unit(bare) or _CLOCK_FORMAT.fullmatch(bare) is not None
+
+
+def _is_unit_line(cells: Sequence[str]) -> bool:
+    filled = [c for c in cells if c.strip("()[]{}<> ").lower() not in MISSING and c != "1"]
+    return bool(filled) and all(_is_unit_cell(c) for c in filled)
+
+
+def find_header(lines: Sequence[str], block: Block) -> Header:
+    """Find names and units in the text lines above the block (one line, or names and units on two)."""
+    columns = block.columns
+    while columns > 2 and block.kinds[columns - 1] == "E":
+        columns -= 1  # trailing separators make cells that no header names
+    above: list[tuple[int, list[str]]] = []
+    gap = False
+    number = block.first
+    seen = 0
+    while number > 0 and seen < _LINES_ABOVE:
+        number -= 1
+        line = lines[number]
+        if not line.strip(" \t;,|-=_#"):
+            gap = gap or not line.strip()
+            continue
+        seen += 1
+        cells = split_header(line, block.layout, block.columns) or split_header(
+            line, block.layout, columns
+        )
+        if cells is None or all(cell_kind(c, block.layout.decimal) in "NE" for c in cells):
+            if above:
+                break
+            continue
+        if above and gap and not _is_unit_line(above[-1][1]):
+            break
+        gap = False
+        above.append((number, cells + [""] * (block.columns - len(cells))))
+    return _choose(above)
+
+
+def _choose(above: list[tuple[int, list[str]]]) -> Header:
+    """Take names and units from candidate lines, nearest to the rows first."""
+    units: list[str] | None = None
+    names: tuple[int, list[HeaderCell]] | None = None
+    for place, (number, cells) in enumerate(above):
+        if units is None and _is_unit_line(cells):
+            units = cells
+            continue
+        parsed = [parse_cell(cell) for cell in cells]
+        if names is None:
+            names = (number, parsed)
+        elif place < 4 and _known(parsed) >= 2 and _known(parsed) > _known(names[1]):
+            names = (number, parsed)
+    if names is None:
+        if units is None:
+            return Header(())
+        return Header(tuple(_with_unit(HeaderCell(c, ""), c) for c in units), above[0][0])
+    cells_out = names[1]
+    if units is not None:
+        cells_out = [
+            _with_unit(cell, unit) for cell, unit in zip(cells_out, units, strict=True)
+        ]
+    return Header(tuple(cells_out), names[0])
+
+
+def _known(cells: Sequence[HeaderCell]) -> int:
+    return sum(bool(cell.roles) or cell.unit is not None for cell in cells)
+
+
+def _with_unit(cell: HeaderCell, unit: str) -> HeaderCell:
+    bare = unit.strip("()[]{}<> ")
+    if cell.unit is not None or not bare or bare.lower() in MISSING:
+        return cell
+    if _CLOCK_FORMAT.fullmatch(bare) and not is_unit(bare):
+        return HeaderCell(cell.text, cell.name, clock=True)
+    name = cell.name
+    if cell.unknown is not None:
+        name = f"{name} {cell.unknown}"
+    return HeaderCell(cell.text, name, bare)
