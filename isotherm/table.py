@@ -197,9 +197,7 @@ def _check_needs(
             raise _missing_role(roles, header, text, where)
 
 
-def _missing_role(
-    roles: Sequence[str], header: Header, text: _Text, where: str
-) -> UpstrokeError:
+def _missing_role(roles: Sequence[str], header: Header, text: _Text, where: str) -> UpstrokeError:
     cells = header.cells
     shown = ", ".join(describe(c, cell) for c, cell in enumerate(cells[:12]))
     names = " or ".join(role.replace("_", " ") for role in roles)

@@ -128,8 +128,10 @@ def _without_footer(data: bytes, start: int, block: Block, encoding: str) -> int
     for raw in reversed(lines[1:]):
         cells = block.layout.split(raw.decode(encoding, "replace").strip("\r\n\x1a"))
         good = [to_number(c, block.layout.decimal) for c in cells]
-        if len(good) >= 2 and sum(g is not None and math.isfinite(g) for g in good) >= 1 and (
-            block.kinds[0] != "N" or good[0] is not None
+        if (
+            len(good) >= 2
+            and sum(g is not None and math.isfinite(g) for g in good) >= 1
+            and (block.kinds[0] != "N" or good[0] is not None)
         ):
             return stop
         stop -= len(raw)
