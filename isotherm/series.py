@@ -21,6 +21,7 @@ __all__ = [
     "Row",
     "area_against_pressure",
     "effective_freedom",
+    "format_p",
     "pressure_range",
     "quantity_cells",
     "random_part",
@@ -193,6 +194,13 @@ def two_sided_p(value: float, u: float, freedom: float = math.inf) -> float:
         return math.nan
     z = -abs(value) / u
     return float(2.0 * (ndtr(z) if math.isinf(freedom) else stdtr(freedom, z)))
+
+
+def format_p(p: float | None) -> str:
+    """Write a probability for a sentence: `p = 0.012`, `p < 0.0001`."""
+    if p is None or not math.isfinite(p):
+        return "p unknown"
+    return "p < 0.0001" if p < 1e-4 else f"p = {p:.2g}"
 
 
 def effective_freedom(parts: Sequence[tuple[float, float]]) -> float:
