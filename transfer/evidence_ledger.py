@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from dataclasses import dataclass, field
 
 import numpy as np
@@ -70,7 +71,7 @@ class LedgerView:
         """Layers after the last stroke."""
         ones = np.ones(len(self.added))
         return Quantity(
-            float(self.added.sum()), float(np.sqrt(max(ones @ self.covariance @ ones, 0.0))), "1"
+            float(self.added.sum()), math.sqrt(max(float(ones @ self.covariance @ ones), 0.0)), "1"
         )
 
     def film(self, name: str) -> FilmInputs:

@@ -139,8 +139,9 @@ def build_reading(
 ) -> Reading:
     """Put points and expectation together; shared by every kind.
 
-    Inputs nobody gave are None. `values` default to the points' values as read. A common relative uncertainty of the values becomes one
-    more input. The intercept is free as soon as two different numbers of layers were measured.
+    Inputs nobody gave are None. `values` default to the points' values as read. A common relative
+    uncertainty of the values becomes one more input. The intercept is free as soon as two different
+    numbers of layers were measured.
 
     Raises
     ------
