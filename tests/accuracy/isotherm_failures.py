@@ -43,7 +43,8 @@ def plot_trace(
 
     figure, (top, low) = plt.subplots(2, 1, figsize=(10, 9), sharex=True, height_ratios=(3, 1))
     film, _ = make_film(marks.seed, asked)
-    top.plot(trace.area, trace.pressure, ".", ms=2, color="0.65")
+    size = 6 if trace.area.size < 200 else 2
+    top.plot(trace.area, trace.pressure, ".", ms=size, color="0.55")
     top.plot(film.area, film.pressure, "k-", lw=0.7)
     for name, true in _knees(truth):
         top.plot(true.area, true.pressure, "bo", mfc="none", ms=11)
