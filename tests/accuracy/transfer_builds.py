@@ -6,7 +6,6 @@ from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import NDArray
-
 from transfer_truth import Body
 
 __all__ = ["Build", "decidable_type", "draw_body", "draw_build"]
@@ -34,9 +33,9 @@ class Build:
 
 
 def draw_body(rng: np.random.Generator) -> Body:
-    """Plate of 10–40 mm or rod of 6–18 mm, sizes in 0.1 mm as a caliper gives them."""
+    """Plate of 10–40 mm or rod of 8–20 mm, sizes in 0.1 mm as a caliper gives them."""
     if rng.random() < 0.25:
-        return Body("rod", diameter=round(float(rng.uniform(6.0, 18.0)), 1))
+        return Body("rod", diameter=round(float(rng.uniform(8.0, 20.0)), 1))
     return Body(
         "plate",
         width=round(float(rng.uniform(10.0, 40.0)), 1),

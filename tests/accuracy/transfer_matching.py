@@ -83,8 +83,9 @@ def reading_from_json(out: dict[str, Any]) -> Reading:
         )
     drift = out.get("drift") or {}
     changes = drift.get("changes_after_stroke")
-    place = out.get("contact") or out.get("surface_at")
-    where, where_u = _number(place.get("reading", place) if isinstance(place, dict) else place)
+    place = out.get("contact") or {}
+    searched = place.get("surface_at_from") == "data"
+    where, where_u = _number(place.get("surface_at")) if searched else (None, None)
     return Reading(
         tuple(strokes),
         out["type"],
@@ -155,9 +156,7 @@ def compare(reading: Reading, truth: Truth, row: float) -> Match:
         if found.ratio is None:
             unjudged += 1
         else:
-            errors.append(
-                StrokeError(number, found.ratio - true.ratio, found.u, true.coated_area)
-            )
+            errors.append(StrokeError(number, found.ratio - true.ratio, found.u, true.coated_area))
     located: bool | None = None
     changes = reading.changes or ()
     if truth.drop_after is not None and reading.changes is not None and not missed:

@@ -5,11 +5,12 @@ from __future__ import annotations
 from dataclasses import dataclass, field
 
 import numpy as np
-
 from transfer_builds import Build
 from transfer_truth import Body
 
 __all__ = ["Film", "Move", "Plan", "Window", "make_plan"]
+
+SHORTEST = 6.0  # mm of wet travel, of a partial stroke
 
 
 @dataclass
@@ -135,7 +136,9 @@ def _turns(rng: np.random.Generator, build: Build, plan: Plan) -> list[float]:
         turns.append(top if at_top else bottom)
         if 0 < i < len(build.ratios) and "partial" in plan.traits and rng.random() < 0.3:
             inner = max(top, 0.0)
-            turns[-1] = inner + (bottom - inner) * float(rng.uniform(0.35, 0.8))
+            turn = inner + (bottom - inner) * float(rng.uniform(0.35, 0.8))
+            if abs(turn - max(turns[-2], 0.0)) > SHORTEST:
+                turns[-1] = turn
     if not plan.crosses and build.first == "down" and rng.random() < 0.7:
         turns[0] = -float(rng.uniform(1.0, 10.0))
     return turns
@@ -169,12 +172,15 @@ def make_plan(rng: np.random.Generator, build: Build, body: Body, rate: float) -
         "log ends in stroke": 0.1,
     }
     plan.traits = {name for name, share in shares.items() if rng.random() < share}
-    speed = float(np.exp(rng.uniform(np.log(1.0), np.log(40.0)))) / 60.0
+    slowest = 1.0 if rng.random() < 0.12 else 5.0
+    speed = float(np.exp(rng.uniform(np.log(slowest), np.log(40.0)))) / 60.0
     base = float(np.exp(rng.uniform(np.log(60.0), np.log(900.0))))
     if rate < 0.4:  # a user who logs every ten seconds dips and waits accordingly
         speed, base = min(speed, 8.0 / 60.0), max(base, 150.0)
         plan.traits -= {"scarce dwells", "pauses"}
     turns = _turns(rng, build, plan)
+    if rng.random() < 0.85:  # who dips slowly usually also waits longer
+        base = max(base, 0.25 * (max(turns) - min(turns)) / speed)
     area = float(rng.uniform(350.0, 800.0))
     plan.times, plan.depths = [0.0], [turns[0]]
     if "first compression" in plan.traits:
@@ -198,7 +204,9 @@ def make_plan(rng: np.random.Generator, build: Build, body: Body, rate: float) -
         if "lost in stroke" in plan.traits and index == len(turns) // 2 and index:
             plan.windows.append(Window("lost", begun + 0.3 * (plan.now - begun), plan.now + 30.0))
             plan.wait(150.0)
-        left -= need * max(float(build.ratios[index]), 0.0) + 1e-5 * left * (plan.now - begun + base)
+        left -= need * max(float(build.ratios[index]), 0.0) + 1e-5 * left * (
+            plan.now - begun + base
+        )
         last = index == len(turns) - 2
         _dwell(rng, plan, base, "scarce dwells" in plan.traits and not last)
     plan.wait(30.0)

@@ -2,6 +2,9 @@
 
 from __future__ import annotations
 
+import itertools
+from collections.abc import Callable
+
 import numpy as np
 from numpy.typing import NDArray
 from scipy.ndimage import uniform_filter1d
@@ -36,19 +39,19 @@ def _coated(perimeter: float, face: float, a: float, b: float) -> float:
     return abs(below[1] - below[0])
 
 
-def spreadsheet(log: SimulatedLog, sheet: RunSheet) -> Reading:
+def spreadsheet(log: SimulatedLog, sheet: RunSheet, contact: float) -> Reading:
     """Before minus after: runs of one sign of the row-to-row difference, area read at either end.
 
-    A run longer than 2 mm is a stroke; a standing row ends it. No creep, no pressure, no renewals.
+    A run longer than 2 mm is a stroke; a standing row ends it. No creep, no pressure, no
+    renewals; `contact` (reading at the surface, mm) is told.
     """
     perimeter, face = _perimeter_and_face(sheet.substrate or Substrate())
-    given = sheet.dipping.surface_at
-    depth = _depth(log, sheet, given.value if given is not None else float(log.position[0]))
+    depth = _depth(log, sheet, contact)
     sign = np.sign(np.round(np.diff(depth), 2))
     edges = np.flatnonzero(np.diff(sign)) + 1
     strokes = []
     bounds = [0, *edges.tolist(), sign.size]
-    for lo, hi in zip(bounds[:-1], bounds[1:], strict=True):
+    for lo, hi in itertools.pairwise(bounds):
         if sign[lo] == 0 or abs(depth[hi] - depth[lo]) < 2.0:
             continue
         coated = _coated(perimeter, face, depth[lo], depth[hi])
@@ -68,89 +71,102 @@ def spreadsheet(log: SimulatedLog, sheet: RunSheet) -> Reading:
 
 
 def _quiet(log: SimulatedLog, truth: Truth, target: float) -> list[NDArray[np.intp]]:
-    """Rows of the dwell before each stroke and after the last, pressure held."""
+    """Rows of each dwell with the pressure held; a dwell with a renewal in it becomes two."""
     pressure = uniform_filter1d(log.pressure, 5)
     fine = np.abs(pressure - target) < 0.5
-    for begin, finish in truth.renewals:
-        fine &= ~((log.time > begin - 2.0) & (log.time < finish + 20.0))
-    starts = [s.start for s in truth.strokes] + [float(log.time[-1]) + 1.0]
-    ends = [float(log.time[0]) - 1.0] + [s.end for s in truth.strokes]
-    return [
-        np.flatnonzero(fine & (log.time > e + 3.0) & (log.time < s - 1.0))
-        for s, e in zip(starts, ends, strict=True)
+    busy = [(s.start - 1.0, s.end + 3.0) for s in truth.strokes]
+    busy += [(b - 2.0, e + 20.0) for b, e in truth.renewals]
+    busy += [(-np.inf, truth.ready + 20.0)] if truth.ready > 0.0 else []
+    busy.sort()
+    starts = [-np.inf] + [e for _, e in busy]
+    ends = [b for b, _ in busy] + [float(log.time[-1]) + 1.0]
+    blocks = [
+        np.flatnonzero(fine & (log.time >= a) & (log.time < b))
+        for a, b in zip(starts, ends, strict=True)
     ]
+    return [rows for rows in blocks if rows.size >= 2]
 
 
-def _compliance(
-    log: SimulatedLog, smooth: FloatArray, dwells: list[NDArray[np.intp]], sheet: RunSheet
-) -> float:
-    """1/M (m/mN) from the sheet, weighed with the dwells' own slope of ln A against pressure."""
-    top = bottom = 0.0
-    rest = 0.0
-    count = 0
-    for rows in dwells:
-        if rows.size < 12:
-            continue
-        t = log.time[rows] - log.time[rows].mean()
-        basis = np.vander(t / max(float(np.abs(t).max()), 1e-9), 3)
-        both = np.column_stack([np.log(log.area[rows]), smooth[rows]])
-        both = both - basis @ np.linalg.lstsq(basis, both, rcond=None)[0]
-        top -= float(both[:, 0] @ both[:, 1])
-        bottom += float(both[:, 1] @ both[:, 1])
-        rest += float(both[:, 0] @ both[:, 0])
-        count += rows.size
-    if bottom == 0.0:
-        return 1.0 / sheet.dipping.modulus.value if sheet.dipping.modulus else 0.0
-    own = top / bottom
-    own_variance = max(rest - own * top, 1e-15) / max(count, 1) / bottom * 5.0
-    if sheet.dipping.modulus is None:
-        return max(own, 0.0)
-    told = 1.0 / sheet.dipping.modulus.value
-    told_variance = (0.03 * told) ** 2
-    return (own / own_variance + told / told_variance) / (1.0 / own_variance + 1.0 / told_variance)
+def _carried(
+    area: FloatArray,
+    excess: FloatArray,
+    time: FloatArray,
+    dwells: list[NDArray[np.intp]],
+    guess: tuple[float, float],
+) -> Callable[[int, float], float]:
+    """Fit all dwells of one film together: a level each, one 1/M, one rate (constant plus decaying).
+
+    area (cm^2), excess (smoothed pressure less its set value, mN/m), time (s): (n,). guess: 1/M and its u
+    beforehand, m/mN. Returns the area at the set pressure that dwell j has, carried to time t.
+    """
+    rows = np.concatenate(dwells)
+    which = np.repeat(np.arange(len(dwells)), [d.size for d in dwells])
+    origin = float(time[rows[0]])
+    t = time[rows] - origin
+    level = np.array([area[d].mean() for d in dwells])
+    noise = 0.012 + 1.05 * float(np.median(np.abs(np.diff(area[rows]))))  # cm^2, of one row
+    best, decay, least = np.zeros(len(dwells) + 3), np.inf, np.inf
+    for trial in (600.0, 1200.0, 2500.0, 5000.0, 10000.0):
+        matrix = np.zeros((rows.size + 3, len(dwells) + 3))
+        matrix[np.arange(rows.size), which] = 1.0
+        matrix[:-3, -1] = -excess[rows] * level[which]
+        matrix[:-3, -2] = -t * level[which]
+        matrix[:-3, -3] = -trial * (1.0 - np.exp(-t / trial)) * level[which]
+        # the rates are known to lie within 0 and 2e-5 per second: a prior of 7e-6 +- 7e-6 on each
+        matrix[-2, -2] = matrix[-1, -3] = noise / 7e-6
+        matrix[-3, -1] = noise / guess[1]
+        aim = np.concatenate([area[rows], [noise * guess[0] / guess[1], noise, noise]])
+        fit = np.linalg.lstsq(matrix, aim, rcond=None)[0]
+        rest = float(np.sum((aim - matrix @ fit) ** 2))
+        if rest < least:
+            best, decay, least = fit, trial, rest
+
+    def at(dwell: int, when: float) -> float:
+        lost = best[-2] * (when - origin)
+        lost += best[-3] * decay * (1.0 - np.exp(-(when - origin) / decay))
+        return float(best[dwell] - level[dwell] * lost)
+
+    return at
 
 
 def told_least_squares(log: SimulatedLog, sheet: RunSheet, truth: Truth) -> Reading:
-    """Least squares with strokes, renewals and contact known: level per dwell and a local creep rate.
+    """Least squares with strokes, renewals, contact and the form of the creep known.
 
-    Each stroke uses the two dwells on either side; their areas, brought to the set pressure, are fitted by a
-    level each and one relative rate.
+    Each film's dwells are fitted together, their areas brought to the set pressure; a stroke takes the gap
+    between the two dwells around it, both carried to its middle.
     """
     perimeter, face = _perimeter_and_face(sheet.substrate or Substrate())
     target = sheet.dipping.pressure.value if sheet.dipping.pressure else float(log.pressure[0])
     depth = _depth(log, sheet, truth.contact)
     dwells = _quiet(log, truth, target)
     row = float(np.median(np.diff(log.time)))
-    smooth = uniform_filter1d(log.pressure, max(int(4.0 / row), 1))
-    per_pressure = _compliance(log, smooth, dwells, sheet)
-    film = log.area * (1.0 + (smooth - target) * per_pressure)
+    width = 2 * int(2.0 / row) + 1
+    smooth = uniform_filter1d(log.pressure, width)
+    told = sheet.dipping.modulus
+    guess = (0.005, 0.004) if told is None else (1.0 / told.value, 0.03 / told.value)
+    dwells = [d[width // 2 : d.size - width // 2] for d in dwells if d.size > width + 2]
+    bounds = [-np.inf, *(r[1] for r in truth.renewals), np.inf]
     strokes = []
-    for i, s in enumerate(truth.strokes):
-        if not s.judgeable:
+    for begin, finish in itertools.pairwise(bounds):
+        own = [d for d in dwells if begin < log.time[d[0]] < finish]
+        if not own:
             continue
-        broken = [r for r in truth.renewals]
-        near = [
-            j
-            for j in range(max(i - 1, 0), min(i + 3, len(dwells)))
-            if dwells[j].size >= 2
-            and not any(
-                min(log.time[dwells[j][0]], s.start) < r[0] < max(log.time[dwells[j][-1]], s.end)
-                for r in broken
-            )
-        ]
-        ratio = None
-        if i in near and i + 1 in near:
-            rows = np.concatenate([dwells[j] for j in near])
-            which = np.concatenate([np.full(dwells[j].size, k) for k, j in enumerate(near)])
-            level = np.array([film[dwells[j]].mean() for j in near])
-            matrix = np.zeros((rows.size, len(near) + 1))
-            matrix[np.arange(rows.size), which] = 1.0
-            middle = 0.5 * (s.start + s.end)
-            matrix[:, -1] = (log.time[rows] - middle) * level[which]
-            fit = np.linalg.lstsq(matrix, film[rows], rcond=None)[0]
-            a, b = near.index(i), near.index(i + 1)
-            # each level is the film's area carried to the middle of the stroke
-            here, there = np.interp([s.start - row, s.end + row], log.time, depth)
-            ratio = float(fit[a] - fit[b]) / _coated(perimeter, face, here, there)
-        strokes.append(FoundStroke(s.start, s.end, s.direction, ratio, None))
+        at = _carried(log.area, smooth - target, log.time, own, guess)
+        for s in truth.strokes:
+            if not (s.judgeable and begin < s.start < finish):
+                continue
+            before = [j for j, d in enumerate(own) if log.time[d[-1]] <= s.start]
+            after = [j for j, d in enumerate(own) if log.time[d[0]] >= s.end]
+            between = [
+                o for o in truth.strokes
+                if before and after and o is not s
+                and log.time[own[before[-1]][-1]] <= o.start and o.end <= log.time[own[after[0]][0]]
+            ]  # fmt: skip
+            ratio = None
+            if before and after and not between:
+                middle = 0.5 * (s.start + s.end)
+                taken = at(before[-1], middle) - at(after[0], middle)
+                here, there = np.interp([s.start - row, s.end + row], log.time, depth)
+                ratio = taken / _coated(perimeter, face, float(here), float(there))
+            strokes.append(FoundStroke(s.start, s.end, s.direction, ratio, None))
     return Reading(tuple(strokes), renewals=truth.renewals)

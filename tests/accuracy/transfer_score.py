@@ -103,7 +103,7 @@ def score_log(job: tuple[int, str], reader: str = "upstroke") -> LogScore:
     log, sheet, truth = simulate(seed, family)
     begin = time.perf_counter()
     if reader == "baseline":
-        reading = spreadsheet(log, sheet)
+        reading = spreadsheet(log, sheet, truth.contact)
     elif reader == "limit":
         reading = told_least_squares(log, sheet, truth)
     else:

@@ -15,8 +15,6 @@ import numpy as np
 from numpy.typing import NDArray
 from scipy.ndimage import uniform_filter1d
 from scipy.signal import lfilter, lfilter_zi
-
-from isotherm.sheet import RunSheet
 from transfer_builds import decidable_type, draw_body, draw_build
 from transfer_plan import Move, Plan, make_plan
 from transfer_truth import (
@@ -26,6 +24,8 @@ from transfer_truth import (
     Truth,
     make_sheet,
 )
+
+from isotherm.sheet import RunSheet
 
 __all__ = ["FAMILIES", "simulate"]
 
@@ -55,9 +55,14 @@ def _rate_of_logging(rng: np.random.Generator) -> float:
 
 
 def _taken(
-    rng: np.random.Generator, t: FloatArray, depth: FloatArray, plan: Plan, body: Body,
-    ratios: FloatArray, uneven: bool,
-) -> tuple[FloatArray, dict[int, float]]:  # fmt: skip
+    rng: np.random.Generator,
+    t: FloatArray,
+    depth: FloatArray,
+    plan: Plan,
+    body: Body,
+    ratios: FloatArray,
+    uneven: bool,
+) -> tuple[FloatArray, dict[int, float]]:
     """Film taken per fine step (cm^2 at the set pressure), and the true TR of each stroke."""
     covered = body.perimeter / 100.0 * np.clip(depth, 0.0, None)
     covered += body.face * np.clip(depth / 0.05, 0.0, 1.0)
@@ -83,7 +88,7 @@ def _film(
 ) -> _Film:
     rate = np.zeros_like(t)
     level = float(rng.uniform(0.0, 2e-5)) if rng.random() > 0.1 else 0.0
-    decay = float(rng.uniform(1200.0, 10000.0)) if rng.random() < 0.5 else np.inf
+    decay = float(rng.uniform(1200.0, 10000.0)) if rng.random() < 0.35 else np.inf
     log_area = np.zeros_like(t)
     starts = [0.0] + [f.compress for f in plan.films if f.opened is not None and f.opened > 0.0]
     films = plan.films if plan.films[0].ready == 0.0 or len(plan.films) == len(starts) else []
@@ -110,10 +115,16 @@ def _loop(rng: np.random.Generator, wanted: FloatArray, step: float) -> FloatArr
     omega = 1.0 / float(rng.uniform(2.0, 12.0))
     damping = float(rng.uniform(0.6, 1.2))
     k = 2.0 / step
-    a = np.array([k * k + 2 * damping * omega * k + omega**2, 2 * omega**2 - 2 * k * k,
-                  k * k - 2 * damping * omega * k + omega**2])  # fmt: skip
-    b = np.array([2 * damping * omega * k + omega**2, 2 * omega**2,
-                  -2 * damping * omega * k + omega**2])  # fmt: skip
+    a = np.array(
+        [
+            k * k + 2 * damping * omega * k + omega**2,
+            2 * omega**2 - 2 * k * k,
+            k * k - 2 * damping * omega * k + omega**2,
+        ]
+    )
+    b = np.array(
+        [2 * damping * omega * k + omega**2, 2 * omega**2, -2 * damping * omega * k + omega**2]
+    )
     b, a = b / a[0], a / a[0]
     out: FloatArray = lfilter(b, a, wanted, zi=lfilter_zi(b, a) * wanted[0])[0]
     return out
@@ -146,7 +157,9 @@ def _barriers(
             log_area[lo:hi] = log_area[lo]
             after = slice(hi, int(np.searchsorted(t, window.end + 100.0)))
             gap = log_area[lo] - log_area[min(hi, t.size - 1)]
-            log_area[after] += gap * np.exp(-(t[after] - window.end) / float(rng.uniform(5.0, 12.0)))
+            log_area[after] += gap * np.exp(
+                -(t[after] - window.end) / float(rng.uniform(5.0, 12.0))
+            )
     for film_plan in plan.films:
         if film_plan.opened is None:
             continue
@@ -201,8 +214,16 @@ def _strokes(
         coated = abs(body.below(move.end_depth) - body.below(move.begin_depth))
         direction = "down" if move.end_depth > move.begin_depth else "up"
         out.append(
-            StrokeTruth(move.start, min(move.end, end), float(wet[0]), min(float(wet[-1]), end),
-                        direction, coated, true[move.index], judgeable)  # fmt: skip
+            StrokeTruth(
+                move.start,
+                min(move.end, end),
+                float(wet[0]),
+                min(float(wet[-1]), end),
+                direction,
+                coated,
+                true[move.index],
+                judgeable,
+            )
         )
     return tuple(out)
 
@@ -240,7 +261,7 @@ def simulate(seed: int, family: str) -> tuple[SimulatedLog, RunSheet, Truth]:
     uneven = rng.random() < 0.12
     taken, true = _taken(rng, t, depth, plan, body, build.ratios, uneven)
     film = _film(rng, t, plan, taken, true)
-    modulus = float(np.exp(rng.uniform(np.log(60.0), np.log(600.0))))
+    modulus = float(np.exp(rng.uniform(np.log(90.0), np.log(600.0))))
     if rng.random() < 0.12:
         modulus /= 2.0
     target = round(float(rng.uniform(15.0, 40.0)), 1)
@@ -253,25 +274,50 @@ def simulate(seed: int, family: str) -> tuple[SimulatedLog, RunSheet, Truth]:
     position = contact + depth_read if reads == "depth" else contact - depth_read
     position += float(rng.choice([0.0, 0.005, 0.02])) * rng.standard_normal(rows.size)
     area = area + AREA_NOISE * rng.standard_normal(rows.size)
-    pressure_read += float(rng.uniform(0.005, 0.03)) * rng.standard_normal(rows.size)
+    pressure_read += float(rng.uniform(0.003, 0.02)) * rng.standard_normal(rows.size)
     strokes = _strokes(t, depth, plan, body, true, plan.end)
     own_contact = uneven or not plan.crosses or rng.random() < 0.65
     contact_given = own_contact or not _contact_findable(plan.moves[: len(strokes)], build.ratios)
     exact = rng.random() < 0.75
     told = float(np.exp(0.03 * rng.standard_normal())) * modulus if rng.random() < 0.5 else None
     wetting = True if build.kind == "wetting" and rng.random() < 0.5 else None
-    sheet = make_sheet(rng, body, pressure=target, modulus=told,
-                       modulus_u=None if told is None else 0.03 * told, reads=reads,
-                       contact=contact if contact_given else None, exact=exact,
-                       wetting=wetting, smallest_area=100.0)  # fmt: skip
-    log = SimulatedLog(rows, _steps(position, float(rng.choice([0.0, 0.001, 0.01, 0.05]))),
-                       _steps(area, float(rng.choice([0.0, 0.01, 0.02, 0.05]))),
-                       _steps(pressure_read, float(rng.choice([0.0, 0.01, 0.01]))))  # fmt: skip
+    sheet = make_sheet(
+        rng,
+        body,
+        pressure=target,
+        modulus=told,
+        modulus_u=None if told is None else 0.03 * told,
+        reads=reads,
+        contact=contact if contact_given else None,
+        exact=exact,
+        wetting=wetting,
+        smallest_area=100.0,
+    )
+    log = SimulatedLog(
+        rows,
+        _steps(position, float(rng.choice([0.0, 0.001, 0.01, 0.05]))),
+        _steps(area, float(rng.choice([0.0, 0.01, 0.02, 0.05]))),
+        _steps(pressure_read, float(rng.choice([0.0, 0.01, 0.01]))),
+    )
     traits = {build.kind, *plan.traits} | ({"uneven"} if uneven else set())
+    ready = plan.films[0].ready
     renewals = tuple((f.opened, f.ready) for f in plan.films if f.opened and f.opened < plan.end)
     usable = [s.judgeable for s in strokes]
     seen = t < plan.end
-    truth = Truth(seed, family, strokes, decidable_type(build, usable), renewals, contact, modulus,
-                  float(film.rate[seen].mean()), build.drop_after, build.steady, exact,
-                  contact_given, tuple(sorted(traits)))  # fmt: skip
+    truth = Truth(
+        seed,
+        family,
+        strokes,
+        decidable_type(build, usable),
+        renewals,
+        contact,
+        modulus,
+        float(film.rate[seen].mean()),
+        build.drop_after,
+        build.steady,
+        exact,
+        contact_given,
+        tuple(sorted(traits)),
+        ready,
+    )
     return log, sheet, truth

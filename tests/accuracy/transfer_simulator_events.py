@@ -19,8 +19,6 @@ from isotherm.sheet import RunSheet
 __all__ = ["simulate_events"]
 
 
-
-
 @dataclass
 class _Machine:
     """Trough, probe, dipper and what has been recorded. Areas cm^2, pressures mN/m, lengths mm, s."""
@@ -154,7 +152,7 @@ def _one_stroke(
 
 def _run(rng: np.random.Generator, m: _Machine, build: Build, depths: list[float]) -> _Notes:
     notes = _Notes()
-    speed = float(np.exp(rng.uniform(np.log(2.0), np.log(40.0)))) / 60.0
+    speed = float(np.exp(rng.uniform(np.log(4.0), np.log(40.0)))) / 60.0
     dwell = float(np.exp(rng.uniform(np.log(60.0), np.log(600.0))))
     pausing, roaming, shifting = rng.random(3) < (0.25, 0.15, 0.12)
     m.wait(max(dwell, 60.0))
@@ -194,7 +192,7 @@ def simulate_events(seed: int) -> tuple[SimulatedLog, RunSheet, Truth]:
     depths, crosses = _depths(rng, build)
     rate = float(np.round(np.exp(rng.uniform(np.log(0.5), np.log(5.0))), 1))
     step = 1.0 / rate / math.ceil(1.0 / rate / 0.4)
-    modulus = float(np.exp(rng.uniform(np.log(50.0), np.log(500.0))))
+    modulus = float(np.exp(rng.uniform(np.log(70.0), np.log(500.0))))
     target = round(float(rng.uniform(15.0, 40.0)), 1)
     area = float(rng.uniform(350.0, 800.0))
     machine = _Machine(
@@ -223,7 +221,7 @@ def simulate_events(seed: int) -> tuple[SimulatedLog, RunSheet, Truth]:
         time,
         np.floor(where / grid) * grid + grid / 2.0 if grid else where,
         np.round(seen_area / area_grid) * area_grid if area_grid else seen_area,
-        picked[:, 3] + float(rng.uniform(0.005, 0.025)) * rng.standard_normal(n),
+        picked[:, 3] + float(rng.uniform(0.003, 0.02)) * rng.standard_normal(n),
     )
     findable = any(
         min(depths[i], depths[i + 1]) < -0.5 and s.ratio > 0.3 for i, s in enumerate(notes.strokes)

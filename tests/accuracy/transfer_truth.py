@@ -61,6 +61,7 @@ class Truth:
     exact_sheet: bool = True  # geometry and contact in the sheet carry no error
     contact_given: bool = True
     traits: tuple[str, ...] = field(default=())
+    ready: float = 0.0  # s, from when on the first film is at its set pressure
 
 
 @dataclass(frozen=True)
