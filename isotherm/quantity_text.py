@@ -48,7 +48,7 @@ def parse_quantity(text: str, dimension: str, *, where: str = "") -> Quantity:
     Returns
     -------
     Quantity
-        In the fixed unit of the dimension; `u` and `u_systematic` are the standard uncertainty typed, or None.
+        In the fixed unit of the dimension; `u` and `u_systematic` are the uncertainty given, or None.
 
     Raises
     ------

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import itertools
 import re
 import tomllib
 from collections.abc import Mapping
@@ -47,11 +48,15 @@ def read_sheet(path: str | Path) -> RunSheet:
     data = read_bytes(path)
     if len(data) > _LARGEST:
         raise UpstrokeError(
-            f"a run sheet of {len(data)} bytes", where=str(path), remedy="is this the export itself?"
+            f"a run sheet of {len(data)} bytes",
+            where=str(path),
+            remedy="is this the export itself?",
         )
     if not data.strip():
         raise UpstrokeError(
-            "the run sheet is empty", where=str(path), remedy="`upstroke sheet` writes one to fill in"
+            "the run sheet is empty",
+            where=str(path),
+            remedy="`upstroke sheet` writes one to fill in",
         )
     return parse_sheet(decode(data, where=str(path)).text, path=str(path))
 
@@ -95,7 +100,7 @@ def parse_sheet(text: str, path: str = "") -> RunSheet:
 def _not_toml(error: tomllib.TOMLDecodeError, text: str, where: str) -> UpstrokeError:
     found = re.search(r"\(at line (\d+), column (\d+)\)", str(error))
     reason = str(error).split(" (at ")[0]
-    remedy = "quantities and text go in double quotes, as in volume = \"50 µL\""
+    remedy = 'quantities and text go in double quotes, as in volume = "50 µL"'
     if found is None:
         return UpstrokeError(
             f"not TOML: {reason[:100]} (at the end of the sheet)", where=where, remedy=remedy
@@ -151,9 +156,7 @@ def _table(section: Section, given: Any, path: str, place: Place, shown: str) ->
             where=place.of(path),
             remedy=f"head it with [{path}] and put its keys below",
         )
-    children = {
-        s.path.rpartition(".")[2]: s for s in SECTIONS if s.path.rpartition(".")[0] == path
-    }
+    children = {s.path.rpartition(".")[2]: s for s in SECTIONS if s.path.rpartition(".")[0] == path}
     _check_names(given, tuple(key.name for key in section.keys), path, place, *children)
     out: dict[str, Any] = {}
     for key in section.keys:
@@ -224,7 +227,7 @@ def _substrate(values: dict[str, Any], place: Place) -> Substrate:
     substrate = Substrate(profile=points, **values)
     if points:
         heights = [point.height for point in points]
-        if len(points) < 2 or any(b <= a for a, b in zip(heights, heights[1:], strict=False)):
+        if len(points) < 2 or any(b <= a for a, b in itertools.pairwise(heights)):
             raise UpstrokeError(
                 "the heights in [[substrate.profile]] do not rise from table to table",
                 where=place.of("substrate.profile"),

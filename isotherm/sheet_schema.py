@@ -50,9 +50,25 @@ class Section:
 
 
 def _positive(
-    name: str, dimension: str, meaning: str, example: str, *, high: float = math.inf, required: bool = False
+    name: str,
+    dimension: str,
+    meaning: str,
+    example: str,
+    *,
+    high: float = math.inf,
+    required: bool = False,
 ) -> Key:
-    return Key(name, "quantity", meaning, f'"{example}"', dimension, 0.0, high, above=True, required=required)
+    return Key(
+        name,
+        "quantity",
+        meaning,
+        f'"{example}"',
+        dimension,
+        0.0,
+        high,
+        above=True,
+        required=required,
+    )
 
 
 def _text(name: str, meaning: str, example: str, *, required: bool = False) -> Key:
@@ -76,15 +92,25 @@ SECTIONS: Final[tuple[Section, ...]] = (
         (
             _text("name", "the amphiphile", "octadecanoic acid"),
             _MOLAR_MASS,
-            _positive("concentration", "concentration", "of the spreading solution; mass or amount per volume",
-                      "1.00 ± 0.01 mg/mL"),
+            _positive(
+                "concentration",
+                "concentration",
+                "of the spreading solution; mass or amount per volume",
+                "1.00 ± 0.01 mg/mL",
+            ),
             _positive("volume", "volume", "spread on the surface", "50 ± 0.5 µL"),
-            _positive("purity", "fraction", "part of the weighed solid that is amphiphile", "99 ± 0.5 %", high=1.0),
+            _positive(
+                "purity",
+                "fraction",
+                "part of the weighed solid that is amphiphile",
+                "99 ± 0.5 %",
+                high=1.0,
+            ),
             _text("solvent", "the spreading solvent", "chloroform"),
         ),
         cautions=(
-            "Spreading solvents are volatile; many are toxic or flammable, chloroform is both volatile and harmful.",
-            "Spread under extraction, with suitable gloves, and follow your site's rules and safety data sheets.",
+            "Spreading solvents are volatile, and many are toxic or flammable. Work under extraction with",
+            "suitable gloves, by the safety data sheet and your site's rules.",
         ),
     ),
     Section(
@@ -93,8 +119,17 @@ SECTIONS: Final[tuple[Section, ...]] = (
         (
             _text("name", "the amphiphile", "octadecanoic acid", required=True),
             _positive("molar_mass", "molar_mass", "molar mass", "284.48 g/mol", high=1e8),
-            Key("mole_fraction", "quantity", "all of them add up to 1", "0.50", "fraction", 0.0, 1.0, above=True,
-                required=True),
+            Key(
+                "mole_fraction",
+                "quantity",
+                "all of them add up to 1",
+                "0.50",
+                "fraction",
+                0.0,
+                1.0,
+                above=True,
+                required=True,
+            ),
         ),
         many=True,
     ),
@@ -103,15 +138,30 @@ SECTIONS: Final[tuple[Section, ...]] = (
         "The liquid below the film.",
         (
             _text("liquid", "water, or what else it is", "water"),
-            Key("temperature", "quantity", "of the subphase", '"20.0 ± 0.2 degC"', "temperature", -50.0, 150.0),
-            Key("tension", "quantity", "of the clean subphase as measured; else that of pure water is used",
-                '"72.7 ± 0.1 mN/m"', "pressure", 1.0, 1000.0),
+            Key(
+                "temperature",
+                "quantity",
+                "of the subphase",
+                '"20.0 ± 0.2 degC"',
+                "temperature",
+                -50.0,
+                150.0,
+            ),
+            Key(
+                "tension",
+                "quantity",
+                "of the clean subphase as measured; else that of pure water is used",
+                '"72.7 ± 0.1 mN/m"',
+                "pressure",
+                1.0,
+                1000.0,
+            ),
             Key("additives", "texts", "salts, buffers", '["0.2 mmol/L CdCl2"]'),
             Key("ph", "quantity", "pH", "5.6", "fraction", -2.0, 16.0),
         ),
         cautions=(
-            "Cadmium, lead and other heavy-metal salts are poisonous: gloves, no skin contact, no drain;",
-            "collect the subphase as hazardous waste under your local rules, with trained people.",
+            "Cadmium, lead and other heavy-metal salts are poisonous: gloves, no skin contact, nothing down",
+            "the drain; collect the subphase as hazardous waste under your local rules.",
         ),
     ),
     Section(
@@ -120,19 +170,38 @@ SECTIONS: Final[tuple[Section, ...]] = (
         (
             _positive("smallest_area", "area", "with the barriers closed", "60 cm^2", high=1e6),
             _positive("largest_area", "area", "with the barriers open", "240 cm^2", high=1e6),
-            _positive("area_uncertainty", "area", "standard uncertainty of the trough area", "0.3 cm^2", high=1e4),
-            _positive("pressure_uncertainty", "pressure", "standard uncertainty of the pressure scale", "0.1 mN/m",
-                      high=100.0),
-            _positive("width", "length", "between the side walls; only where the export gives barrier positions",
-                      "75 mm", high=1e5),
+            _positive(
+                "area_uncertainty",
+                "area",
+                "standard uncertainty of the trough area",
+                "0.3 cm^2",
+                high=1e4,
+            ),
+            _positive(
+                "pressure_uncertainty",
+                "pressure",
+                "standard uncertainty of the pressure scale",
+                "0.1 mN/m",
+                high=100.0,
+            ),
+            _positive(
+                "width",
+                "length",
+                "between the side walls; only where the export gives barrier positions",
+                "75 mm",
+                high=1e5,
+            ),
         ),
     ),
     Section(
         "substrate",
         "What is dipped.",
         (
-            _choice("shape", "plate: width, thickness; rod: diameter; table: thickness and [[substrate.profile]]",
-                    ("plate", "rod", "table")),
+            _choice(
+                "shape",
+                "plate: width, thickness; rod: diameter; table: thickness and [[substrate.profile]]",
+                ("plate", "rod", "table"),
+            ),
             _positive("width", "length", "plate", "20.0 ± 0.1 mm", high=1e5),
             _positive("thickness", "length", "plate or table", "1.00 ± 0.02 mm", high=1e5),
             _positive("diameter", "length", "rod", "3.00 ± 0.01 mm", high=1e5),
@@ -142,15 +211,24 @@ SECTIONS: Final[tuple[Section, ...]] = (
             _text("cleaning", "how it was cleaned", "UV and ozone, 20 min, then water"),
         ),
         cautions=(
-            "Oxidising baths (acid with peroxide, chromic acid, hot alkali) burn, and may explode with organic",
-            "solvents: only trained people, small volumes, in a hood, shield and gloves, by your site's own procedure.",
+            "Oxidising baths (acid with peroxide, chromic acid) burn, and may explode with organics: trained",
+            "people only, small volumes, in a hood, with shield and gloves, by your site's procedure.",
         ),
     ),
     Section(
         "substrate.profile",
         "A substrate of free shape: its width at some heights above the lower edge, straight between them.",
         (
-            Key("height", "quantity", "above the lower edge", '"0 mm"', "length", 0.0, 1e5, required=True),
+            Key(
+                "height",
+                "quantity",
+                "above the lower edge",
+                '"0 mm"',
+                "length",
+                0.0,
+                1e5,
+                required=True,
+            ),
             Key("width", "quantity", "there", '"18 mm"', "length", 0.0, 1e5, required=True),
         ),
         many=True,
@@ -159,18 +237,62 @@ SECTIONS: Final[tuple[Section, ...]] = (
         "dipping",
         "How it is dipped.",
         (
-            Key("pressure", "quantity", "held while dipping", '"30 mN/m"', "pressure", 0.0, 200.0, above=True),
-            _positive("tolerance", "pressure", "of the pressure controller, standard uncertainty", "0.2 mN/m", high=50.0),
-            _positive("overshoot", "pressure", "of the controller when a stroke begins", "0.5 mN/m", high=100.0),
-            _choice("position_reads", "depth: the reading grows as the substrate goes down; height: the reverse",
-                    ("depth", "height")),
-            Key("surface_at", "quantity", "reading at which the lower edge touches the surface",
-                '"12.40 ± 0.05 mm"', "length", -1e5, 1e5),
-            _positive("modulus", "pressure", "of the film at the dipping pressure; else an isotherm or the dwells give it",
-                      "180 mN/m", high=1e5),
-            _positive("stroke_length", "length", "substrate length that crosses the surface", "25 mm", high=1e5),
+            Key(
+                "pressure",
+                "quantity",
+                "held while dipping",
+                '"30 mN/m"',
+                "pressure",
+                0.0,
+                200.0,
+                above=True,
+            ),
+            _positive(
+                "tolerance",
+                "pressure",
+                "of the pressure controller, standard uncertainty",
+                "0.2 mN/m",
+                high=50.0,
+            ),
+            _positive(
+                "overshoot",
+                "pressure",
+                "of the controller when a stroke begins",
+                "0.5 mN/m",
+                high=100.0,
+            ),
+            _choice(
+                "position_reads",
+                "depth: the reading grows as the substrate goes down; height: the reverse",
+                ("depth", "height"),
+            ),
+            Key(
+                "surface_at",
+                "quantity",
+                "reading at which the lower edge touches the surface",
+                '"12.40 ± 0.05 mm"',
+                "length",
+                -1e5,
+                1e5,
+            ),
+            _positive(
+                "modulus",
+                "pressure",
+                "of the film at the dipping pressure; else an isotherm or the dwells give it",
+                "180 mN/m",
+                high=1e5,
+            ),
+            _positive(
+                "stroke_length",
+                "length",
+                "substrate length that crosses the surface",
+                "25 mm",
+                high=1e5,
+            ),
             _positive("speed", "speed", "of the substrate", "5 mm/min", high=1e4),
-            _positive("speed_tolerance", "speed", "allowed departure from it", "0.2 mm/min", high=1e4),
+            _positive(
+                "speed_tolerance", "speed", "allowed departure from it", "0.2 mm/min", high=1e4
+            ),
             Key("dwell_top", "quantity", "wait above the surface", '"60 s"', "time", 0.0, 1e9),
             Key("dwell_bottom", "quantity", "wait below the surface", '"10 s"', "time", 0.0, 1e9),
         ),
@@ -180,15 +302,45 @@ SECTIONS: Final[tuple[Section, ...]] = (
         "The multilayer as designed.",
         (
             Key("layers", "integer", "how many", "20", low=1, high=1e6),
-            _choice("type", "X: down-strokes only; Z: up-strokes only; Y: both, equal; XY: both, unequal",
-                    ("Y", "X", "Z", "XY")),
+            _choice(
+                "type",
+                "X: down-strokes only; Z: up-strokes only; Y: both, equal; XY: both, unequal",
+                ("Y", "X", "Z", "XY"),
+            ),
             _choice("first_stroke", "the first that deposits", ("up", "down")),
-            Key("accept", "range", "transfer ratio allowed for a stroke", "[0.95, 1.05]", low=-10.0, high=10.0),
-            Key("accept_mean", "range", "transfer ratio allowed on average", "[0.97, 1.03]", low=-10.0, high=10.0),
+            Key(
+                "accept",
+                "range",
+                "transfer ratio allowed for a stroke",
+                "[0.95, 1.05]",
+                low=-10.0,
+                high=10.0,
+            ),
+            Key(
+                "accept_mean",
+                "range",
+                "transfer ratio allowed on average",
+                "[0.97, 1.03]",
+                low=-10.0,
+                high=10.0,
+            ),
             _positive("layer_thickness", "thickness", "of one layer", "2.5 ± 0.05 nm", high=1e6),
-            _positive("thickness_tolerance", "thickness", "allowed error of the whole stack", "2 nm", high=1e9),
-            Key("drift_limit", "number", "largest change of the transfer ratio from stroke to stroke", "0.002",
-                low=0.0, high=10.0, above=True),
+            _positive(
+                "thickness_tolerance",
+                "thickness",
+                "allowed error of the whole stack",
+                "2 nm",
+                high=1e9,
+            ),
+            Key(
+                "drift_limit",
+                "number",
+                "largest change of the transfer ratio from stroke to stroke",
+                "0.002",
+                low=0.0,
+                high=10.0,
+                above=True,
+            ),
             Key("renewals", "integer", "how often the film may be renewed", "1", low=0, high=1e6),
         ),
     ),
@@ -200,7 +352,9 @@ SECTIONS: Final[tuple[Section, ...]] = (
             _choice("strokes", "which strokes lay it down", ("both", "down", "up")),
             _positive("layer_thickness", "thickness", "of one layer", "2.5 ± 0.05 nm", high=1e6),
             _MOLAR_MASS,
-            _positive("molecular_area", "molecular_area", "at the dipping pressure", "0.20 nm^2", high=1e6),
+            _positive(
+                "molecular_area", "molecular_area", "at the dipping pressure", "0.20 nm^2", high=1e6
+            ),
         ),
         many=True,
     ),
@@ -209,10 +363,18 @@ SECTIONS: Final[tuple[Section, ...]] = (
         "What is wanted of the dipping pressure.",
         (
             _text("phase", "phase to dip in", "liquid-condensed"),
-            _positive("collapse_margin", "pressure", "to keep below collapse", "5 mN/m", high=200.0),
-            _positive("guard_band", "pressure", "to keep from any transition", "2 mN/m", high=200.0),
-            _positive("packing_error", "fraction", "largest error of area per molecule", "0.5 %", high=1.0),
-            _positive("loss", "fraction", "largest part of the film lost while dipping", "5 %", high=1.0),
+            _positive(
+                "collapse_margin", "pressure", "to keep below collapse", "5 mN/m", high=200.0
+            ),
+            _positive(
+                "guard_band", "pressure", "to keep from any transition", "2 mN/m", high=200.0
+            ),
+            _positive(
+                "packing_error", "fraction", "largest error of area per molecule", "0.5 %", high=1.0
+            ),
+            _positive(
+                "loss", "fraction", "largest part of the film lost while dipping", "5 %", high=1.0
+            ),
             Key("renewals", "integer", "how often the film may be renewed", "0", low=0, high=1e6),
         ),
     ),

@@ -27,7 +27,9 @@ def _line(key: Key) -> str:
     line = f"{setting:<42}  # {meaning}"
     if len(line) <= _WIDTH:
         return line
-    return "\n".join([*textwrap.wrap(meaning, _WIDTH, initial_indent="#   ", subsequent_indent="#   "), setting])
+    return "\n".join(
+        [*textwrap.wrap(meaning, _WIDTH, initial_indent="#   ", subsequent_indent="#   "), setting]
+    )
 
 
 def _block(section: Section) -> str:

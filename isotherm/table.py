@@ -121,7 +121,7 @@ def _find_rows(data: bytes, where: str) -> _Text:
     """Decode, and find where the rows begin and how they are laid out."""
     decoded = decode(data[: 4 * _HEAD], where=where, whole=len(data) <= 4 * _HEAD)
     encoding = decoded.encoding
-    if encoding.startswith("utf-16") or encoding.startswith("utf-32"):
+    if encoding.startswith(("utf-16", "utf-32")):
         data = decode(data, where=where).text.encode("utf-8", "replace")
         encoding = "utf-8"
     elif data.startswith(b"\xef\xbb\xbf"):

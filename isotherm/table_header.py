@@ -17,13 +17,16 @@ __all__ = ["Header", "HeaderCell", "find_header", "parse_cell", "split_header"]
 _LINES_ABOVE: Final = 12  # text lines looked at above the rows
 _COMMENT_SIGNS: Final = "#%!*/'>"
 _BRACKETS: Final = re.compile(r"[(\[{<]([^()\[\]{}<>]{0,40})[)\]}>]")
-_CLOCK_FORMAT: Final = re.compile(r"[hHmMsSdDyYjJtT]{1,4}(?:[:.\-/ ][hHmMsSfFdDyYjJtT]{1,4})+", re.ASCII)
-# What stands in brackets beside a name without being a unit.
-_NOTES: Final = frozenset(
-    "raw filtered smoothed corrected mean average avg left right front back rear top bottom measured calculated "
-    "calc absolute abs pi gamma a t p v x y sensor probe channel ch kanal links rechts total actual ist signal "
-    "optional plate paper side l r".split()
+_CLOCK_FORMAT: Final = re.compile(
+    r"[hHmMsSdDyYjJtT]{1,4}(?:[:.\-/ ][hHmMsSfFdDyYjJtT]{1,4})+", re.ASCII
 )
+# What stands in brackets beside a name without being a unit.
+_NOTE_WORDS: Final = (
+    "raw filtered smoothed corrected mean average avg left right front back rear top bottom measured "
+    "calculated calc absolute abs pi gamma a t p v x y sensor probe channel ch kanal links rechts "
+    "total actual ist signal optional plate paper side l r"
+)
+_NOTES: Final = frozenset(_NOTE_WORDS.split())
 
 
 @dataclass(frozen=True)
@@ -62,7 +65,7 @@ def parse_cell(text: str) -> HeaderCell:
     for match in [*reversed(groups), *([outer] if outer else [])]:
         inside = match.group(1).strip()
         name = " ".join((plain[: match.start()] + " " + plain[match.end() :]).split())
-        if _CLOCK_FORMAT.fullmatch(inside):
+        if _is_clock_format(inside):
             return HeaderCell(text, name, clock=True)
         # one letter in brackets after a name is as often its symbol: then the unit must suit the name
         if is_unit(inside) and (len(inside) > 1 or _suits(name, inside)):
@@ -79,10 +82,18 @@ def parse_cell(text: str) -> HeaderCell:
     elif "/" in plain:
         name, _, right = plain.partition("/")
         right = right.strip()
-        if roles_of(name, None) and 0 < len(right) <= 20 and not plain_words(right).startswith("molec"):
+        if (
+            roles_of(name, None)
+            and 0 < len(right) <= 20
+            and not plain_words(right).startswith("molec")
+        ):
             unknown = right
     name = plain if unknown is None else plain.replace(unknown, " ").strip(" ()[]{}<>/")
     return HeaderCell(text, name, unknown=unknown)
+
+
+def _is_clock_format(text: str) -> bool:
+    return ":" in text and _CLOCK_FORMAT.fullmatch(text) is not None
 
 
 def _suits(name: str, unit: str) -> bool:
@@ -169,7 +180,13 @@ def _join_units(cells: list[str]) -> list[str]:
     out: list[str] = []
     for cell in cells:
         bare = cell.strip("()[] ")
-        if out and cell and is_unit(bare) and not is_unit(out[-1]) and (len(bare) > 1 or bare != "A"):
+        if (
+            out
+            and cell
+            and is_unit(bare)
+            and not is_unit(out[-1])
+            and (len(bare) > 1 or bare != "A")
+        ):
             out[-1] = f"{out[-1]} ({bare})"
         else:
             out.append(cell)
@@ -178,7 +195,7 @@ def _join_units(cells: list[str]) -> list[str]:
 
 def _is_unit_cell(cell: str) -> bool:
     bare = cell.strip("()[]{}<> ")
-    return is_unit(bare) or _CLOCK_FORMAT.fullmatch(bare) is not None
+    return is_unit(bare) or _is_clock_format(bare)
 
 
 def _is_unit_line(cells: Sequence[str]) -> bool:
@@ -225,9 +242,8 @@ def _choose(above: list[tuple[int, list[str]]]) -> Header:
             units = cells
             continue
         parsed = [parse_cell(cell) for cell in cells]
-        if names is None:
-            names = (number, parsed)
-        elif place < 4 and _known(parsed) >= 2 and _known(parsed) > _known(names[1]):
+        better = names is not None and place < 4 and _known(parsed) > max(1, _known(names[1]))
+        if names is None or better:
             names = (number, parsed)
     if names is None:
         if units is None:
@@ -235,9 +251,7 @@ def _choose(above: list[tuple[int, list[str]]]) -> Header:
         return Header(tuple(_with_unit(HeaderCell(c, ""), c) for c in units), above[0][0])
     cells_out = names[1]
     if units is not None:
-        cells_out = [
-            _with_unit(cell, unit) for cell, unit in zip(cells_out, units, strict=True)
-        ]
+        cells_out = [_with_unit(cell, unit) for cell, unit in zip(cells_out, units, strict=True)]
     return Header(tuple(cells_out), names[0])
 
 
@@ -249,7 +263,7 @@ def _with_unit(cell: HeaderCell, unit: str) -> HeaderCell:
     bare = unit.strip("()[]{}<> ")
     if cell.unit is not None or not bare or bare.lower() in MISSING:
         return cell
-    if _CLOCK_FORMAT.fullmatch(bare) and not is_unit(bare):
+    if _is_clock_format(bare):
         return HeaderCell(cell.text, cell.name, clock=True)
     name = cell.name
     if cell.unknown is not None:

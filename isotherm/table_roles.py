@@ -113,7 +113,9 @@ def _prefer_numbers(
     if len(columns) - len(clocks) == 1:
         for column in clocks:
             columns.remove(column)
-            warnings.append(f"column {describe(column, cells[column])} also gives time and is not used")
+            warnings.append(
+                f"column {describe(column, cells[column])} also gives time and is not used"
+            )
 
 
 def _settle_unsure(
@@ -137,7 +139,11 @@ def _settle_unsure(
                 continue
             others = [r for c in columns for r in cells[c].roles if r != role]
             open_others = [r for r in others if r in wanted and r not in fixed]
-            if len(columns) > 1 or open_others or (role == "barrier_position" and "area" not in fixed):
+            if (
+                len(columns) > 1
+                or open_others
+                or (role == "barrier_position" and "area" not in fixed)
+            ):
                 choices = " or ".join(f'"{r}"' for r in dict.fromkeys([role, *others]))
                 raise UpstrokeError(
                     f"column {_listing(cells, columns)} could be {choices}",
@@ -204,8 +210,8 @@ def _find(cells: Sequence[HeaderCell], hint: ColumnHint, where: str) -> int:
             )
         return hint.index - 1
     wanted = _fold(hint.header or "")
-    for text in (lambda c: c.text, lambda c: c.name):
-        found = [i for i, cell in enumerate(cells) if cell.text and _fold(text(cell)) == wanted]
+    for texts in ([cell.text for cell in cells], [cell.name for cell in cells]):
+        found = [i for i, text in enumerate(texts) if text and _fold(text) == wanted]
         if len(found) == 1:
             return found[0]
         if found:

@@ -31,7 +31,11 @@ def _inferred(role: str, values: NDArray[np.float64], needed: bool) -> str | Non
     if not len(finite):
         return None
     low, high = float(finite.min()), float(finite.max())
-    if role in ("pressure", "tension") and _SURFACE_FORCE[0] < high < _SURFACE_FORCE[1] and low > -50:
+    if (
+        role in ("pressure", "tension")
+        and _SURFACE_FORCE[0] < high < _SURFACE_FORCE[1]
+        and low > -50
+    ):
         return "mN/m"
     if role == "temperature" and low > _CELSIUS[0] and high < _CELSIUS[1]:
         return "degC"

@@ -27,59 +27,67 @@ ROLE_DIMENSION: Final[dict[str, str]] = {
 # takes it, so that "surface pressure" is not taken for a surface, nor "area per molecule" for an area.
 _PHRASES: Final[tuple[tuple[str, tuple[str, ...]], ...]] = (
     ("molecular_area", (
-        "area per molecule", "area molecule", "molecular area", "mean molecular area", "mma", "apl", "apm",
-        "area per lipid", "area lipid", "area per residue", "area per monomer", "area per amphiphile", "specific area",
-        "molekulflache", "molekuelflaeche", "molekularflache", "flache pro molekul", "flaeche pro molekuel",
-        "flache je molekul", "flache molekul", "platzbedarf", "aire moleculaire", "aire par molecule", "aire molecule",
-        "surface par molecule", "surface moleculaire", "area molecular", "area por molecula", "area molecula",
-        "area molecolare", "area per molecola", "molar area",
+        "area per molecule", "area molecule", "molecular area", "mean molecular area", "mma",
+        "apl", "apm", "area per lipid", "area lipid", "area per residue", "area per monomer",
+        "area per amphiphile", "specific area", "molekulflache", "molekuelflaeche",
+        "molekularflache", "flache pro molekul", "flaeche pro molekuel", "flache je molekul",
+        "flache molekul", "platzbedarf", "aire moleculaire", "aire par molecule", "aire molecule",
+        "surface par molecule", "surface moleculaire", "area molecular", "area por molecula",
+        "area molecula", "area molecolare", "area per molecola", "molar area",
     )),
     ("pressure", (
-        "surface pressure", "film pressure", "lateral pressure", "spreading pressure", "pressure", "press", "pres",
-        "surfpress", "surf press", "surf pres", "surfpres", "oberflachendruck", "oberflaechendruck", "filmdruck",
-        "lateraldruck", "spreitungsdruck", "druck", "pression", "presion", "pressione", "pressao", "pi",
+        "surface pressure", "film pressure", "lateral pressure", "spreading pressure", "pressure",
+        "press", "pres", "surfpress", "surf press", "surf pres", "surfpres", "oberflachendruck",
+        "oberflaechendruck", "filmdruck", "lateraldruck", "spreitungsdruck", "druck", "pression",
+        "presion", "pressione", "pressao", "pi",
     )),
     ("tension", (
         "surface tension", "interfacial tension", "tension", "surf tens", "oberflachenspannung",
-        "oberflaechenspannung", "grenzflachenspannung", "tension superficielle", "tension superficial",
-        "tensione", "tensao", "gamma",
+        "oberflaechenspannung", "grenzflachenspannung", "tension superficielle",
+        "tension superficial", "tensione", "tensao", "gamma",
     )),
     ("potential", (
-        "surface potential", "volta potential", "contact potential", "potential", "oberflachenpotential",
-        "oberflachenpotenzial", "potenzial", "potentiel", "potencial", "potenziale", "delta v", "deltav", "dv", "d v",
+        "surface potential", "volta potential", "contact potential", "potential",
+        "oberflachenpotential", "oberflachenpotenzial", "potenzial", "potentiel", "potencial",
+        "potenziale", "delta v", "deltav", "dv", "d v",
     )),
     ("temperature", (
-        "temperature", "temp", "temperatur", "temperatura", "subphase temperature", "wassertemperatur",
+        "temperature", "temp", "temperatur", "temperatura", "subphase temperature",
+        "wassertemperatur",
     )),
     ("dipper_position", (
-        "dipper position", "dipper", "dipper depth", "dip position", "dipping position", "substrate position",
-        "sample position", "immersion depth", "immersion", "dip depth", "substrate", "eintauchtiefe",
-        "tauchtiefe", "tauchposition", "substratposition", "hubposition", "depth", "tiefe", "profondeur",
-        "profundidad", "profondita", "substrat", "lift position", "elevator position", "elevator",
+        "dipper position", "dipper", "dipper depth", "dip position", "dipping position",
+        "substrate position", "sample position", "immersion depth", "immersion", "dip depth",
+        "substrate", "eintauchtiefe", "tauchtiefe", "tauchposition", "substratposition",
+        "hubposition", "depth", "tiefe", "profondeur", "profundidad", "profondita", "substrat",
+        "lift position", "elevator position", "elevator",
     )),
     ("barrier_position", (
-        "barrier position", "barrier", "barriers", "barrier pos", "barrier separation", "barrier distance",
-        "barriere", "barrierenposition", "barriereposition", "schranke", "schrankenposition", "barrera",
-        "barreras", "barriera", "barrieres",
+        "barrier position", "barrier", "barriers", "barrier pos", "barrier separation",
+        "barrier distance", "barriere", "barrierenposition", "barriereposition", "schranke",
+        "schrankenposition", "barrera", "barreras", "barriera", "barrieres",
     )),
     ("area", (
-        "trough area", "film area", "surface area", "total area", "area", "flache", "flaeche", "filmflache",
-        "trogflache", "gesamtflache", "aire", "surface", "superficie", "areas",
+        "trough area", "film area", "surface area", "total area", "area", "flache", "flaeche",
+        "filmflache", "trogflache", "gesamtflache", "aire", "surface", "superficie", "areas",
     )),
     ("time", (
-        "time", "elapsed time", "elapsed", "zeit", "messzeit", "laufzeit", "temps", "tiempo", "tempo", "timestamp",
-        "time stamp", "datetime", "date time", "uhrzeit", "heure", "hora", "clock", "duration", "dauer",
+        "time", "elapsed time", "elapsed", "zeit", "messzeit", "laufzeit", "temps", "tiempo",
+        "tempo", "timestamp", "time stamp", "datetime", "date time", "uhrzeit", "heure", "hora",
+        "clock", "duration", "dauer",
     )),
 )  # fmt: skip
 
 # Words that make a column something derived from or about the quantity, not its reading.
-_EXCLUDING: Final = frozenset(
-    "speed rate velocity velocidad vitesse geschwindigkeit target setpoint set point soll sollwert consigne consigna "
-    "std sd stdev stddev deviation error err uncertainty unc noise change modulus compressibility elasticity "
-    "derivative slope ratio relative difference diff air room ambient raumtemperatur lufttemperatur humidity alarm "
-    "limit max min maximum minimum maximal minimal count cycle cycles status state mode flag percent remaining "
-    "tolerance gain offset wanted desired reference ref step".split()
+_EXCLUDING_WORDS: Final = (
+    "speed rate velocity velocidad vitesse geschwindigkeit target setpoint set point soll "
+    "sollwert consigne consigna std sd stdev stddev deviation error err uncertainty unc noise "
+    "change modulus compressibility elasticity derivative slope ratio relative difference "
+    "diff air room ambient raumtemperatur lufttemperatur humidity alarm limit max min maximum "
+    "minimum maximal minimal count cycle cycles status state mode flag percent remaining "
+    "tolerance gain offset wanted desired reference ref step "
 )
+_EXCLUDING: Final = frozenset(_EXCLUDING_WORDS.split())
 # Symbols alone, told apart by unit (and capital for T): they need a unit that fits.
 _SYMBOLS: Final[dict[str, tuple[str, ...]]] = {
     "a": ("molecular_area", "area"),
@@ -94,8 +102,17 @@ _SYMBOLS: Final[dict[str, tuple[str, ...]]] = {
     "u": ("potential",),
     "x": ("barrier_position",),
 }
-_POSITION: Final = frozenset({"position", "pos", "posicion", "posizione", "height", "hohe", "hoehe", "stage", "z"})
-_GREEK: Final = {"π": " pi ", "γ": " gamma ", "δ": " delta ", "σ": " sigma ", "θ": " theta ", "∆": " delta "}
+_POSITION: Final = frozenset(
+    {"position", "pos", "posicion", "posizione", "height", "hohe", "hoehe", "stage", "z"}
+)
+_GREEK: Final = {
+    "π": " pi ",
+    "γ": " gamma ",
+    "δ": " delta ",
+    "σ": " sigma ",
+    "θ": " theta ",
+    "∆": " delta ",
+}
 
 
 @lru_cache(maxsize=512)

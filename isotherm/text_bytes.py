@@ -37,6 +37,9 @@ _TEXT_CONTROLS: Final = frozenset(b"\t\n\x0b\x0c\r\x1a\x1b")
 _CONTROLS: Final = bytes(b for b in range(32) if b not in _TEXT_CONTROLS)
 
 
+_ASCII: Final = frozenset(map(chr, range(128)))
+
+
 @dataclass(frozen=True)
 class Decoded:
     """The text of a file and the encoding it was in."""
@@ -57,7 +60,9 @@ def read_bytes(path: str | Path) -> bytes:
     try:
         # opened first and judged by its handle, so that nothing can change between the two;
         # O_NONBLOCK: a pipe without a writer would wait for ever
-        handle = os.open(path, os.O_RDONLY | getattr(os, "O_BINARY", 0) | getattr(os, "O_NONBLOCK", 0))
+        handle = os.open(
+            path, os.O_RDONLY | getattr(os, "O_BINARY", 0) | getattr(os, "O_NONBLOCK", 0)
+        )
     except FileNotFoundError:
         raise UpstrokeError("no such file", where=where, remedy="check the path") from None
     except IsADirectoryError:
@@ -130,7 +135,9 @@ def decode(data: bytes, *, where: str, whole: bool = True) -> Decoded:
         )
     try:
         text = codecs.getincrementaldecoder("utf-8")("strict").decode(data, final=whole)
-        return Decoded(text, "utf-8")
+        # the two bytes of Å² in Latin-1 happen to make one letter of Lithuanian in UTF-8
+        if not ("\u0172" in text and set(text) - _ASCII == {"\u0172"}):
+            return Decoded(text, "utf-8")
     except UnicodeDecodeError:
         pass
     # Windows exports in western alphabets; the few bytes it leaves open are kept as in Latin-1

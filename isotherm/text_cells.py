@@ -11,7 +11,8 @@ __all__ = ["MISSING", "cell_kind", "to_number"]
 # What instruments and spreadsheets write where there is no reading (compared in lower case).
 MISSING: Final = frozenset(
     {
-        "", "-", "--", "---", "—", "–", "nan", "-nan", "+nan", "na", "n/a", "n.a.", "null", "none", "nil", "?", "*", ".",
+        "", "-", "--", "---", "—", "–", "nan", "-nan", "+nan", "na", "n/a", "n.a.",
+        "null", "none", "nil", "?", "*", ".",
         "#n/a", "#na", "#num!", "#div/0!", "#value!", "#ref!", "1.#qnan", "-1.#qnan", "1.#ind", "-1.#ind",
         "nan()", "missing", "void",
     }
@@ -19,7 +20,8 @@ MISSING: Final = frozenset(
 _INFINITE: Final = {
     "inf": math.inf, "+inf": math.inf, "-inf": -math.inf, "infinity": math.inf, "+infinity": math.inf,
     "-infinity": -math.inf, "∞": math.inf, "+∞": math.inf, "-∞": -math.inf, "1.#inf": math.inf,
-    "-1.#inf": -math.inf, "ol": math.inf, "overload": math.inf, "overflow": math.inf, "over": math.inf, "ovl": math.inf,
+    "-1.#inf": -math.inf, "ol": math.inf, "overload": math.inf, "overflow": math.inf,
+    "over": math.inf, "ovl": math.inf,
     "ovrflw": math.inf,
 }  # fmt: skip
 _LONGEST: Final = 48  # characters of one number
@@ -27,10 +29,12 @@ _POINT: Final = re.compile(r"[-+]?(?:\d+(?:\.\d*)?|\.\d+)(?:[eEdD][-+]?\d{1,3})?
 _COMMA: Final = re.compile(r"[-+]?(?:\d+(?:,\d+)?|,\d+)(?:[eEdD][-+]?\d{1,3})?", re.ASCII)
 # Grouped thousands count only where nothing else can be meant: with decimals, or two groups and more.
 _GROUPED_POINT: Final = re.compile(
-    r"[-+]?\d{1,3}(?:(?:,\d{3})+\.\d+|(?:,\d{3}){2,}|(?:[ '\u00a0\u202f]\d{3})+(?:\.\d+)?)", re.ASCII
+    r"[-+]?\d{1,3}(?:(?:,\d{3})+\.\d+|(?:,\d{3}){2,}|(?:[ '\u00a0\u202f]\d{3})+(?:\.\d+)?)",
+    re.ASCII,
 )
 _GROUPED_COMMA: Final = re.compile(
-    r"[-+]?\d{1,3}(?:(?:\.\d{3})+,\d+|(?:\.\d{3}){2,}|(?:[ '\u00a0\u202f]\d{3})+(?:,\d+)?)", re.ASCII
+    r"[-+]?\d{1,3}(?:(?:\.\d{3})+,\d+|(?:\.\d{3}){2,}|(?:[ '\u00a0\u202f]\d{3})+(?:,\d+)?)",
+    re.ASCII,
 )
 _CLOCK: Final = re.compile(
     r"(?:\d{1,4}[-./]\d{1,2}[-./]\d{1,4}[T ,]{0,2})?\d{1,3}:\d{1,2}(?::\d{1,2}(?:[.,]\d{1,9})?|[.,]\d{1,9})?"
@@ -44,6 +48,9 @@ def to_number(cell: str, decimal: str) -> float | None:
     """Read one stripped cell; NaN where it is missing, infinite where it says so, None where it is text."""
     if len(cell) > _LONGEST:
         return None
+    if cell[:1].isalpha():  # words are the commonest cells that are no numbers
+        low = cell.lower()
+        return math.nan if low in MISSING else _INFINITE.get(low)
     if "−" in cell:
         cell = cell.replace("−", "-")
     plain, grouped = (_POINT, _GROUPED_POINT) if decimal == "." else (_COMMA, _GROUPED_COMMA)
@@ -68,6 +75,6 @@ def cell_kind(cell: str, decimal: str) -> str:
     number = to_number(cell, decimal)
     if number is not None:
         return "E" if math.isnan(number) else "N"
-    if len(cell) <= _LONGEST and _CLOCK.fullmatch(cell):
+    if cell[:1].isdigit() and len(cell) <= _LONGEST and _CLOCK.fullmatch(cell):
         return "C"
     return "T"

@@ -105,7 +105,9 @@ def _days(
         spans = [max(one.values()) for one in found]
         if spans.count(min(spans)) > 1:
             raise UpstrokeError(
-                "day and month cannot be told apart", where=where, remedy="write dates as 2031-05-06"
+                "day and month cannot be told apart",
+                where=where,
+                remedy="write dates as 2031-05-06",
             )
         return found[spans.index(min(spans))]
     return found[0]

@@ -12,7 +12,9 @@ from isotherm.text_cells import cell_kind
 
 __all__ = ["Block", "Layout", "find_block", "merge_kinds", "row_kinds"]
 
-_ENOUGH: Final = 24  # rows in a row: what follows is taken to be more of the same until parsing says otherwise
+_ENOUGH: Final = (
+    24  # rows in a row: what follows is taken to be more of the same until parsing says otherwise
+)
 _LONGEST_LINE: Final = 20_000  # characters; no row of readings is longer
 _MOST_CELLS: Final = 1000
 
@@ -31,7 +33,9 @@ class Layout:
             return line.replace('"', " ").split() if self.quoted else line.split()
         if '"' in line:
             try:
-                cells = next(csv.reader([line], delimiter=self.delimiter, skipinitialspace=True), [])
+                cells = next(
+                    csv.reader([line], delimiter=self.delimiter, skipinitialspace=True), []
+                )
             except csv.Error:
                 cells = line.split(self.delimiter)
         else:

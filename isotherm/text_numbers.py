@@ -108,7 +108,8 @@ def read_numbers(
                 line += len(piece.lines)
             pieces.append(piece)
         return _without_blanks(_joined(pieces, reader))
-    return reader.tolerant(data[start:], first_line)
+    regular = reader.regular(data[start:], first_line)
+    return regular if regular is not None else reader.tolerant(data[start:], first_line)
 
 
 def _pieces(data: bytes, start: int) -> Iterator[tuple[int, int]]:
@@ -234,6 +235,36 @@ class _Reader:
             {c: frame[c].fillna("").astype(str).tolist() for c in self.clocks},
             np.arange(first_line, first_line + count, dtype=np.int64),
         )
+
+    def regular(self, data: bytes, first_line: int) -> Numbers | None:
+        """Read rows of plain numbers, cells alike in number, without pandas; None when there is anything else."""
+        layout, columns = self.layout, self.block.columns
+        if self.clocks or b'"' in data or b"_" in data:
+            return None
+        text = data.decode(self.encoding, "replace").replace("\r\n", "\n")
+        if layout.decimal == ",":
+            if "." in text:
+                return None
+            text = text.replace(",", ".")
+        lines = text.rstrip("\n").split("\n")
+        if "\r" in text:
+            return None
+        if layout.delimiter == " ":
+            rows = [line.split() for line in lines]
+            if any(len(row) != columns for row in rows):
+                return None
+            cells = [cell for row in rows for cell in row]
+        else:
+            cuts = columns - 1
+            if any(line.count(layout.delimiter) != cuts for line in lines):
+                return None
+            cells = layout.delimiter.join(lines).split(layout.delimiter)
+        try:
+            read = {c: np.array(list(map(float, cells[c::columns]))) for c in self.wanted}
+        except ValueError:
+            return None
+        numbers = np.arange(first_line, first_line + len(lines), dtype=np.int64)
+        return Numbers({c: read[c] for c in self.numeric}, {}, numbers)
 
     def _rectangular(self, data: bytes, start: int, stop: int) -> bool:
         rows = data.count(b"\n", start, stop)

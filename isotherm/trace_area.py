@@ -26,7 +26,7 @@ _DISAGREEMENT: Final = 0.005
 
 @dataclass(frozen=True)
 class Areas:
-    """molecular, trough : (n,) nm^2 and cm^2 (None where unknown). relative_u : of the common scale, or None."""
+    """molecular, trough : (n,) nm^2 and cm^2 or None. relative_u : of the common scale, or None."""
 
     molecular: FloatArray
     trough: FloatArray | None
@@ -53,9 +53,9 @@ def areas_of(table: Table, sheet: RunSheet) -> Areas:
     warnings: list[str] = []
     own = table.values.get("molecular_area")
     trough: FloatArray | None = table.values.get("area")
-    if trough is None and "barrier_position" in table.values:
-        if own is None or sheet.trough.width is not None:
-            trough = trough_area(table, sheet.trough, warnings)
+    barriers = "barrier_position" in table.values
+    if trough is None and barriers and (own is None or sheet.trough.width is not None):
+        trough = trough_area(table, sheet.trough, warnings)
     if trough is None or (own is not None and not _amounts_given(sheet.film)):
         if own is None:  # the reader asks for one of the three before it comes to this
             raise UpstrokeError("no area", where=table.source.path)

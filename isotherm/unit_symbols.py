@@ -79,8 +79,8 @@ SYMBOLS: Final[dict[str, tuple[Symbol, ...]]] = {
 
 _SPELLINGS: Final[dict[str, tuple[str, ...]]] = {
     "molecule": (
-        "molecules", "molec", "molecs", "molecul", "mlc", "mlcl", "mol.", "lipid", "lipids", "molekül", "Molekül",
-        "molekul", "Molekul", "molécule", "molécula", "molecola", "Molecule", "Molec", "Lipid",
+        "molecules", "molec", "molecs", "molecul", "mlc", "mlcl", "mol.", "lipid", "lipids", "molekül",
+        "Molekül", "molekul", "Molekul", "molécule", "molécula", "molecola", "Molecule", "Molec", "Lipid",
     ),
     "residue": ("residues", "monomer", "monomers"),
     "s": ("sec", "secs", "second", "seconds", "Sec", "Sekunde", "Sekunden", "sek", "Sek", "secondes",
@@ -112,8 +112,10 @@ WHOLE: Final[dict[str, str]] = {
     "mn/m": "mN/m", "mnm-1": "mN/m", "mn.m-1": "mN/m", "mn·m-1": "mN/m", "mnm^-1": "mN/m",
     "mnperm": "mN/m", "n/m": "N/m", "dyn/cm": "dyn/cm", "dyne/cm": "dyn/cm",
     "dynes/cm": "dyn/cm", "dyncm-1": "dyn/cm", "mj/m2": "mJ/m^2", "mj/m^2": "mJ/m^2", "cm2": "cm^2",
-    "cm^2": "cm^2", "sqcm": "cm^2", "qcm": "cm^2", "mm2": "mm^2", "mm^2": "mm^2", "sqmm": "mm^2", "nm2": "nm^2",
-    "nm^2": "nm^2", "sqnm": "nm^2", "a2": "Å^2", "å2": "Å^2", "å^2": "Å^2", "a^2": "Å^2", "sqa": "Å^2", "sqå": "Å^2",
+    "cm^2": "cm^2", "sqcm": "cm^2", "qcm": "cm^2", "mm2": "mm^2", "mm^2": "mm^2", "sqmm": "mm^2",
+    "nm2": "nm^2",
+    "nm^2": "nm^2", "sqnm": "nm^2", "a2": "Å^2", "å2": "Å^2", "å^2": "Å^2", "a^2": "Å^2",
+    "sqa": "Å^2", "sqå": "Å^2",
     "sec": "s", "min": "min", "h": "h", "s": "s", "mm": "mm", "cm": "cm", "mv": "mV", "v": "V",
     "c": "degC", "k": "K", "ml": "mL", "ul": "uL", "mg/ml": "mg/mL", "g/l": "g/L", "g/mol": "g/mol",
     "mmol/l": "mmol/L", "ms": "ms", "m2": "m^2",

@@ -29,7 +29,7 @@ _TOKEN: Final = re.compile(
 
 @dataclass(frozen=True)
 class Unit:
-    """A unit: `mantissa` × 10^`exponent` SI units of dimension `dims`; `celsius` where it has a zero of its own.
+    """A unit: `mantissa` × 10^`exponent` SI units of dimension `dims`; `celsius`: its zero is its own.
 
     per_molecule : divided by a count of molecules, as in Å^2/molecule.
     """
@@ -53,7 +53,7 @@ class Conversion:
 
     def scale(self, value: FloatOrArray) -> FloatOrArray:
         """Convert a difference or an uncertainty (float or (n,) array), leaving the zero aside."""
-        # Powers of ten divide rather than multiply when negative: 21.5 Å^2 then is 0.215 nm^2 to the last bit.
+        # Powers of ten divide rather than multiply when negative: 21.5 Å^2 is then exactly 0.215 nm^2.
         out = value * self.mantissa if self.mantissa != 1.0 else value
         if self.exponent > 0:
             return out * 10.0**self.exponent
@@ -79,7 +79,8 @@ def _normal(text: str) -> str:
 
 # (NFKC has already turned superscript digits into digits and the ångström and micro signs into letters.)
 _FOLDS: Final = (
-    ("−", "-"), ("–", "-"), ("—", "-"), ("⁄", "/"), ("∕", "/"), ("÷", "/"), ("**", "^"), ("⋅", "·"), ("•", "·"),
+    ("−", "-"), ("–", "-"), ("—", "-"), ("⁄", "/"), ("∕", "/"), ("÷", "/"), ("**", "^"),
+    ("⋅", "·"), ("•", "·"),
     ("∙", "·"), ("×", "·"), ("*", "·"), ("μ", "u"), ("µ", "u"), ("{", ""), ("}", ""), ("$", ""), ("\\", ""),
     ("º", "°"), ("˚", "°"),
 )  # fmt: skip
@@ -354,7 +355,8 @@ def conversion(text: str, dimension: str, *, where: str = "") -> Conversion:
 
 _EXAMPLES: Final[dict[str, str]] = {
     "mm": "mm, cm, m or µm", "nm": "nm or Å", "cm^2": "cm^2, mm^2 or m^2",
-    "nm^2": "nm^2, Å^2 or Å^2/molecule", "mN/m": "mN/m, N/m or dyn/cm", "s": "s, min or h", "degC": "degC or K",
+    "nm^2": "nm^2, Å^2 or Å^2/molecule", "mN/m": "mN/m, N/m or dyn/cm", "s": "s, min or h",
+    "degC": "degC or K",
     "mV": "mV or V", "µL": "µL or mL", "mg/mL": "mg/mL, g/L, mmol/L or µmol/mL", "g/mol": "g/mol or kDa",
     "1": "%, or no unit", "mm/s": "mm/s or mm/min", "1/s": "1/s or 1/h",
 }  # fmt: skip
