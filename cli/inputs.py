@@ -13,6 +13,7 @@ if TYPE_CHECKING:
 
 __all__ = ["column_hints", "load_sheet", "sheet_settings"]
 
+
 def column_hints(texts: list[str] | None) -> tuple[ColumnHint, ...]:
     """Read `--column ROLE=WHICH[:UNIT]` options.
 

@@ -15,7 +15,14 @@ from cli.terminal import say
 from cli.whole import StagedFiles
 from isotherm.errors import UpstrokeError
 
-__all__ = ["FIGURE_SUFFIXES", "OutputChoice", "OutputPlan", "Renderers", "check_target", "plan_outputs"]
+__all__ = [
+    "FIGURE_SUFFIXES",
+    "OutputChoice",
+    "OutputPlan",
+    "Renderers",
+    "check_target",
+    "plan_outputs",
+]
 
 FIGURE_SUFFIXES = (".svg", ".png", ".pdf")
 

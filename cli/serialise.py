@@ -13,6 +13,7 @@ from pathlib import Path
 from typing import Any
 
 from cli import __version__
+from cli.terminal import printable
 from isotherm.errors import UpstrokeError
 
 __all__ = ["csv_bytes", "input_stamp", "json_bytes", "with_provenance"]
@@ -21,7 +22,7 @@ __all__ = ["csv_bytes", "input_stamp", "json_bytes", "with_provenance"]
 NUMERIC_LIBRARIES = ("numpy", "scipy", "pandas", "ruptures")
 
 # A spreadsheet takes a text cell that starts with one of these for a formula.
-FORMULA_STARTS = ("=", "+", "-", "@", "\t", "\r", "\n")
+FORMULA_STARTS = ("=", "+", "-", "@")
 
 
 def json_bytes(payload: Any) -> bytes:
@@ -54,7 +55,7 @@ def csv_bytes(header: Sequence[str], rows: Iterable[Sequence[Any]]) -> bytes:
     """Return a table as UTF-8 CSV, safe to open in a spreadsheet.
 
     Numbers are written with seven significant digits, None and NaN as empty cells. A text cell that
-    a spreadsheet would run as a formula gets a leading apostrophe.
+    a spreadsheet would run as a formula gets a leading apostrophe; control characters are spelt out.
     """
     buffer = io.StringIO(newline="")
     writer = csv.writer(buffer, lineterminator="\n")
@@ -67,7 +68,8 @@ def _cell(value: Any) -> str:
     if value is None:
         return ""
     if isinstance(value, str):
-        return f"'{value}" if value.startswith(FORMULA_STARTS) else value
+        text = printable(value)
+        return f"'{text}" if text.startswith(FORMULA_STARTS) else text
     if isinstance(value, (bool, int)):
         return str(value)
     number = float(value)

@@ -65,6 +65,9 @@ _STYLE: dict[str, Any] = {
     "lines.solid_capstyle": "round",
     "hatch.linewidth": 0.5,
     "hatch.color": FAINT,
+    # hinted glyphs change width with resolution, and labels are placed by measured widths
+    "text.hinting": "no_hinting",
+    "figure.dpi": 160.0,
     "figure.facecolor": "white",
     "savefig.facecolor": "white",
     "path.simplify": True,
@@ -72,8 +75,6 @@ _STYLE: dict[str, Any] = {
     "svg.hashsalt": "upstroke",  # element names that do not change from run to run
     "pdf.fonttype": 42,
 }
-
-PNG_DPI = 160
 
 
 def style() -> AbstractContextManager[None]:
@@ -108,5 +109,5 @@ def figure_bytes(figure: Figure, suffix: str) -> bytes:
     }
     buffer = io.BytesIO()
     with style():
-        figure.savefig(buffer, format=suffix, dpi=PNG_DPI, metadata=metadata[suffix])
+        figure.savefig(buffer, format=suffix, metadata=metadata[suffix])
     return buffer.getvalue()

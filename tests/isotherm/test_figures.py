@@ -141,9 +141,10 @@ def test_a_film_that_did_not_collapse_is_said_to() -> None:
 
 def test_the_coexistence_is_hatched_and_other_phases_are_not() -> None:
     upper = isotherm_figure(CASES["acid"]).axes[0]
+    ends = [p.get_path().get_extents(p.get_patch_transform()) for p in upper.patches]
     bands = {
-        (round(p.get_x(), 3), round(p.get_x() + p.get_width(), 3)): p.get_hatch()
-        for p in upper.patches
+        (round(box.x0, 3), round(box.x1, 3)): p.get_hatch()
+        for p, box in zip(upper.patches, ends, strict=True)
     }
     assert bands[(0.3, 0.6)] == "////"
     assert bands[(0.6, 0.8)] is None
