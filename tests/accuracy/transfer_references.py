@@ -16,6 +16,7 @@ from isotherm.sheet import RunSheet, Substrate
 __all__ = ["spreadsheet", "told_least_squares"]
 
 FloatArray = NDArray[np.float64]
+MOST_FITTED = 5000  # rows of one film's fit; more are averaged in groups
 
 
 def _perimeter_and_face(body: Substrate) -> tuple[float, float]:
@@ -99,23 +100,30 @@ def _carried(
     area (cm^2), excess (smoothed pressure less its set value, mN/m), time (s): (n,). guess: 1/M and its u
     beforehand, m/mN. Returns the area at the set pressure that dwell j has, carried to time t.
     """
-    rows = np.concatenate(dwells)
-    which = np.repeat(np.arange(len(dwells)), [d.size for d in dwells])
-    origin = float(time[rows[0]])
-    t = time[rows] - origin
-    level = np.array([area[d].mean() for d in dwells])
-    noise = 0.012 + 1.05 * float(np.median(np.abs(np.diff(area[rows]))))  # cm^2, of one row
+    thin = max(sum(d.size for d in dwells) // MOST_FITTED, 1)
+    picked = []
+    for d in dwells:
+        group = max(min(thin, d.size // 4), 1)
+        picked.append(d[: d.size - d.size % group].reshape(-1, group))
+    area, excess, time = (
+        np.concatenate([values[p].mean(axis=1) for p in picked]) for values in (area, excess, time)
+    )
+    which = np.repeat(np.arange(len(dwells)), [len(p) for p in picked])
+    origin = float(time[0])
+    t = time - origin
+    level = np.array([area[which == j].mean() for j in range(len(dwells))])
+    noise = 0.012 + 1.05 * float(np.median(np.abs(np.diff(area))))  # cm^2, of one row
     best, decay, least = np.zeros(len(dwells) + 3), np.inf, np.inf
     for trial in (600.0, 1200.0, 2500.0, 5000.0, 10000.0):
-        matrix = np.zeros((rows.size + 3, len(dwells) + 3))
-        matrix[np.arange(rows.size), which] = 1.0
-        matrix[:-3, -1] = -excess[rows] * level[which]
+        matrix = np.zeros((t.size + 3, len(dwells) + 3))
+        matrix[np.arange(t.size), which] = 1.0
+        matrix[:-3, -1] = -excess * level[which]
         matrix[:-3, -2] = -t * level[which]
         matrix[:-3, -3] = -trial * (1.0 - np.exp(-t / trial)) * level[which]
         # the rates are known to lie within 0 and 2e-5 per second: a prior of 7e-6 +- 7e-6 on each
         matrix[-2, -2] = matrix[-1, -3] = noise / 7e-6
         matrix[-3, -1] = noise / guess[1]
-        aim = np.concatenate([area[rows], [noise * guess[0] / guess[1], noise, noise]])
+        aim = np.concatenate([area, [noise * guess[0] / guess[1], noise, noise]])
         fit = np.linalg.lstsq(matrix, aim, rcond=None)[0]
         rest = float(np.sum((aim - matrix @ fit) ** 2))
         if rest < least:

@@ -33,7 +33,7 @@ FloatArray = NDArray[np.float64]
 FAMILIES = ("tracking", "controller", "events")
 AREA_NOISE = 0.012  # cm^2, standard deviation of one reading of the trough area
 FINE_STEP = 0.5  # s, longest step of the physics
-MOST_ROWS = 150_000  # rows of a log; a longer run is sampled more slowly
+MOST_ROWS = 80_000  # rows of a log; a longer run is sampled more slowly
 
 
 @dataclass(frozen=True)
