@@ -117,6 +117,7 @@ def assess(evidence: EvidenceSet, ledger: LedgerView) -> EvidenceResult:
         chi_square=joint.chi_square,
         dof=joint.dof,
         p_value=joint.p_value,
+        pull_p=joint.pull_p,
         disagrees=named,
         undecided=joint.undecided,
         layers=joint.estimate if counted else ledger.total,

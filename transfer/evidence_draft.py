@@ -210,7 +210,8 @@ def _row(
     if "value" in given:
         number = given["value"].replace(",", ".") if decimal_comma else given["value"]
         u = f" ± {given['u']}" if "u" in given else ""
-        per_point["value"] = f"{number}{u} {given.get('unit', '')}".strip()
+        unit = given.get("unit", "")
+        per_point["value"] = f"{number}{u} {'' if unit == '1' else unit}".strip()
     draft.points.append(DraftPoint(dict(per_point), where))
 
 

@@ -29,6 +29,7 @@ Kinds and their settings are listed in `evidence_kinds.KINDS`.
 from __future__ import annotations
 
 import hashlib
+import re
 from pathlib import Path
 from typing import Any
 
@@ -52,6 +53,8 @@ __all__ = ["read_evidence"]
 
 _LARGEST = 20_000_000  # bytes; tables of values are far smaller
 _MOST_LAYERS = 1_000_000
+# Absorbance is a pure number; these are ways to say so.
+_ABSORBANCE_UNIT = re.compile(r"\s*(?:(?<=\d\s)1|AU|a\.u\.|abs)\s*$", re.IGNORECASE)
 
 
 def read_evidence(path: str | Path) -> EvidenceSet:
@@ -168,6 +171,8 @@ def _value(given: dict[str, Any], kind: Kind, where: str) -> Quantity:
     if "u" in given and "±" not in str(text):
         number, _, unit = str(text).strip().partition(" ")
         text = f"{number} ± {given['u']} {unit}".strip()
+    if kind.units == ("1",):
+        text = _ABSORBANCE_UNIT.sub("", str(text))
     first: UpstrokeError | None = None
     for unit in kind.units:
         try:

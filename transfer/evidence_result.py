@@ -120,6 +120,7 @@ class JointResult:
     chi_square: float
     dof: int
     p_value: float | None
+    pull_p: float | None
     disagrees: tuple[str, ...]
     undecided: tuple[str, ...]
     layers: Quantity | None
@@ -135,6 +136,7 @@ class JointResult:
             "chi_square": json_number(self.chi_square),
             "degrees_of_freedom": self.dof,
             "p_value": json_number(self.p_value),
+            "largest_pull_p": json_number(self.pull_p),
             "disagrees": list(self.disagrees),
             "undecided": list(self.undecided),
             "layers": _json(self.layers),
