@@ -9,7 +9,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from isotherm import features
-from isotherm.branches import BranchRows, find_branches
+from isotherm.branches import BranchRows, find_branches, steady_area
 from isotherm.condense import Nodes, condense, despike, row_noise
 from isotherm.errors import UpstrokeError
 from isotherm.knee_model import KneeModel
@@ -29,6 +29,8 @@ DEFAULT_PRESSURES: Final = (10.0, 20.0, 30.0, 40.0)  # mN/m
 FEWEST_ROWS: Final = 8  # rows a branch needs
 FLAT_SIGMAS: Final = 2.0  # a start counts as flat while its modulus is within this many u of FLAT
 FLAT: Final = 0.5  # mN/m
+COLLAPSED_NODES: Final = 6  # nodes it goes beyond it at least
+COLLAPSED_WIDTHS: Final = 8.0  # widths of the collapse's rounding that the final fit goes beyond it
 
 
 def analyse(trace: Trace, *, at: tuple[float, ...] = DEFAULT_PRESSURES) -> IsothermResult:
@@ -97,7 +99,7 @@ def analyse(trace: Trace, *, at: tuple[float, ...] = DEFAULT_PRESSURES) -> Isoth
 
 def _branch(trace: Trace, rows: BranchRows, at: tuple[float, ...]) -> Branch:
     order = rows.rows if rows.direction == "compression" else rows.rows[::-1]
-    area, pressure = trace.area[order], trace.pressure[order]
+    area, pressure = steady_area(trace.area[order]), trace.pressure[order]
     warnings: list[str] = []
     noise = row_noise(area, pressure)
     spikes = despike(pressure, noise)
@@ -110,7 +112,7 @@ def _branch(trace: Trace, rows: BranchRows, at: tuple[float, ...]) -> Branch:
     nodes = condense(area, pressure, noise)
     model = find_knees(nodes)
     reading = read_stretches(model)
-    stop = _fit_until(model, reading)
+    stop = _fit_until(model, reading, nodes)
     model = refine_knees(model, nodes, area, pressure, stop)
     reading = read_stretches(model)
     warnings.extend(reading.notes)
@@ -162,13 +164,22 @@ def _branch(trace: Trace, rows: BranchRows, at: tuple[float, ...]) -> Branch:
     )
 
 
-def _fit_until(model: KneeModel, reading: Reading) -> float:
+def _fit_until(model: KneeModel, reading: Reading, nodes: Nodes) -> float:
     """x up to which the final fit goes: collapsed film has no shape worth fitting beyond its first."""
-    if reading.collapse is None or reading.collapse + 1 >= model.knots.size:
+    if reading.collapse is None:
         return model.stop
-    following = reading.collapse + 1
-    gap = float(model.knots[following] - model.knots[reading.collapse])
-    return float(model.knots[following]) - min(2.0 * float(model.widths[following]), 0.5 * gap)
+    knee = reading.collapse
+    before = float(model.knots[knee]) - (float(model.knots[knee - 1]) if knee else model.start)
+    stop = float(model.knots[knee]) + max(
+        COLLAPSED_WIDTHS * float(model.widths[knee]), 0.3 * before
+    )
+    after = int(np.searchsorted(nodes.x, float(model.knots[knee]))) + COLLAPSED_NODES
+    stop = max(stop, float(nodes.x[min(after, nodes.x.size - 1)]))
+    if knee + 1 < model.knots.size:
+        gap = float(model.knots[knee + 1] - model.knots[knee])
+        rounded = min(2.0 * float(model.widths[knee + 1]), 0.5 * gap)
+        stop = min(stop, float(model.knots[knee + 1]) - rounded)
+    return stop
 
 
 def _stretch_bounds(nodes: Nodes, model: KneeModel) -> NDArray[np.int64]:

@@ -10,7 +10,7 @@ from numpy.typing import NDArray
 
 from isotherm.trace import Trace
 
-__all__ = ["BranchRows", "find_branches", "robust_noise"]
+__all__ = ["BranchRows", "find_branches", "quantum", "robust_noise", "steady_area"]
 
 FloatArray = NDArray[np.float64]
 IntArray = NDArray[np.int64]
@@ -67,6 +67,32 @@ def quantum(values: FloatArray) -> float:
     if steps.size == 0 or moving.sum() < 5 or moving.mean() > 0.9:
         return 0.0
     return float(np.quantile(steps[moving], 0.02))
+
+
+def steady_area(area: FloatArray) -> FloatArray:
+    """Area along one branch with the jitter of the encoder averaged out.
+
+    Parameters
+    ----------
+    area : (n,) in the order of travel.
+
+    Returns
+    -------
+    (n,) array
+        A running mean over a few steps of the barrier, which keeps a steady travel as it is; the input
+        itself where its steps stand clear of its scatter, or where there are too few rows.
+    """
+    n = area.size
+    noise = robust_noise(area)
+    step = abs(float(area[-1] - area[0])) / max(n - 1, 1)
+    if n < 200 or noise < 0.3 * step or step <= 0:
+        return area
+    half = int(np.clip(np.ceil(3.0 * noise / step), 2, n // 100))
+    totals = np.concatenate([[0.0], np.cumsum(area)])
+    index = np.arange(n)
+    # near the ends the window shrinks on both sides, so that it stays centred
+    reach = np.minimum(np.minimum(index, n - 1 - index), half)
+    return np.asarray((totals[index + reach + 1] - totals[index - reach]) / (2 * reach + 1))
 
 
 def find_branches(trace: Trace) -> tuple[BranchRows, ...]:

@@ -10,7 +10,7 @@ from numpy.typing import NDArray
 
 from isotherm.branches import MAD_TO_SIGMA, quantum
 
-__all__ = ["Nodes", "condense", "despike", "row_noise"]
+__all__ = ["DENSE", "Nodes", "condense", "despike", "row_noise"]
 
 FloatArray = NDArray[np.float64]
 
@@ -18,6 +18,10 @@ SKELETON: Final = 320  # blocks that measure the curve's length
 NODES: Final = 256  # nodes the search works on
 SPIKE_SIGMAS: Final = 6.0  # a row this far from the median of its neighbours is a spike
 SPIKE_WINDOW: Final = 7  # rows; isolates spikes up to three rows long
+# So few points do not tell scatter from shape; a point read off a figure is good to about this share of
+# the axis (common practice: the thickness of a drawn line).
+FEW: Final = 30  # rows
+READING_ERROR: Final = 0.006  # 1
 DENSE: Final = 100  # rows from which spikes can be told from shape
 
 
@@ -47,16 +51,38 @@ def row_noise(area: FloatArray, pressure: FloatArray) -> float:
     """
     if pressure.size < 5:
         return 0.0
-    left, mid, right = area[:-2], area[1:-1], area[2:]
-    gap = right - left
-    safe = np.where(np.abs(gap) > 0, gap, 1.0)
-    share = np.clip(np.where(np.abs(gap) > 0, (mid - left) / safe, 0.5), 0.0, 1.0)
     if pressure.size > DENSE:
-        share = np.full_like(share, 0.5)  # in a dense run the area's own jitter would mislead
-    residual = pressure[1:-1] - (1.0 - share) * pressure[:-2] - share * pressure[2:]
-    scale = np.sqrt(1.0 + share**2 + (1.0 - share) ** 2)
-    sigma = MAD_TO_SIGMA * float(np.median(np.abs(residual / scale)))
+        # in a dense run the area's own jitter would mislead: rows are evenly spaced
+        residual = pressure[1:-1] - 0.5 * (pressure[:-2] + pressure[2:])
+        scaled = [residual / np.sqrt(1.5)]
+    else:
+        scaled = [_left_out(area, pressure, reach) for reach in (1, 2)]
+    # the higher order follows a curved branch, the lower one a bent one: the better of the two
+    sigma = min(MAD_TO_SIGMA * float(np.median(np.abs(r))) for r in scaled)
+    if pressure.size < FEW:
+        sigma = min(sigma, READING_ERROR * float(np.ptp(pressure)))
     return max(sigma, quantum(pressure) / np.sqrt(12.0))
+
+
+def _left_out(area: FloatArray, pressure: FloatArray, reach: int) -> FloatArray:
+    """Each point less the polynomial through `reach` neighbours on both sides, in units of σ."""
+    order = np.argsort(area, kind="stable")
+    a, p = area[order], pressure[order]
+    n = a.size
+    middle = np.arange(reach, n - reach)
+    offsets = [k for k in range(-reach, reach + 1) if k != 0]
+    residual = p[middle].copy()
+    size = np.ones(middle.size)
+    for k in offsets:
+        share = np.ones(middle.size)
+        for other in offsets:
+            if other != k:
+                gap = a[middle + k] - a[middle + other]
+                share *= (a[middle] - a[middle + other]) / np.where(gap == 0, np.inf, gap)
+        share = np.clip(share, -3.0, 3.0)
+        residual -= share * p[middle + k]
+        size += share**2
+    return np.asarray(residual / np.sqrt(size))
 
 
 def despike(pressure: FloatArray, noise: float) -> NDArray[np.bool_]:

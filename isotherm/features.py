@@ -174,9 +174,7 @@ def phases(view: BranchView) -> tuple[Phase, ...]:
                 i = 0 if knee < 0 else -1
                 value = float(model.pressure(np.array([x]))[0])
                 ends.append((value, float(view.local.u_pressure[i])))
-        length = max(stop_x - start_x, 1e-12)
-        modulus = (ends[1][0] - ends[0][0]) / length
-        u = math.hypot(ends[0][1], ends[1][1]) / length
+        modulus, u = _mean_modulus(view, start_x, stop_x, ends[1][0] - ends[0][0])
         out.append(
             Phase(
                 name or phase_name(modulus),
@@ -186,6 +184,24 @@ def phases(view: BranchView) -> tuple[Phase, ...]:
             )
         )
     return tuple(out)
+
+
+def _mean_modulus(view: BranchView, start: float, stop: float, rise: float) -> tuple[float, float]:
+    """Slope of Π on x over the nodes from start to stop, mN/m, and its u; the end points' if too few."""
+    nodes = view.nodes
+    inside = (nodes.x >= start) & (nodes.x <= stop)
+    count = int(inside.sum())
+    if count < 3:
+        length = max(stop - start, 1e-12)
+        return rise / length, math.sqrt(2.0) * float(np.max(nodes.sigma)) / length
+    x, y, w = nodes.x[inside], nodes.pressure[inside], 1.0 / nodes.sigma[inside] ** 2
+    total = float(w.sum())
+    centre = float((w * x).sum()) / total
+    spread = float((w * (x - centre) ** 2).sum())
+    slope = float((w * (x - centre) * y).sum()) / spread
+    residual = y - float((w * y).sum()) / total - slope * (x - centre)
+    scale = max(1.0, float((w * residual**2).sum()) / (count - 2))
+    return slope, math.sqrt(scale / spread)
 
 
 def _stiffest(view: BranchView) -> int | None:

@@ -14,7 +14,15 @@ from typing import Final
 import numpy as np
 from numpy.typing import NDArray
 
-__all__ = ["INDIFFERENT", "KneeModel", "choose_degrees", "fit_knees"]
+__all__ = [
+    "INDIFFERENT",
+    "KneeModel",
+    "ModelTerms",
+    "choose_degrees",
+    "correlation_gain",
+    "fit_knees",
+    "model_terms",
+]
 
 FloatArray = NDArray[np.float64]
 
@@ -54,15 +62,16 @@ class KneeModel:
     inflation: float
     start: float
     stop: float
+    prior_precision: float = 0.0
 
     def pressure(self, x: FloatArray) -> FloatArray:
         """Fitted pressure at (n,) x, mN/m."""
-        g, _, _ = _coordinates(x, self.knots, self.widths)
+        g, _, _ = _coordinates(x, self.knots, self.widths, self._origin(0))
         return np.asarray(_design(g, self.degrees, self.scales) @ self.coefficients)
 
     def modulus(self, x: FloatArray) -> FloatArray:
         """Fitted dΠ/dx at (n,) x, mN/m."""
-        g, rise, _ = _coordinates(x, self.knots, self.widths)
+        g, rise, _ = _coordinates(x, self.knots, self.widths, self._origin(0))
         slopes = _slopes(g, self.degrees, self.scales, self.coefficients)
         inside = np.diff(np.vstack([np.ones_like(x), rise, np.zeros_like(x)]), axis=0) * -1.0
         return np.asarray(np.sum(slopes * inside, axis=0))
@@ -131,11 +140,10 @@ class KneeModel:
 
 
 def _coordinates(
-    x: FloatArray, knots: FloatArray, widths: FloatArray
+    x: FloatArray, knots: FloatArray, widths: FloatArray, centre: float
 ) -> tuple[FloatArray, FloatArray, FloatArray]:
-    """g (K+1, n); rise (K, n) = dh_k/dx; broaden (K, n) = dh_k/d ln w_k."""
+    """g (K+1, n); rise (K, n) = dh_k/dx; broaden (K, n) = dh_k/d ln w_k; `centre` serves K = 0."""
     if knots.size == 0:
-        centre = 0.5 * (x[0] + x[-1]) if x.size else 0.0
         return (x - centre)[None, :], np.empty((0, x.size)), np.empty((0, x.size))
     z = (x[None, :] - knots[:, None]) / widths[:, None]
     tail = np.exp(-np.abs(z))
@@ -177,6 +185,57 @@ def _slopes(
     return out
 
 
+@dataclass(frozen=True)
+class ModelTerms:
+    """A model's pieces at (n,) x: g (K+1, n), parts (K+1, n) mN/m, design (n, p), jacobian (n, p + 2K).
+
+    jump : (K, n) difference of the slopes of the two neighbours of each knee. z : (K, n) distance from
+    each knee in widths.
+    """
+
+    g: FloatArray
+    parts: FloatArray
+    design: FloatArray
+    jacobian: FloatArray
+    jump: FloatArray
+    z: FloatArray
+
+
+def model_terms(model: KneeModel, x: FloatArray) -> ModelTerms:
+    """Evaluate a model with its derivatives against coefficients, knots and ln widths."""
+    g, rise, broaden = _coordinates(x, model.knots, model.widths, 0.5 * (model.start + model.stop))
+    design = _design(g, model.degrees, model.scales)
+    slopes = _slopes(g, model.degrees, model.scales, model.coefficients)
+    jacobian, jump = _jacobian(design, slopes, rise, broaden)
+    parts = np.zeros_like(g)
+    first = 1
+    for j, degree in enumerate(model.degrees):
+        parts[j] = design[:, first : first + degree] @ model.coefficients[first : first + degree]
+        first += degree
+    z = (x[None, :] - model.knots[:, None]) / model.widths[:, None]
+    return ModelTerms(g, parts, design, jacobian, jump, z)
+
+
+def _jacobian(
+    design: FloatArray, slopes: FloatArray, rise: FloatArray, broaden: FloatArray
+) -> tuple[FloatArray, FloatArray]:
+    jump = slopes[1:] - slopes[:-1]
+    by_knot = -jump * rise
+    if jump.shape[0]:
+        by_knot[0] -= slopes[0]
+    return np.concatenate([design, by_knot.T, (jump * broaden).T], axis=1), jump
+
+
+def correlation_gain(residual: FloatArray) -> float:
+    """Factor on a variance for neighbouring (n,) residuals that are correlated: AR(1), (1+ρ)/(1-ρ)."""
+    total = float(residual @ residual)
+    if total <= 0:
+        return 1.0
+    lag = float(residual[1:] @ residual[:-1]) / total
+    lag = min(max(lag - 1.0 / max(residual.size, 1), 0.0), 0.9)
+    return (1.0 + lag) / (1.0 - lag)
+
+
 def _scales(x: FloatArray, knots: FloatArray) -> FloatArray:
     return np.maximum(np.diff(np.concatenate([[x[0]], knots, [x[-1]]])), 1e-9)
 
@@ -194,7 +253,7 @@ def choose_degrees(
     highest : largest degree allowed in each stretch.
     """
     scales = _scales(x, knots)
-    g, _, _ = _coordinates(x, knots, widths)
+    g, _, _ = _coordinates(x, knots, widths, 0.5 * float(x[0] + x[-1]))
     floor = float(np.sum(sigma**-2.0)) * (INDIFFERENT * max(float(np.ptp(y)), 1e-9)) ** 2
     degrees = [min(1, h) for h in highest]
     weight = 1.0 / sigma
@@ -255,7 +314,7 @@ def fit_knees(
     prior_mean = np.log(np.maximum(room, 1e-9)) + PRIOR_LOG_WIDTH
     weight = 1.0 / sigma
     coefficients = np.linalg.lstsq(
-        _design(_coordinates(x, knots, widths)[0], degrees, scales) * weight[:, None],
+        _design(_coordinates(x, knots, widths, 0.5 * float(x[0] + x[-1]))[0], degrees, scales) * weight[:, None],
         y * weight,
         rcond=None,
     )[0]
@@ -266,7 +325,7 @@ def fit_knees(
     def evaluate(
         c: FloatArray, kn: FloatArray, w: FloatArray
     ) -> tuple[FloatArray, FloatArray, FloatArray, FloatArray]:
-        g, rise, broaden = _coordinates(x, kn, w)
+        g, rise, broaden = _coordinates(x, kn, w, 0.5 * float(x[0] + x[-1]))
         design = _design(g, degrees, scales)
         return (y - design @ c) * weight, design, rise, broaden
 
@@ -281,14 +340,10 @@ def fit_knees(
         if robust:
             scale = max(1.0, 1.4826 * float(np.median(np.abs(residual))))
             huber = np.minimum(1.0, HUBER * scale / np.maximum(np.abs(residual), 1e-12))
-        g, _, _ = _coordinates(x, knots, widths)
+        g, _, _ = _coordinates(x, knots, widths, 0.5 * float(x[0] + x[-1]))
         slopes = _slopes(g, degrees, scales, coefficients)
-        jump = slopes[1:] - slopes[:-1]
-        by_knot = -jump * rise
-        if k:
-            by_knot[0] -= slopes[0]
-        by_width = jump * broaden
-        jacobian = np.concatenate([design, by_knot.T, by_width.T], axis=1) * weight[:, None]
+        jacobian, _ = _jacobian(design, slopes, rise, broaden)
+        jacobian *= weight[:, None]
         weighted = jacobian * huber[:, None]
         normal = weighted.T @ jacobian
         right = weighted.T @ residual
@@ -345,17 +400,12 @@ def fit_knees(
         inflation,
         float(x[0]),
         float(x[-1]),
+        1.0 / PRIOR_LOG_WIDTH_SIGMA**2,
     )
     return model
 
 
 def _inflation(residual: FloatArray, huber: FloatArray, dof: int) -> float:
-    """Factor on the covariance: reduced χ² (never below 1) times the variance gain of an AR(1) scatter."""
+    """Factor on the covariance: reduced χ² (never below 1) times the gain of correlated residuals."""
     r = residual * np.sqrt(huber)
-    total = float(r @ r)
-    if total <= 0:
-        return 1.0
-    chi2 = max(total / dof, 1.0)
-    lag = float(r[1:] @ r[:-1]) / total
-    lag = min(max(lag - 1.0 / max(r.size, 1), 0.0), 0.9)
-    return chi2 * (1.0 + lag) / (1.0 - lag)
+    return max(float(r @ r) / dof, 1.0) * correlation_gain(r)

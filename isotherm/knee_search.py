@@ -82,7 +82,7 @@ def test_knee(x: FloatArray, y: FloatArray, sigma: FloatArray) -> Verdict | None
     t = (x - centre) / half
     weight = 1.0 / sigma
     target = y * weight
-    smooth_degree = min(SMOOTH_DEGREE, n - 3)
+    smooth_degree = min(SMOOTH_DEGREE, n // 3)
     powers = np.polynomial.chebyshev.chebvander(t, smooth_degree) * weight[:, None]
     q, _ = np.linalg.qr(powers)
     along = q.T @ target

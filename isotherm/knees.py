@@ -7,16 +7,19 @@ from typing import Final
 import numpy as np
 from numpy.typing import NDArray
 
-from isotherm.condense import Nodes
+from isotherm.condense import DENSE, Nodes
+from isotherm.dips import with_dips
 from isotherm.knee_model import INDIFFERENT, KneeModel, choose_degrees, fit_knees
 from isotherm.knee_search import Candidate, search
+from isotherm.knee_uncertainty import with_model_doubt
+from isotherm.sparse import sparse_candidates, sparse_degrees
 
 __all__ = ["find_knees", "refine_knees"]
 
 FloatArray = NDArray[np.float64]
 
 HIGHEST_DEGREE: Final = 5  # of a stretch; a fluid branch from lift-off to collapse needs about 4
-NODES_PER_DEGREE: Final = 4  # nodes a stretch must have for each degree
+NODES_PER_DEGREE: Final = 8  # nodes a stretch must have for each degree
 STEP_SIGMAS: Final = 4.0  # a knee whose step of slope is not this many u above zero is dropped
 ROWS_PER_KNEE: Final = 120  # rows, or means of neighbouring rows, a knee is refined on
 NEIGHBOURHOOD: Final = 4  # nodes each side of a knee that are replaced by rows
@@ -31,7 +34,10 @@ def find_knees(nodes: Nodes) -> KneeModel:
         With no knots where the branch is one smooth curve.
     """
     x, y, sigma = nodes.x, nodes.pressure, nodes.sigma
-    candidates = search(x, y, sigma)
+    if x.size < DENSE:
+        candidates = sparse_candidates(x, y, sigma)
+        return _fit(x, y, sigma, candidates, sparse_degrees(candidates, x))
+    candidates = with_dips(search(x, y, sigma), x, y, sigma)
     model = _fit(x, y, sigma, candidates)
     while True:
         weak = _weakest(model)
@@ -44,14 +50,19 @@ def find_knees(nodes: Nodes) -> KneeModel:
         candidates, model = fewer, simpler
 
 
-def _fit(x: FloatArray, y: FloatArray, sigma: FloatArray, candidates: list[Candidate]) -> KneeModel:
+def _fit(
+    x: FloatArray,
+    y: FloatArray,
+    sigma: FloatArray,
+    candidates: list[Candidate],
+    highest: tuple[int, ...] | None = None,
+) -> KneeModel:
     knots = np.array([c.x for c in candidates])
     widths = np.array([c.width for c in candidates])
     edges = np.concatenate([[x[0] - 1.0], knots, [x[-1] + 1.0]])
     inside = np.diff(np.searchsorted(x, edges))
-    highest = tuple(int(np.clip(c // NODES_PER_DEGREE, 1, HIGHEST_DEGREE)) for c in inside)
-    if x.size <= 2 + sum(highest) + 2 * knots.size:
-        highest = tuple(1 for _ in highest)
+    if highest is None:
+        highest = tuple(int(np.clip(c // NODES_PER_DEGREE, 1, HIGHEST_DEGREE)) for c in inside)
     degrees = choose_degrees(x, y, sigma, knots, widths, highest)
     model = fit_knees(x, y, sigma, knots, widths, degrees)
     again = choose_degrees(x, y, sigma, model.knots, model.widths, highest)
@@ -92,7 +103,8 @@ def refine_knees(
     if not np.all(nodes.count == 1):
         x, y, sigma = _with_rows(nodes, keep, knots, model.widths, area, pressure)
     k = knots.size
-    return fit_knees(x, y, sigma, knots, model.widths[:k], model.degrees[: k + 1])
+    fitted = fit_knees(x, y, sigma, knots, model.widths[:k], model.degrees[: k + 1])
+    return with_model_doubt(fitted, x, y, sigma)
 
 
 def _with_rows(

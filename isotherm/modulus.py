@@ -15,7 +15,8 @@ IntArray = NDArray[np.int64]
 
 WANTED: Final = 0.04  # relative standard uncertainty of the modulus a bandwidth has to reach
 SOFT: Final = 5.0  # mN/m; below it the uncertainty wanted is WANTED times this
-HALF_WIDTHS: Final = (3, 4, 6, 8, 12, 16, 24, 32, 48, 64, 96, 128)  # nodes
+AGREE: Final = 2.5  # half-width of the intervals that have to intersect, in u
+HALF_WIDTHS: Final = (1, 2, 3, 4, 6, 8, 12, 16, 24, 32, 48, 64, 96, 128)  # nodes
 
 
 @dataclass(frozen=True)
@@ -40,8 +41,10 @@ def local_regression(
 
     Notes
     -----
-    The bandwidth at a node is the smallest of `HALF_WIDTHS` whose modulus is known to `WANTED`
-    (relative), else the widest that stays inside the stretch.
+    The bandwidth at a node grows through `HALF_WIDTHS` until the modulus is known to `WANTED`
+    (relative), and never beyond the first whose estimate leaves the intersection of the confidence
+    intervals of the narrower ones (Goldenshluger & Nemirovski, Math. Methods Statist. 1997, 6, 135):
+    wide where the branch is straight, narrow where it bends.
     """
     m = x.size
     stretch = np.searchsorted(stretches, np.arange(m), side="right") - 1
@@ -59,6 +62,7 @@ def local_regression(
     slope = np.full(m, np.nan)
     u_slope = np.full(m, np.inf)
     open_ = np.ones(m, dtype=np.bool_)
+    lower, upper = np.full(m, -np.inf), np.full(m, np.inf)
     longest = int(np.max(np.diff(stretches), initial=1))
     for half in HALF_WIDTHS:
         at = np.flatnonzero(open_)
@@ -67,13 +71,21 @@ def local_regression(
         a = np.maximum(at - half, low[at])
         b = np.minimum(at + half + 1, high[at])
         fit = _parabola(sums[b] - sums[a], cross[b] - cross[a], t[at], b - a)
-        better = fit.u_slope < u_slope[at]
+        known = np.isfinite(fit.u_slope)
+        lower[at] = np.where(
+            known, np.maximum(lower[at], fit.slope - AGREE * fit.u_slope), lower[at]
+        )
+        upper[at] = np.where(
+            known, np.minimum(upper[at], fit.slope + AGREE * fit.u_slope), upper[at]
+        )
+        agrees = known & (lower[at] <= upper[at])
+        better = agrees & (fit.u_slope < u_slope[at])
         chosen = at[better]
         value[chosen], u_value[chosen] = fit.value[better], fit.u_value[better]
         slope[chosen], u_slope[chosen] = fit.slope[better], fit.u_slope[better]
         enough = u_slope[at] / unit <= WANTED * np.maximum(np.abs(slope[at]) / unit, SOFT)
         whole = (a == low[at]) & (b == high[at])
-        open_[at[enough | whole]] = False
+        open_[at[enough | whole | (known & ~agrees)]] = False
     lost = ~np.isfinite(value)
     value[lost], u_value[lost] = (y - y.mean())[lost], sigma[lost]
     return LocalFit(value + y.mean(), u_value, slope / unit, u_slope / unit)

@@ -82,7 +82,10 @@ def find_zero(nodes: Nodes, end: float | None, film_from: float | None = None) -
         u_offset = float(np.hypot(u_offset, u_slope * (last - centre)))
     # what the probe may drift after the baseline: the trend seen, or as much as could hide in it,
     # as a rectangular distribution (GUM 4.3.7)
-    unseen = (abs(slope) if trending else u_slope) * rest / np.sqrt(3.0)
+    unseen = (
+        (abs(slope) if trending else min(u_slope, LARGEST_TREND / length)) * rest / np.sqrt(3.0)
+    )
+    unseen = min(unseen, LARGEST_TREND)
     if abs(trend) > max(LARGEST_TREND, SIGMAS * u_trend):
         return Zero(
             none,
