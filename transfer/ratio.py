@@ -1,0 +1,154 @@
+"""Transfer ratio of every stroke with its uncertainty, and the covariance between strokes."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from transfer.contact import Contact
+from transfer.geometry import Geometry
+from transfer.ratio_curves import film_level
+from transfer.ratio_film import FilmFit
+from transfer.ratio_nodes import Nodes
+from transfer.strokes import Passage
+from transfer.strokes_motion import Motion
+
+__all__ = ["Ratios", "transfer_ratios"]
+
+FloatArray = NDArray[np.float64]
+
+
+@dataclass(frozen=True)
+class Ratios:
+    """Per stroke, (s,): coated and removed in cm^2, ratio 1; random and systematic standard uncertainties.
+
+    random_covariance, systematic_covariance : (s, s) of the ratios. budget: part of u(ratio) from each
+    source, (s,) each.
+    """
+
+    coated: FloatArray
+    u_coated: FloatArray
+    removed: FloatArray
+    u_removed: FloatArray
+    ratio: FloatArray
+    uncorrected: FloatArray
+    random_covariance: FloatArray
+    systematic_covariance: FloatArray
+    budget: dict[str, FloatArray]
+
+    @property
+    def u_random(self) -> FloatArray:
+        """Random standard uncertainty of each ratio, (s,)."""
+        return np.asarray(np.sqrt(np.diag(self.random_covariance)))
+
+    @property
+    def u_systematic(self) -> FloatArray:
+        """Systematic standard uncertainty of each ratio, (s,)."""
+        return np.asarray(np.sqrt(np.diag(self.systematic_covariance)))
+
+
+def transfer_ratios(
+    passages: tuple[Passage, ...],
+    motion: Motion,
+    nodes: Nodes,
+    fit: FilmFit,
+    geometry: Geometry,
+    contact: Contact,
+) -> Ratios:
+    """Film removed over area coated, stroke by stroke.
+
+    The film before, followed to the middle of the move by its creep, less the film after, followed back to
+    the same moment, is what the stroke took; both at the set point through the film's compressibility.
+
+    Parameters
+    ----------
+    passages : tuple of Passage
+    motion : Motion
+    nodes : Nodes
+    fit : FilmFit
+    geometry : Geometry
+    contact : Contact
+
+    Returns
+    -------
+    Ratios
+    """
+    count, size = len(passages), nodes.size
+    by_mean = np.zeros((count, size))
+    by_film = np.zeros((count, size + 1))
+    removed, raw = np.zeros(count), np.zeros(count)
+    coated, u_shape, by_contact, u_level = (np.zeros(count) for _ in range(4))
+    contact_u = contact.at.u if contact.at is not None and contact.at.u else 0.0
+    for s, passage in enumerate(passages):
+        for m, before, after in zip(passage.moves, passage.nodes, passage.nodes[1:], strict=False):
+            middle = _middle(passage, motion, m, contact)
+            film_before = float(film_level(nodes, fit, before, middle))
+            film_after = float(film_level(nodes, fit, after, middle))
+            removed[s] += film_before - film_after
+            by_mean[s, before] += film_before
+            by_mean[s, after] -= film_after
+            by_film[s, before] -= film_before * (middle - nodes.time[before])
+            by_film[s, after] -= film_after * (nodes.time[after] - middle)
+            by_film[s, size] += film_before * nodes.off[before] - film_after * nodes.off[after]
+        raw[s] = np.exp(nodes.log_area[passage.nodes[0]]) - np.exp(
+            nodes.log_area[passage.nodes[-1]]
+        )
+        bounds = geometry.coated(np.asarray([passage.shallow, passage.deep]))
+        coated[s] = bounds[1] - bounds[0]
+        u_shape[s] = geometry.u_coated(passage.shallow, passage.deep)
+        line = geometry.perimeter_at(max(passage.shallow, 0.0)) / 10.0  # cm^2 per mm
+        deep_line = geometry.perimeter_at(passage.deep) / 10.0
+        crossing = passage.shallow <= 0.0
+        by_contact[s] = contact_u * (deep_line if crossing else deep_line - line)
+        ends = [motion.rests[int(nodes.rest[n])] for n in (passage.nodes[0], passage.nodes[-1])]
+        levels = [end.u_level for end in ends]
+        deep_end = 1 if passage.direction == "down" else 0
+        u_level[s] = deep_line * levels[deep_end]
+        if not crossing:
+            u_level[s] = float(np.hypot(u_level[s], line * levels[1 - deep_end]))
+    safe = np.where(coated > 0, coated, np.nan)
+    ratio = removed / safe
+    scale = 1.0 / safe
+    dwell = (by_mean * fit.mean_variance) @ by_mean.T
+    film = by_film @ fit.covariance @ by_film.T
+    outer = np.outer(scale, scale)
+    level = np.diag((ratio * u_level * scale) ** 2)
+    random = (dwell + film) * outer + level
+    shape_part, contact_part = ratio * u_shape * scale, ratio * by_contact * scale
+    systematic = np.outer(shape_part, shape_part) + np.outer(contact_part, contact_part)
+    creep = by_film[:, :size] @ fit.covariance[:size, :size] @ by_film[:, :size].T
+    pressure = by_film[:, size] ** 2 * fit.covariance[size, size]
+    return Ratios(
+        coated=coated,
+        u_coated=np.sqrt(u_shape**2 + by_contact**2 + u_level**2),
+        removed=removed,
+        u_removed=np.sqrt(np.diag(dwell + film)),
+        ratio=ratio,
+        uncorrected=raw * scale,
+        random_covariance=random,
+        systematic_covariance=systematic,
+        budget={
+            "dwells": np.sqrt(np.diag(dwell)) * scale,
+            "creep": np.sqrt(np.diag(creep)) * scale,
+            "pressure": np.sqrt(pressure) * scale,
+            "position": np.abs(ratio) * u_level * scale,
+            "dimensions": np.abs(shape_part),
+            "contact": np.abs(contact_part),
+        },
+    )
+
+
+def _middle(passage: Passage, motion: Motion, move: int, contact: Contact) -> float:
+    """Moment, s, by which half of what a move coats has crossed: the middle of its way under the surface."""
+    way = motion.moves[move]
+    sign = 1.0 if contact.reads == "depth" else -1.0
+    zero = contact.at.value if contact.at is not None else 0.0
+    a = sign * (motion.rests[move].level - zero)
+    b = sign * (motion.rests[move + 1].level - zero)
+    if a == b:
+        return 0.5 * (way.start + way.end)
+    wet = 0.5 * (max(a, 0.0) + max(b, 0.0))
+    share = float(np.clip((wet - a) / (b - a), 0.0, 1.0))
+    return way.start + share * (way.end - way.start)

@@ -1,0 +1,97 @@
+"""Film removed against dipper reading inside each move, condensed to bins."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from transfer.ratio_film import FilmFit
+from transfer.ratio_nodes import Nodes
+from transfer.strokes_motion import Motion
+
+__all__ = ["RemovalCurve", "film_level", "removal_curve"]
+
+FloatArray = NDArray[np.float64]
+
+_BINS = 60
+
+
+@dataclass(frozen=True)
+class RemovalCurve:
+    """Film gone since the dwell before, at the set point and with creep taken out.
+
+    reading : (b,) mm. removed : (b,) cm^2. variance : (b,) cm^4, independent part. time : (b,) s.
+    total : cm^2 between the two dwells, u_total its standard uncertainty (cm^2).
+    """
+
+    move: int
+    before: int
+    after: int
+    start: float
+    end: float
+    reading: FloatArray
+    removed: FloatArray
+    variance: FloatArray
+    time: FloatArray
+    total: float
+    u_total: float
+
+
+def film_level(nodes: Nodes, fit: FilmFit, node: int, time: float | FloatArray) -> FloatArray:
+    """Film area at the set point, cm^2, that a node's dwell gives at `time` (s) if nothing was taken."""
+    level = nodes.log_area[node] + fit.compressibility * nodes.off[node]
+    return np.asarray(np.exp(level - fit.creep[node] * (np.asarray(time) - nodes.time[node])))
+
+
+def removal_curve(
+    time: FloatArray,
+    position: FloatArray,
+    area: FloatArray,
+    pressure: FloatArray,
+    motion: Motion,
+    nodes: Nodes,
+    fit: FilmFit,
+    move: int,
+    before: int,
+    after: int,
+) -> RemovalCurve:
+    """Follow the film through one move.
+
+    Parameters
+    ----------
+    time, position, area, pressure : (n,) s, mm, cm^2, mN/m.
+    motion : Motion
+    nodes : Nodes
+    fit : FilmFit
+    move, before, after : int
+        Indices of the move and of the nodes on both sides.
+
+    Returns
+    -------
+    RemovalCurve
+    """
+    way = motion.moves[move]
+    rows = slice(way.first, way.last + 1)
+    t, x = time[rows], position[rows]
+    off = pressure[rows] - nodes.target[before]
+    at_target = area[rows] * (1.0 + fit.compressibility * off)
+    removed = film_level(nodes, fit, before, t) - at_target
+    start = motion.rests[nodes.rest[before]].level
+    end = motion.rests[nodes.rest[after]].level
+    scale = float(film_level(nodes, fit, before, way.start))
+    row_variance = scale**2 * fit.row_variance * fit.inflation
+    if x.size > _BINS and end != start:
+        edges = np.clip(((x - start) / (end - start) * _BINS).astype(np.intp), 0, _BINS - 1)
+        count = np.bincount(edges, minlength=_BINS).astype(np.float64)
+        used = count > 0
+        mean = [np.bincount(edges, v, minlength=_BINS)[used] / count[used] for v in (x, removed, t)]
+        x, removed, t = mean
+        variance = row_variance / count[used]
+    else:
+        variance = np.full(x.size, row_variance)
+    middle = 0.5 * (way.start + way.end)
+    total = float(film_level(nodes, fit, before, middle) - film_level(nodes, fit, after, middle))
+    u_total = scale * float(np.sqrt(fit.mean_variance[before] + fit.mean_variance[after]))
+    return RemovalCurve(move, before, after, start, end, x, removed, variance, t, total, u_total)

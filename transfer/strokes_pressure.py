@@ -1,0 +1,234 @@
+"""Where the film was held at its pressure, and what interrupted it: renewals, set-point changes, loss."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+__all__ = ["Hold", "Interruption", "Pressure", "find_holds"]
+
+FloatArray = NDArray[np.float64]
+
+# Narrowest band around the set point that counts as held, mN/m. A controller in order keeps within a few
+# tenths (practice); the correction through the film's modulus is linear only near the set point.
+_BAND = 1.0
+# Scatter of the held pressure may widen it.
+_BAND_SCATTER = 5.0
+# A dip that comes back (the controller lagging behind a fast stroke) does not end the hold, up to this
+# part of the pressure; deeper ones are a lost film.
+_DIP_PART = 0.2
+# A plateau is one that keeps this many seconds and rows and this part of the log.
+_PLATEAU_SECONDS = 20.0
+_PLATEAU_ROWS = 5
+_PLATEAU_PART = 0.02
+# A level below this part of the set point is film being spread or pressed, not dipped.
+_SECOND_PART = 0.5
+# Below this pressure, mN/m, nothing that could be dipped covers the water (the gas-like end of an isotherm).
+_NO_FILM = 1.5
+_MAX_PLATEAUS = 6
+# A film that comes back larger by this part was renewed; creep and strokes only make it smaller.
+_RENEWED_PART = 0.01
+_GLITCH_ROWS = 2
+
+
+@dataclass(frozen=True)
+class Hold:
+    """One stretch of film at one set point, rows first..last (dips inside are not `steady`).
+
+    pressure : median while held, mN/m. scatter : robust standard deviation about it, mN/m.
+    """
+
+    first: int
+    last: int
+    pressure: float
+    scatter: float
+
+
+@dataclass(frozen=True)
+class Interruption:
+    """Rows between two holds. kind: start | renewal | set-point change | lost control | end."""
+
+    first: int
+    last: int
+    kind: str
+
+
+@dataclass(frozen=True)
+class Pressure:
+    """holds in time order, interruptions between and around them, steady: (n,) rows usable for levels."""
+
+    holds: tuple[Hold, ...]
+    interruptions: tuple[Interruption, ...]
+    steady: NDArray[np.bool_]
+    band: float
+
+
+def find_holds(
+    time: FloatArray,
+    area: FloatArray,
+    pressure: FloatArray,
+    *,
+    target: float | None,
+    moves: tuple[tuple[int, int], ...] = (),
+) -> Pressure:
+    """Find the stretches in which the film was held at a set point.
+
+    Parameters
+    ----------
+    time, area, pressure : (n,) s, cm^2, mN/m.
+    target : float or None
+        The sheet's dipping pressure, mN/m; tried first as a set point.
+    moves : tuple of (first row, last row)
+        Where the dipper moved: a second set point counts only when something was dipped at it.
+
+    Returns
+    -------
+    Pressure
+    """
+    interval = float(np.median(np.diff(time)))
+    need = max(_PLATEAU_ROWS, int(_PLATEAU_SECONDS / interval))
+    smooth = _median3(pressure)
+    center = _mode(smooth, 2.0 * _BAND)
+    if target is not None and np.mean(np.abs(smooth - target) <= _BAND) > 0.2:
+        center = target
+    near = smooth[np.abs(smooth - center) <= 3.0 * _BAND]
+    middle = float(np.median(near)) if near.size else center
+    scatter = 1.4826 * float(np.median(np.abs(near - middle))) if near.size else 0.0
+    band = max(_BAND, _BAND_SCATTER * scatter)
+
+    label = np.full(time.size, -1, dtype=np.intp)
+    free = np.ones(time.size, dtype=bool)
+    settings: list[float] = []
+    for _ in range(_MAX_PLATEAUS):
+        if free.sum() < max(need, _PLATEAU_PART * time.size):
+            break
+        at = middle if not settings else _mode(smooth[free], 2.0 * band)
+        inside = free & (np.abs(smooth - at) <= band)
+        if inside.sum() < max(need, _PLATEAU_PART * time.size):
+            break
+        for first, last in _true_runs(inside):
+            # a ramp fills the band from edge to edge; a hold does not
+            climbing = abs(smooth[last] - smooth[first]) > 1.2 * band
+            if last - first + 1 >= need and not climbing and at > _NO_FILM:
+                label[first : last + 1] = len(settings)
+        free &= ~inside
+        settings.append(at)
+    label = _bridge_glitches(label)
+    holds = [
+        (first, last, which)
+        for first, last, which in _stretches(label, smooth, area, band)
+        if which == 0
+        or (
+            settings[which] > _SECOND_PART * settings[0]
+            and any(a >= first and b <= last for a, b in moves)
+        )
+    ]
+    kept = np.zeros(time.size, dtype=bool)
+    for first, last, _ in holds:
+        kept[first : last + 1] = True
+    label[~kept] = -1
+    steady = np.zeros(time.size, dtype=bool)
+    out: list[Hold] = []
+    for first, last, _ in holds:
+        rows = slice(first, last + 1)
+        inside = label[rows] >= 0
+        value = float(np.median(pressure[rows][inside]))
+        spread = 1.4826 * float(np.median(np.abs(smooth[rows][inside] - value)))
+        limit = max(0.15 * band, 4.0 * spread)
+        close = inside & (np.abs(smooth[rows] - value) <= limit)
+        usable = np.flatnonzero(close)
+        first, last = first + int(usable[0]), first + int(usable[-1])
+        # a few rows of settling at an edge made by an interruption
+        trim = 3 if last - first > 20 else 0
+        first += trim if first > 0 else 0
+        last -= trim if last < time.size - 1 else 0
+        steady[first : last + 1] = label[first : last + 1] >= 0
+        out.append(Hold(first, last, value, spread))
+    return Pressure(tuple(out), _interruptions(out, area, smooth, band), steady, band)
+
+
+def _median3(values: FloatArray) -> FloatArray:
+    """Median of each row and its two neighbours: single-row glitches vanish."""
+    out = values.copy()
+    a, b, c = values[:-2], values[1:-1], values[2:]
+    out[1:-1] = np.maximum(np.minimum(a, b), np.minimum(np.maximum(a, b), c))
+    return out
+
+
+def _mode(values: FloatArray, width: float) -> float:
+    """Middle of the window of `width` that holds the most values above the no-film pressure."""
+    ordered = np.sort(values[values > _NO_FILM])
+    if ordered.size == 0:
+        return float(np.median(values))
+    upto = np.searchsorted(ordered, ordered + width, side="right")
+    best = int(np.argmax(upto - np.arange(ordered.size)))
+    return float(np.median(ordered[best : upto[best]]))
+
+
+def _true_runs(mask: NDArray[np.bool_]) -> list[tuple[int, int]]:
+    """First and last row of every run of True."""
+    edges = np.flatnonzero(np.diff(np.concatenate([[False], mask, [False]]).astype(np.int8)))
+    return [(int(a), int(b) - 1) for a, b in zip(edges[::2], edges[1::2], strict=True)]
+
+
+def _bridge_glitches(label: NDArray[np.intp]) -> NDArray[np.intp]:
+    """Let one or two odd rows inside a hold not break it."""
+    out = label.copy()
+    for first, last in _true_runs(label < 0):
+        inner = first > 0 and last < label.size - 1
+        if inner and last - first < _GLITCH_ROWS and label[first - 1] == label[last + 1]:
+            out[first : last + 1] = label[first - 1]
+    return out
+
+
+def _stretches(
+    label: NDArray[np.intp], pressure: FloatArray, area: FloatArray, band: float
+) -> list[tuple[int, int, int]]:
+    """Join held runs at one set point across shallow dips; (first row, last row, set point)."""
+    change = np.flatnonzero(np.diff(label) != 0) + 1
+    starts = np.concatenate([[0], change])
+    ends = np.concatenate([change, [label.size]]) - 1
+    joined: list[tuple[int, int, int]] = []
+    for a, b in zip(starts.tolist(), ends.tolist(), strict=True):
+        which = int(label[a])
+        if which < 0:
+            continue
+        if joined and joined[-1][2] == which:
+            first, last, _ = joined[-1]
+            dip = float(np.max(np.abs(pressure[last : a + 1] - pressure[last])))
+            level = float(np.median(pressure[max(first, last - 20) : last + 1]))
+            grown = float(np.max(area[last : a + 1])) > area[last] * (1.0 + _RENEWED_PART)
+            if dip <= max(2.0 * band, _DIP_PART * level) and not grown:
+                joined[-1] = (first, b, which)
+                continue
+        joined.append((a, b, which))
+    return joined
+
+
+def _interruptions(
+    holds: list[Hold], area: FloatArray, pressure: FloatArray, band: float
+) -> tuple[Interruption, ...]:
+    """Name what lies before, between and after the holds."""
+    out: list[Interruption] = []
+    if not holds:
+        return ()
+    if holds[0].first > 0:
+        out.append(Interruption(0, holds[0].first - 1, "start"))
+    for before, after in zip(holds, holds[1:], strict=False):
+        rows = slice(before.last, after.first + 1)
+        opened = float(np.max(area[rows])) > (1.0 + 5 * _RENEWED_PART) * area[before.last]
+        emptied = float(np.min(pressure[rows])) < 0.5 * min(before.pressure, after.pressure)
+        larger = area[after.first] > (1.0 + _RENEWED_PART) * area[before.last]
+        same = abs(after.pressure - before.pressure) <= band
+        if (same and larger) or (opened and emptied):
+            kind = "renewal"
+        elif not same:
+            kind = "set-point change"
+        else:
+            kind = "lost control"
+        out.append(Interruption(before.last + 1, after.first - 1, kind))
+    if holds[-1].last < area.size - 1:
+        out.append(Interruption(holds[-1].last + 1, area.size - 1, "end"))
+    return tuple(out)
