@@ -4,14 +4,14 @@ from __future__ import annotations
 
 from dataclasses import replace
 from pathlib import Path
-from typing import TYPE_CHECKING, Any
+from typing import TYPE_CHECKING
 
 import typer
 
 if TYPE_CHECKING:
     from isotherm.sheet import ColumnHint, RunSheet
 
-__all__ = ["column_hints", "load_sheet", "sheet_settings"]
+__all__ = ["column_hints", "load_sheet"]
 
 
 def column_hints(texts: list[str] | None) -> tuple[ColumnHint, ...]:
@@ -71,13 +71,3 @@ def load_sheet(path: Path | None, columns: list[str] | None = None) -> RunSheet:
     told = {hint.role for hint in hints}
     kept = tuple(hint for hint in sheet.columns if hint.role not in told)
     return replace(sheet, columns=kept + hints)
-
-
-def sheet_settings(path: Path | None, columns: list[str] | None = None) -> dict[str, Any]:
-    """Return what the JSON records of sheet and column options."""
-    from cli.serialise import input_stamp
-
-    settings: dict[str, Any] = {"sheet": None if path is None else input_stamp(path)}
-    if columns:
-        settings["columns"] = list(columns)
-    return settings

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from typing import TYPE_CHECKING, Annotated, Any
+from typing import TYPE_CHECKING, Any
 
 import typer
 
@@ -12,7 +12,9 @@ from cli.options import (
     CsvOption,
     FigureOption,
     ForceOption,
+    JobsOption,
     JsonOption,
+    KeepGoingOption,
     SheetOption,
     TracesArgument,
     parse_numbers,
@@ -36,17 +38,13 @@ def isotherm(
     csv: CsvOption = None,
     figure: FigureOption = None,
     force: ForceOption = False,
-    keep_going: Annotated[
-        bool,
-        typer.Option(
-            "--keep-going", help="Of several traces, report the bad ones and do the rest."
-        ),
-    ] = False,
+    keep_going: KeepGoingOption = False,
+    jobs: JobsOption = 1,
 ) -> None:
     """Areas, phases, transitions, collapse and modulus of a compression.
 
     Reads text exports of any layout, finds compressions and expansions, and reports each feature with
-    its uncertainty. Several traces give a list.
+    its uncertainty. Several traces, or a folder of them, give a list.
 
     \b
     Examples:
@@ -55,32 +53,22 @@ def isotherm(
       upstroke isotherm digitised.csv --column molecular_area=1:A^2 --column pressure=2
     """
     from cli.outputs import OutputChoice, Renderers, plan_outputs
+    from cli.runs import analyse_runs, find_runs, run_inputs, run_settings
 
     pressures = parse_numbers(at, option="--at")
-    inputs = [*traces, *([sheet] if sheet else [])]
-    plan = plan_outputs(OutputChoice(json, csv, figure, force=force), inputs)
-
-    from cli.inputs import load_sheet, sheet_settings
-    from cli.several import run_each
-    from isotherm.analysis import analyse
-    from isotherm.trace_read import read_trace
-
-    run_sheet = load_sheet(sheet, column)
-    settings = {"command": "isotherm", "at": list(pressures), **sheet_settings(sheet, column)}
-    done = run_each(
-        traces,
-        lambda path: analyse(read_trace(path, run_sheet), at=pressures),
-        keep_going=keep_going,
-    )
+    runs = find_runs(traces, sheet, column, pressures)
+    plan = plan_outputs(OutputChoice(json, csv, figure, force=force), run_inputs(runs))
+    found = analyse_runs(runs, keep_going=keep_going, jobs=jobs)
+    settings = run_settings("isotherm", runs, at=list(pressures))
     plan.deliver(
         Renderers(
-            text=lambda: _text(done.results),
-            json=lambda: _json(done.results, settings, as_list=len(traces) > 1),
-            csv=lambda: _csv(done.results),
-            figure=lambda suffix: _figure(done.results, suffix),
+            text=lambda: _text(found.results),
+            json=lambda: _json(found.results, settings, as_list=len(runs) > 1),
+            csv=lambda: _csv(found.results),
+            figure=lambda suffix: _figure(found.results, suffix),
         )
     )
-    if done.failed:
+    if found.failed:
         raise typer.Exit(1)
 
 

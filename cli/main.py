@@ -196,6 +196,9 @@ def run(argv: Sequence[str] | None = None) -> int:
 
 def main() -> NoReturn:
     """Run `upstroke` as a program."""
+    for name in ("OMP_NUM_THREADS", "OPENBLAS_NUM_THREADS", "MKL_NUM_THREADS"):
+        # the matrices are small, and one thread adds numbers up in one order: the same bytes out
+        os.environ[name] = "1"
     if not sys.warnoptions and not os.environ.get("UPSTROKE_DEBUG"):
         # what a user must know is a warning in the result; those of the libraries are for developers
         import warnings

@@ -13,7 +13,9 @@ __all__ = [
     "CsvOption",
     "FigureOption",
     "ForceOption",
+    "JobsOption",
     "JsonOption",
+    "KeepGoingOption",
     "SheetOption",
     "TraceArgument",
     "TracesArgument",
@@ -49,6 +51,14 @@ ColumnOption = Annotated[
         metavar="ROLE=WHICH[:UNIT]",
         help="Say what a column holds, by number (from 1) or header: --column area=2:cm^2. Repeat.",
     ),
+]
+KeepGoingOption = Annotated[
+    bool,
+    typer.Option("--keep-going", help="Of several traces, report the bad ones and do the rest."),
+]
+JobsOption = Annotated[
+    int,
+    typer.Option("--jobs", "-j", min=1, metavar="N", help="Processes to share several traces."),
 ]
 AtOption = Annotated[
     str,

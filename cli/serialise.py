@@ -80,7 +80,8 @@ def _library_version(name: str) -> str | None:
     loaded = sys.modules.get(name)
     version = getattr(loaded, "__version__", None)
     if isinstance(version, str):
-        return version
+        # a worker process may have loaded it in place of this one: write it as its package does
+        return version.removeprefix("v")
     from importlib.metadata import PackageNotFoundError
     from importlib.metadata import version as installed
 

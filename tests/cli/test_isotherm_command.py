@@ -268,3 +268,25 @@ def test_bad_input_is_one_clear_line_and_nothing_is_written(
 def test_a_directory_is_refused(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
     assert run(["isotherm", str(tmp_path)]) == 1
     assert capsys.readouterr().err.startswith("upstroke: ")
+
+
+def test_a_folder_gives_its_exports_by_name_the_same_at_any_number_of_jobs(
+    tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    folder = tmp_path / "runs"
+    folder.mkdir()
+    for number in (3, 1, 2):
+        write_export(folder / f"run{number}.txt", seed=number, rows=400)
+    (folder / "notes.md").write_text("not an export")
+    said = []
+    for jobs in ("1", "2"):
+        assert run(["isotherm", str(folder), "--json", "-", "--jobs", jobs]) == 0
+        said.append(capsys.readouterr().out)
+    assert said[0] == said[1]
+    paths = [one["source"]["path"] for one in json.loads(said[0])]
+    assert paths == [str(folder / f"run{number}.txt") for number in (1, 2, 3)]
+
+
+def test_an_empty_folder_is_refused(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    assert run(["isotherm", str(tmp_path)]) == 1
+    assert "holds no export" in capsys.readouterr().err
