@@ -118,8 +118,8 @@ def find_contact(
             f"travel ({end:.2f} mm) was taken: give dipping.surface_at"
         )
         span = travel[1] - travel[0]
-        at = Quantity(end, 0.1 * span, "mm")
-        return Contact(reads, reads_from, at, "assumed", warnings=tuple(warnings))
+        doubtful = Quantity(end, 0.1 * span, "mm")
+        return Contact(reads, reads_from, doubtful, "assumed", warnings=tuple(warnings))
     if search.outside:
         warnings.append(
             "the film was taken over the whole travel: the lower edge was taken to stay in the water; "
@@ -228,7 +228,7 @@ def _width(
     if len(curves) < 3:
         return curvature
     spread = 1.4826 * float(np.median(np.abs(own - np.median(own)))) / np.sqrt(len(curves))
-    return max(curvature, spread)
+    return float(max(curvature, spread))
 
 
 def _sign(

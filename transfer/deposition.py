@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
+from itertools import pairwise
 
 import numpy as np
 from numpy.typing import NDArray
@@ -147,7 +148,7 @@ def _up_over_down(
 ) -> tuple[float, float]:
     """Middle of up / down over neighbouring strokes of opposite direction, and its u."""
     pairs, u_pairs = [], []
-    for a, b in zip(use, use[1:], strict=False):
+    for a, b in pairwise(use):
         if directions[a] == directions[b]:
             continue
         top, bottom = (a, b) if directions[a] == "up" else (b, a)

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from dataclasses import dataclass
+
 import numpy as np
 from numpy.typing import NDArray
 
@@ -10,8 +12,6 @@ from transfer.drift_changes import change_points
 from transfer.result import Drift
 
 __all__ = ["SlopeEstimate", "ratio_drift", "theil_sen"]
-
-from dataclasses import dataclass
 
 FloatArray = NDArray[np.float64]
 
@@ -46,8 +46,8 @@ def theil_sen(x: FloatArray, y: FloatArray, group: NDArray[np.intp]) -> SlopeEst
 
     Notes
     -----
-    Sen, J. Am. Stat. Assoc. 1968, 63, 1379. The variance of Kendall's score is summed over the groups; for one
-    group this is Sen's own interval.
+    Sen, J. Am. Stat. Assoc. 1968, 63, 1379. The variance of Kendall's score is summed over the groups;
+    for one group this is Sen's own interval.
     """
     slopes: list[FloatArray] = []
     variance = 0.0

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import replace
+from itertools import pairwise
 
 import numpy as np
 from numpy.typing import NDArray
@@ -85,7 +85,14 @@ def clean_log(log: DippingLog) -> DippingLog:
         raise UpstrokeError(
             f"{columns['time'].size} usable rows, at least {MIN_ROWS} are needed", where=where
         )
-    return replace(log, warnings=tuple(warnings), **columns)
+    return DippingLog(
+        time=columns["time"],
+        position=columns["position"],
+        area=columns["area"],
+        pressure=columns["pressure"],
+        source=log.source,
+        warnings=tuple(warnings),
+    )
 
 
 def _order(time: FloatArray) -> tuple[NDArray[np.intp], str]:
@@ -101,9 +108,7 @@ def _order(time: FloatArray) -> tuple[NDArray[np.intp], str]:
     starts = np.concatenate([[0], back + 1])
     ends = np.concatenate([back, [time.size - 1]])
     pieces = sorted(zip(time[starts].tolist(), time[ends].tolist(), strict=True))
-    overlap = any(
-        later[0] <= earlier[1] for earlier, later in zip(pieces, pieces[1:], strict=False)
-    )
+    overlap = any(later[0] <= earlier[1] for earlier, later in pairwise(pieces))
     if not overlap:
         return order, "parts of the log were in the wrong order in time; sorted by time"
     jumps = ", ".join(f"{-steps[i]:.6g} s after row {i + 1}" for i in back)

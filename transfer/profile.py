@@ -137,7 +137,8 @@ def _fit(
     residual = removed - basis @ solution
     freedom = max(1, crossed.size - count - 1)
     scale = max(1.0, float(residual**2 @ weight) / freedom)
-    slopes, covariance = solution[:-1], inverse[:-1, :-1] * scale
+    slopes = np.asarray(solution[:-1], dtype=np.float64)
+    covariance = np.asarray(inverse[:-1, :-1] * scale, dtype=np.float64)
     if direction == "up":
         slopes, covariance = slopes[::-1], covariance[::-1, ::-1]
     return edges, slopes, covariance

@@ -190,7 +190,7 @@ def _sums(
     z, z_wander = _instrument(time, rows, node, count, off)
 
     def total(values: FloatArray) -> FloatArray:
-        return np.bincount(node, values, minlength=size)
+        return np.asarray(np.bincount(node, values, minlength=size), dtype=np.float64)
 
     return {
         "rows": count,

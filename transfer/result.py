@@ -252,7 +252,7 @@ class Layer:
 
 @dataclass(frozen=True)
 class Stack:
-    """The ledger. thickness nm, mass_per_area ng/cm^2, surface_density 1/nm^2; None where data are missing."""
+    """The ledger. thickness nm, mass_per_area ng/cm^2, surface_density 1/nm^2; None where unknown."""
 
     ledger: tuple[Layer, ...]
     layers: Quantity

@@ -173,7 +173,9 @@ def _sum(
     """Weighted sum of ratios with both parts of its uncertainty."""
     if values.size == 0:
         return Quantity(0.0, 0.0, unit, 0.0, 0.0)
-    random, systematic = (float(np.sqrt(max(weights @ c @ weights, 0.0))) for c in covariance)
+    random, systematic = (
+        float(np.sqrt(max(float(weights @ c @ weights), 0.0))) for c in covariance
+    )
     return Quantity.combine(float(weights @ values), unit, u_random=random, u_systematic=systematic)
 
 

@@ -117,7 +117,9 @@ def find_strokes(
                     deep=max(last.deep, deep),
                 )
                 continue
-        moves, ends_at, start = (m,), (before, after), move.start
+        moves: tuple[int, ...] = (m,)
+        ends_at: tuple[int, ...] = (before, after)
+        start = move.start
         lead = m - 1
         if lead >= 0 and joins[lead] and abs(depth[m] - depth[lead]) < least:
             # the stroke had begun in air and paused there
@@ -224,10 +226,10 @@ def _flag(
     for node, word in ((first, "before"), (last, "after")):
         if nodes.rows[node] > 0:
             continue
-        rest = int(nodes.rest[node])
-        if rest == 0:
+        index = int(nodes.rest[node])
+        if index == 0:
             flags.append("log starts during this stroke")
-        elif rest == len(motion.rests) - 1:
+        elif index == len(motion.rests) - 1:
             flags.append("log ends during this stroke")
         else:
             flags.append(f"no dwell {word} this stroke: level taken from the strokes' own ends")

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
+from itertools import pairwise
 
 import numpy as np
 from numpy.typing import NDArray
@@ -158,7 +159,7 @@ def _runs(
     interval = float(np.median(np.diff(time)))
     moves = [
         _move(time, position, before, after, max(3.0 * noise, min(step, band)), interval)
-        for before, after in zip(rests, rests[1:], strict=False)
+        for before, after in pairwise(rests)
     ]
     trimmed = []
     margin = 0.5 * interval
@@ -221,7 +222,7 @@ def _gaps(time: FloatArray, position: FloatArray, events: IntArray) -> list[tupl
     bounds = np.concatenate([[0], turn, [events.size]])
     # the usual time per step of a run, from its own steps but the first (that one waited at rest)
     usual = np.zeros(events.size)
-    for a, b in zip(bounds[:-1], bounds[1:], strict=True):
+    for a, b in pairwise(bounds):
         inner = gap[a + 1 : b]
         usual[a:b] = np.median(inner) if inner.size else 0.0
     is_rest = (gap > _REST_FACTOR * usual) & (gap_rows > _REST_ROWS)

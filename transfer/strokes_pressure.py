@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
+from itertools import pairwise
 
 import numpy as np
 from numpy.typing import NDArray
@@ -216,7 +217,7 @@ def _interruptions(
         return ()
     if holds[0].first > 0:
         out.append(Interruption(0, holds[0].first - 1, "start"))
-    for before, after in zip(holds, holds[1:], strict=False):
+    for before, after in pairwise(holds):
         rows = slice(before.last, after.first + 1)
         opened = float(np.max(area[rows])) > (1.0 + 5 * _RENEWED_PART) * area[before.last]
         emptied = float(np.min(pressure[rows])) < 0.5 * min(before.pressure, after.pressure)
