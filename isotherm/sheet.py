@@ -114,6 +114,8 @@ class StackFilm:
     layer_thickness: Quantity | None = None  # nm
     molar_mass: Quantity | None = None  # g/mol
     molecular_area: Quantity | None = None  # nm^2, at the dipping pressure
+    permittivity: Quantity | None = None  # 1, relative
+    absorptivity: Quantity | None = None  # L/mol/cm, decadic
 
 
 @dataclass(frozen=True)
@@ -131,6 +133,10 @@ class Stack:
     drift_limit: float | None = None  # largest |slope| of TR per stroke
     renewals: int | None = None  # largest number allowed
     films: tuple[StackFilm, ...] = ()
+    area_in_film: Quantity | None = None  # nm^2 per molecule on the substrate
+    permittivity: Quantity | None = None  # 1, relative
+    absorptivity: Quantity | None = None  # L/mol/cm, decadic
+    crystal_frequency: Quantity | None = None  # Hz
 
 
 @dataclass(frozen=True)

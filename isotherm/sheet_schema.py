@@ -84,6 +84,16 @@ TITLE: Final = _text("title", "what this run is; printed on tables and figures",
 # Bounds are physical (nothing below zero, no fraction above one) or so wide that only a slip crosses
 # them; they are not advice.
 _MOLAR_MASS: Final = _positive("molar_mass", "molar_mass", "molar mass", "284.48 g/mol", high=1e8)
+_PERMITTIVITY: Final = _positive(
+    "permittivity", "fraction", "relative permittivity of the film", "2.6 ± 0.1", high=1e4
+)
+_ABSORPTIVITY: Final = _positive(
+    "absorptivity",
+    "L/mol/cm",
+    "molar, decadic, at the wavelength measured",
+    "12000 L/(mol·cm)",
+    high=1e9,
+)
 
 SECTIONS: Final[tuple[Section, ...]] = (
     Section(
@@ -342,6 +352,18 @@ SECTIONS: Final[tuple[Section, ...]] = (
                 above=True,
             ),
             Key("renewals", "integer", "how often the film may be renewed", "1", low=0, high=1e6),
+            _positive(
+                "area_in_film",
+                "molecular_area",
+                "per molecule on the substrate, where it differs from that on water",
+                "0.182 nm^2",
+                high=1e6,
+            ),
+            _PERMITTIVITY,
+            _ABSORPTIVITY,
+            _positive(
+                "crystal_frequency", "Hz", "of a quartz resonator coated along", "5 MHz", high=1e10
+            ),
         ),
     ),
     Section(
@@ -355,6 +377,8 @@ SECTIONS: Final[tuple[Section, ...]] = (
             _positive(
                 "molecular_area", "molecular_area", "at the dipping pressure", "0.20 nm^2", high=1e6
             ),
+            _PERMITTIVITY,
+            _ABSORPTIVITY,
         ),
         many=True,
     ),
