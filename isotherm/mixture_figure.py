@@ -7,8 +7,9 @@ from typing import TYPE_CHECKING, Final
 import numpy as np
 from numpy.typing import NDArray
 
+from isotherm.figures_style import FAINT, RUN_COLOURS, RUN_DASHES, style
 from isotherm.mixture_result import MixtureResult, MixturesAt, SurfacePhaseRule
-from isotherm.series_figure import COLOURS, DASHES, GREY, MARKS, PRESSURE_LABEL, blank_figure, tidy
+from isotherm.series_figure import MARKS, PRESSURE_LABEL, blank_figure, tidy
 
 if TYPE_CHECKING:
     from matplotlib.axes import Axes
@@ -24,17 +25,18 @@ _EXPANDED: Final = 2.0  # bars are ± 2 u
 
 def figure_mixture(result: MixtureResult) -> Figure:
     """Four panels: area with the ideal line, excess area, Gibbs energy of mixing, phase rule."""
-    figure = blank_figure(10.0, 7.8)
-    panels = figure.subplots(2, 2)
-    groups = _spread_out(result.at)
-    _areas(panels[0, 0], result, groups)
-    _excess(panels[0, 1], result, groups)
-    _gibbs(panels[1, 0], result, groups)
-    _phase_rule(panels[1, 1], result)
-    label = _axis_label(result)
-    for axes in panels.flat:
-        axes.set_xlabel(label)
-        _ticks(axes, result)
+    with style():
+        figure = blank_figure(9.0, 7.2)
+        panels = figure.subplots(2, 2)
+        groups = _spread_out(result.at)
+        _areas(panels[0, 0], result, groups)
+        _excess(panels[0, 1], result, groups)
+        _gibbs(panels[1, 0], result, groups)
+        _phase_rule(panels[1, 1], result)
+        label = _axis_label(result)
+        for axes in panels.flat:
+            axes.set_xlabel(label)
+            _ticks(axes, result)
     return figure
 
 
@@ -75,13 +77,15 @@ def _areas(axes: Axes, result: MixtureResult, groups: list[MixturesAt]) -> None:
         area = np.array([s.area.value for s in group.states])
         u = np.array([s.area.u or 0.0 for s in group.states])
         ideal = np.array([(s.ideal or s.area).value for s in group.states])
-        axes.plot(x[order], ideal[order], color=COLOURS[i], linestyle=DASHES[i], linewidth=1)
+        axes.plot(
+            x[order], ideal[order], color=RUN_COLOURS[i], linestyle=RUN_DASHES[i], linewidth=1
+        )
         axes.errorbar(
             x,
             area,
             yerr=_EXPANDED * u,
             fmt=MARKS[i],
-            color=COLOURS[i],
+            color=RUN_COLOURS[i],
             markersize=5,
             capsize=3,
             label=f"{group.pressure:g} mN/m",
@@ -92,7 +96,7 @@ def _areas(axes: Axes, result: MixtureResult, groups: list[MixturesAt]) -> None:
 
 def _excess(axes: Axes, result: MixtureResult, groups: list[MixturesAt]) -> None:
     """Excess in per cent of the ideal area, marks of neighbouring pressures set side by side."""
-    axes.axhline(0.0, color=GREY, linewidth=1)
+    axes.axhline(0.0, color=FAINT, linewidth=1)
     shift = 0.008 if len(result.components) == 2 else 0.1
     for i, group in enumerate(groups):
         mixed = [s for s in group.states if s.excess_relative is not None]
@@ -100,7 +104,13 @@ def _excess(axes: Axes, result: MixtureResult, groups: list[MixturesAt]) -> None
         value = np.array([100 * s.excess_relative.value for s in mixed if s.excess_relative])
         u = np.array([100 * (s.excess_relative.u or 0.0) for s in mixed if s.excess_relative])
         axes.errorbar(
-            x, value, yerr=_EXPANDED * u, fmt=MARKS[i], color=COLOURS[i], markersize=5, capsize=3
+            x,
+            value,
+            yerr=_EXPANDED * u,
+            fmt=MARKS[i],
+            color=RUN_COLOURS[i],
+            markersize=5,
+            capsize=3,
         )
     title = "Excess area (bars: ± 2 u)"
     tidy(axes, "", r"$A_\mathrm{ex}\,/\,A_\mathrm{ideal}$ / %", title)
@@ -109,7 +119,7 @@ def _excess(axes: Axes, result: MixtureResult, groups: list[MixturesAt]) -> None
 
 
 def _gibbs(axes: Axes, result: MixtureResult, groups: list[MixturesAt]) -> None:
-    axes.axhline(0.0, color=GREY, linewidth=1)
+    axes.axhline(0.0, color=FAINT, linewidth=1)
     shift = 0.008 if len(result.components) == 2 else 0.1
     for i, group in enumerate(groups):
         mixed = [s for s in group.states if s.gibbs_excess is not None]
@@ -117,12 +127,18 @@ def _gibbs(axes: Axes, result: MixtureResult, groups: list[MixturesAt]) -> None:
         value = np.array([s.gibbs_excess.value / 1e3 for s in mixed if s.gibbs_excess])
         u = np.array([(s.gibbs_excess.u or 0.0) / 1e3 for s in mixed if s.gibbs_excess])
         axes.errorbar(
-            x, value, yerr=_EXPANDED * u, fmt=MARKS[i], color=COLOURS[i], markersize=5, capsize=3
+            x,
+            value,
+            yerr=_EXPANDED * u,
+            fmt=MARKS[i],
+            color=RUN_COLOURS[i],
+            markersize=5,
+            capsize=3,
         )
         if group.interaction is not None:
             fine = np.linspace(0.0, 1.0, 101)
             curve = group.interaction.value * fine * (1.0 - fine) / 1e3
-            axes.plot(fine, curve, color=COLOURS[i], linestyle=DASHES[i], linewidth=1)
+            axes.plot(fine, curve, color=RUN_COLOURS[i], linestyle=RUN_DASHES[i], linewidth=1)
     last = groups[-1]
     total = [s for s in last.states if s.gibbs_mixing is not None]
     if total:
@@ -155,7 +171,7 @@ def _phase_rule(axes: Axes, result: MixtureResult) -> None:
             value,
             yerr=_EXPANDED * u,
             fmt=MARKS[i],
-            color=COLOURS[i],
+            color=RUN_COLOURS[i],
             markersize=5,
             capsize=3,
             label=f"{rule.kind}: {rule.reading}",
@@ -168,7 +184,7 @@ def _phase_rule(axes: Axes, result: MixtureResult) -> None:
     if result.phase_rule:
         axes.legend(fontsize=8, frameon=False)
     else:
-        axes.text(0.5, 0.5, "none found", transform=axes.transAxes, ha="center", color=GREY)
+        axes.text(0.5, 0.5, "none found", transform=axes.transAxes, ha="center", color=FAINT)
 
 
 def _straight(axes: Axes, result: MixtureResult, rule: SurfacePhaseRule, colour: int) -> None:
@@ -178,7 +194,7 @@ def _straight(axes: Axes, result: MixtureResult, rule: SurfacePhaseRule, colour:
         axes.plot(
             [0.0, 1.0],
             [pures[0].value, pures[1].value],
-            color=COLOURS[colour],
-            linestyle=DASHES[1],
+            color=RUN_COLOURS[colour],
+            linestyle=RUN_DASHES[1],
             linewidth=1,
         )

@@ -6,17 +6,10 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
+from isotherm.figures_style import FAINT, RUN_COLOURS, RUN_DASHES, SECOND, style
 from isotherm.replicates_result import FeatureSpread, ReplicatesResult
 from isotherm.series import spoken
-from isotherm.series_figure import (
-    AREA_LABEL,
-    COLOURS,
-    DASHES,
-    GREY,
-    PRESSURE_LABEL,
-    blank_figure,
-    tidy,
-)
+from isotherm.series_figure import AREA_LABEL, PRESSURE_LABEL, blank_figure, tidy
 
 if TYPE_CHECKING:
     from matplotlib.axes import Axes
@@ -29,10 +22,11 @@ _LONGEST_LIST = 12  # features drawn; more do not fit a page
 
 def figure_replicates(result: ReplicatesResult) -> Figure:
     """Left: isotherms, mean curve and its band. Right: each feature's runs about their mean."""
-    figure = blank_figure(10.0, 5.0)
-    left, right = figure.subplots(1, 2, width_ratios=[1.25, 1.0])
-    _curves(left, result)
-    _features(right, result)
+    with style():
+        figure = blank_figure(9.0, 4.6)
+        left, right = figure.subplots(1, 2, width_ratios=[1.25, 1.0])
+        _curves(left, result)
+        _features(right, result)
     return figure
 
 
@@ -44,14 +38,14 @@ def _curves(axes: Axes, result: ReplicatesResult) -> None:
         if run.kept and not run.outlying:
             label = None if usual_named else "single runs"
             usual_named = True
-            axes.plot(area, curve.pressure, color=GREY, linewidth=0.7, label=label)
+            axes.plot(area, curve.pressure, color=FAINT, linewidth=0.7, label=label)
             continue
         state = "outlying, kept" if run.kept else "left out"
         axes.plot(
             area,
             curve.pressure,
-            color=COLOURS[1] if run.kept else COLOURS[3],
-            linestyle=DASHES[1 + marked % (len(DASHES) - 1)],
+            color=RUN_COLOURS[1] if run.kept else RUN_COLOURS[3],
+            linestyle=RUN_DASHES[1 + marked % (len(RUN_DASHES) - 1)],
             linewidth=1.3,
             label=f"{run.name}: {state}",
         )
@@ -60,13 +54,17 @@ def _curves(axes: Axes, result: ReplicatesResult) -> None:
         curve.pressure,
         curve.low,
         curve.high,
-        color=COLOURS[5],
-        alpha=0.45,
+        color=SECOND,
+        alpha=0.3,
         linewidth=0,
         label="95 % interval of the mean (scatter)",
     )
     axes.plot(
-        curve.mean, curve.pressure, color=COLOURS[0], linewidth=2, label=f"mean of {curve.n} runs"
+        curve.mean,
+        curve.pressure,
+        color=RUN_COLOURS[0],
+        linewidth=2,
+        label=f"mean of {curve.n} runs",
     )
     tidy(axes, AREA_LABEL, PRESSURE_LABEL, "Area averaged at each pressure")
     axes.set_ylim(bottom=0)
@@ -91,19 +89,21 @@ def _features(axes: Axes, result: ReplicatesResult) -> None:
             if run.kept and spread.name in run.values:
                 offset = 100.0 * (run.values[spread.name].value / mean - 1.0)
                 (odd if run.outlying else usual).append(offset)
-        axes.plot(usual, np.full(len(usual), place), "o", color=GREY, markersize=4, alpha=0.8)
-        axes.plot(odd, np.full(len(odd), place), "X", color=COLOURS[1], markersize=7)
+        axes.plot(usual, np.full(len(usual), place), "o", color=FAINT, markersize=4, alpha=0.8)
+        axes.plot(odd, np.full(len(odd), place), "X", color=RUN_COLOURS[1], markersize=7)
         if spread.interval is not None:
             half = 100.0 * (spread.interval[1] - mean) / abs(mean)
             axes.errorbar(
-                0.0, place, xerr=half, color=COLOURS[0], capsize=4, linewidth=2, marker="|"
+                0.0, place, xerr=half, color=RUN_COLOURS[0], capsize=4, linewidth=2, marker="|"
             )
     names = [f"{spoken(f.name)} (n = {f.n})" for f in features]
     axes.set_yticks(range(len(features)), names, fontsize=8)
     axes.invert_yaxis()
     tidy(axes, "run minus mean, % of the mean", "", "Spread of the features")
-    axes.plot([], [], "o", color=GREY, markersize=4, label="run")
+    axes.plot([], [], "o", color=FAINT, markersize=4, label="run")
     if any(r.outlying and r.kept for r in result.runs):
-        axes.plot([], [], "X", color=COLOURS[1], label="outlying run")
-    axes.errorbar([], [], xerr=[], color=COLOURS[0], capsize=4, linewidth=2, label="95 % of mean")
+        axes.plot([], [], "X", color=RUN_COLOURS[1], label="outlying run")
+    axes.errorbar(
+        [], [], xerr=[], color=RUN_COLOURS[0], capsize=4, linewidth=2, label="95 % of mean"
+    )
     axes.legend(fontsize=8, frameon=False, ncols=3, loc="upper center", bbox_to_anchor=(0.5, -0.13))
