@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import hashlib
 from collections.abc import Sequence
 from dataclasses import dataclass, field
 from pathlib import Path
@@ -23,10 +22,11 @@ from isotherm.table_roles import (
     wanted_roles,
 )
 from isotherm.table_units import column_conversion
-from isotherm.text_bytes import decode, is_workbook, read_bytes
+from isotherm.text_bytes import decode, digest, is_workbook, read_bytes
 from isotherm.text_clock import clock_seconds
 from isotherm.text_layout import Block, find_block
-from isotherm.text_numbers import Numbers, read_numbers
+from isotherm.text_numbers import read_numbers
+from isotherm.text_rows import Numbers
 
 __all__ = ["Table", "read_table"]
 
@@ -89,13 +89,13 @@ def read_table(
     """
     where = str(path)
     data = read_bytes(path)
-    digest = hashlib.sha256(data).hexdigest()
+    sha256 = digest(data)
     warnings: list[str] = []
     if is_workbook(data):
         from isotherm.table_workbook import workbook_text
 
         data = workbook_text(data, where)
-    if not data.strip():
+    if not data[:4096].strip() and not data.strip():
         raise UpstrokeError("the file is empty", where=where, remedy="export the run again")
     text = _find_rows(data, where)
     hints = sheet.columns if sheet is not None else ()
@@ -114,7 +114,7 @@ def read_table(
     values, columns = _convert(numbers, taken, needs, where, warnings)
     _report_gaps(numbers, taken, values, warnings)
     rows = len(numbers.lines)
-    return Table(Source(where, digest, rows, columns), values, numbers.lines, tuple(warnings))
+    return Table(Source(where, sha256(), rows, columns), values, numbers.lines, tuple(warnings))
 
 
 def _find_rows(data: bytes, where: str) -> _Text:
@@ -320,9 +320,9 @@ def _report_gaps(
         named = describe(one.column, one.cell)
         if texts is not None:
             warnings.append(
-                f"column {named}: {texts[0]} cells are text (first, line {texts[1]}: '{texts[2]}')"
+                f"column {named}: {texts.count} cells are text (first, line {texts.line}: '{texts.text}')"
             )
-        missing = int(nan.sum()) - (texts[0] if texts is not None else 0)
+        missing = int(nan.sum()) - (texts.count if texts is not None else 0)
         for count, mask, word in (
             (missing, nan, "missing"),
             (int(infinite.sum()), infinite, "infinite"),

@@ -40,11 +40,18 @@ def invented_run() -> InventedRun:
 
 
 def _rows(
-    columns: Iterable[Iterable[object]], delimiter: str, *, decimal: str = ".", end: str = "\n", tail: str = ""
+    columns: Iterable[Iterable[object]],
+    delimiter: str,
+    *,
+    decimal: str = ".",
+    end: str = "\n",
+    tail: str = "",
 ) -> str:
     lines = []
     for row in zip(*columns, strict=True):
-        cells = [str(cell).replace(".", decimal) if not isinstance(cell, str) else cell for cell in row]
+        cells = [
+            str(cell).replace(".", decimal) if not isinstance(cell, str) else cell for cell in row
+        ]
         lines.append(delimiter.join(cells) + tail)
     return end.join(lines) + end
 
@@ -60,7 +67,9 @@ def _texts() -> dict[str, bytes]:
     two = _listed(run.area, run.pressure)
     molecule = _listed(run.molecular_area * 100.0, run.pressure)
     molecule[0] = [round(value, 2) for value in molecule[0]]
-    clock = [f"{9 + int(t) // 3600:02d}:{int(t) % 3600 // 60:02d}:{int(t) % 60:02d}" for t in run.time]
+    clock = [
+        f"{9 + int(t) // 3600:02d}:{int(t) % 3600 // 60:02d}:{int(t) % 60:02d}" for t in run.time
+    ]
     files: dict[str, str] = {}
     files["comma.csv"] = "Time (s),Trough area (cm^2),Surface pressure (mN/m)\n" + _rows(three, ",")
     files["comma_spaces.csv"] = "Time [s], Area [cm²], Pressure [mN/m]\n" + _rows(three, ", ")
@@ -72,16 +81,20 @@ def _texts() -> dict[str, bytes]:
         three, "\t", decimal=","
     )
     files["blanks.dat"] = "time(s)  trough area(cm2)  pressure(dyn/cm)\n" + _rows(three, "   ")
-    files["blanks_units_line.dat"] = "  Time    Area    Pressure\n   s      cm^2     mN/m\n" + _rows(
-        three, "  "
+    files["blanks_units_line.dat"] = (
+        "  Time    Area    Pressure\n   s      cm^2     mN/m\n" + _rows(three, "  ")
     )
     files["blanks_single.dat"] = "Time s Area cm^2 Pressure mN/m\n" + _rows(three, " ")
     files["two_lines.csv"] = "Time;Area;Surface pressure\n[s];[cm^2];[mN/m]\n" + _rows(three, ";")
-    files["three_lines.csv"] = "Time\tArea\tPi\ns\tcm^2\tmN/m\nrun 1\trun 1\trun 1\n" + _rows(three, "\t")
+    files["three_lines.csv"] = "Time\tArea\tPi\ns\tcm^2\tmN/m\nrun 1\trun 1\trun 1\n" + _rows(
+        three, "\t"
+    )
     files["comma_in_header.csv"] = "Area, cm^2;Pressure, mN/m\n" + _rows(two, ";")
     files["comma_split_units.csv"] = "Area, cm^2, Pressure, mN/m\n" + _rows(two, ",")
     files["underscores.csv"] = "time_s,area_cm2,pressure_mN_per_m\n" + _rows(three, ",")
-    files["camel.csv"] = "ElapsedTime(s),TroughArea(cm2),SurfacePressure(mN/m)\n" + _rows(three, ",")
+    files["camel.csv"] = "ElapsedTime(s),TroughArea(cm2),SurfacePressure(mN/m)\n" + _rows(
+        three, ","
+    )
     files["upper.csv"] = "TIME (SEC),AREA (CM2),SURFACE PRESSURE (MN/M)\n" + _rows(three, ",")
     files["quoted.csv"] = '"Time (s)","Area (cm²)","Pressure (mN/m)"\n' + "".join(
         f'"{t}","{a}","{p}"\n' for t, a, p in zip(*three, strict=True)
@@ -107,24 +120,33 @@ def _texts() -> dict[str, bytes]:
         + "Time (s),Area (cm^2),Pressure (mN/m)\n"
         + _rows(three, ",")
     )
-    files["comment_header.dat"] = "# invented run\n# time(s) area(cm^2) pressure(mN/m)\n" + _rows(three, " ")
-    files["percent_header.dat"] = "% Area (cm^2), Pressure (mN/m)\n" + _rows(two, ",")
-    files["dashes.txt"] = "Time (s) | Area (cm2) | Pressure (mN/m)\n---------+------------+------\n" + _rows(
-        three, " | "
+    files["comment_header.dat"] = "# invented run\n# time(s) area(cm^2) pressure(mN/m)\n" + _rows(
+        three, " "
     )
-    files["molecular.csv"] = "Area per molecule (Å²),Surface pressure (mN/m)\n" + _rows(molecule, ",")
-    files["molecular_ascii.csv"] = "Mma [A^2/molecule];Pi [mN/m]\n" + _rows(molecule, ";", decimal=",")
+    files["percent_header.dat"] = "% Area (cm^2), Pressure (mN/m)\n" + _rows(two, ",")
+    files["dashes.txt"] = (
+        "Time (s) | Area (cm2) | Pressure (mN/m)\n---------+------------+------\n"
+        + _rows(three, " | ")
+    )
+    files["molecular.csv"] = "Area per molecule (Å²),Surface pressure (mN/m)\n" + _rows(
+        molecule, ","
+    )
+    files["molecular_ascii.csv"] = "Mma [A^2/molecule];Pi [mN/m]\n" + _rows(
+        molecule, ";", decimal=","
+    )
     files["molecular_nm.txt"] = "A (nm2)\tΠ (N/m)\n" + _rows(
         _listed(run.molecular_area, np.round(run.pressure / 1000.0, 6)), "\t"
     )
     files["molecular_reversed.csv"] = "APL (Å^2),pi (mN/m)\n" + _rows(
         [column[::-1] for column in molecule], ","
     )
-    files["free_text.csv"] = "# Invented film. APL in Å², π in mN/m. Points off a figure.\n" + _rows(
-        molecule, ","
+    files["free_text.csv"] = (
+        "# Invented film. APL in Å², π in mN/m. Points off a figure.\n" + _rows(molecule, ",")
     )
     files["trailing.csv"] = "Time (s);Area (cm^2);Pressure (mN/m);\n" + _rows(three, ";", tail=";")
-    files["trailing_rows.csv"] = "Time (s);Area (cm^2);Pressure (mN/m)\n" + _rows(three, ";", tail=";")
+    files["trailing_rows.csv"] = "Time (s);Area (cm^2);Pressure (mN/m)\n" + _rows(
+        three, ";", tail=";"
+    )
     files["blank_lines.csv"] = "\n\nTime (s),Area (cm^2),Pressure (mN/m)\n\n" + _rows(
         three, ",", end="\n\n"
     )
@@ -134,8 +156,10 @@ def _texts() -> dict[str, bytes]:
         "".join(lines[i : i + 10]) for i in range(0, 40, 10)
     )
     files["footer.csv"] = header + "".join(lines) + "\nEnd of run\nMean;3;4\nChecksum: 1234\n"
-    files["footer_statistics.txt"] = header.replace(",", "\t") + _rows(three, "\t") + (
-        "\nMean\t292.5\t152.25\nMax\t585\t240.0\n"
+    files["footer_statistics.txt"] = (
+        header.replace(",", "\t")
+        + _rows(three, "\t")
+        + ("\nMean\t292.5\t152.25\nMax\t585\t240.0\n")
     )
     files["crlf.csv"] = (header + "".join(lines)).replace("\n", "\r\n")
     files["old_line_ends.csv"] = (header + "".join(lines)).replace("\n", "\r")
@@ -182,8 +206,9 @@ def _texts() -> dict[str, bytes]:
     files["shuffled.csv"] = header + "".join(
         lines[i] for i in np.random.default_rng(4).permutation(40).tolist()
     )
-    files["wide_gap.txt"] = "Time (s)        Surface Pressure (mN/m)    Trough Area (cm^2)\n" + _rows(
-        [three[0], three[2], three[1]], "\t\t".replace("\t", "      ")
+    files["wide_gap.txt"] = (
+        "Time (s)        Surface Pressure (mN/m)    Trough Area (cm^2)\n"
+        + _rows([three[0], three[2], three[1]], "\t\t".replace("\t", "      "))
     )
     out = {name: text.encode("utf-8") for name, text in files.items()}
     german = files["semicolon_comma.csv"]
@@ -201,7 +226,15 @@ def _partial() -> dict[str, bytes]:
     run = invented_run()
     three = _listed(run.time, run.area, run.pressure)
     lines = _rows(three, ",").splitlines()
-    for row, cell in ((3, ""), (7, "-"), (11, "NaN"), (15, "n/a"), (19, "#N/A"), (23, "inf"), (27, "overload")):
+    for row, cell in (
+        (3, ""),
+        (7, "-"),
+        (11, "NaN"),
+        (15, "n/a"),
+        (19, "#N/A"),
+        (23, "inf"),
+        (27, "overload"),
+    ):
         time, area, _ = lines[row].split(",")
         lines[row] = f"{time},{area},{cell}"
     header = "Time (s),Area (cm^2),Pressure (mN/m)\n"
@@ -260,7 +293,10 @@ def _bad() -> dict[str, tuple[bytes, list[str]]]:
     out = {name: (text.encode("utf-8"), words) for name, (text, words) in texts.items()}
     out["binary.dat"] = (bytes(range(256)) * 20, ["binary"])
     out["picture.csv"] = (b"\x89PNG\r\n\x1a\n" + bytes(200), ["picture"])
-    out["old_workbook.xls"] = (b"\xd0\xcf\x11\xe0\xa1\xb1\x1a\xe1" + bytes(600), ["old binary workbook"])
+    out["old_workbook.xls"] = (
+        b"\xd0\xcf\x11\xe0\xa1\xb1\x1a\xe1" + bytes(600),
+        ["old binary workbook"],
+    )
     out["damaged.xlsx"] = (b"PK\x03\x04" + b"xl/workbook.xml" * 30, ["damaged workbook"])
     out["archive.csv"] = (b"PK\x03\x04" + bytes(100), ["archive"])
     out["compressed.csv"] = (b"\x1f\x8b\x08" + bytes(100), ["compressed"])
