@@ -137,7 +137,8 @@ def _turns(rng: np.random.Generator, build: Build, plan: Plan) -> list[float]:
         if 0 < i < len(build.ratios) and "partial" in plan.traits and rng.random() < 0.3:
             inner = max(top, 0.0)
             turn = inner + (bottom - inner) * float(rng.uniform(0.35, 0.8))
-            if abs(turn - max(turns[-2], 0.0)) > SHORTEST:
+            travel = turns[-2] - turn if at_top else turn - turns[-2]
+            if travel > SHORTEST:  # strokes alternate: a stop on the way is a pause, not a turn
                 turns[-1] = turn
     if not plan.crosses and build.first == "down" and rng.random() < 0.7:
         turns[0] = -float(rng.uniform(1.0, 10.0))
