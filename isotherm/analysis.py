@@ -29,6 +29,10 @@ DEFAULT_PRESSURES: Final = (10.0, 20.0, 30.0, 40.0)  # mN/m
 FEWEST_ROWS: Final = 8  # rows a branch needs
 FLAT_SIGMAS: Final = 2.0  # a start counts as flat while its modulus is within this many u of FLAT
 FLAT: Final = 0.5  # mN/m
+LEAST_FALL: Final = (
+    1.0  # mN/m; a smaller fall is a level pressure (a probe may drift by a third of it)
+)
+FALL_SIGMAS: Final = 4.0
 COLLAPSED_NODES: Final = 6  # nodes it goes beyond it at least
 COLLAPSED_WIDTHS: Final = 8.0  # widths of the collapse's rounding that the final fit goes beyond it
 
@@ -117,6 +121,8 @@ def _branch(trace: Trace, rows: BranchRows, at: tuple[float, ...]) -> Branch:
     reading = read_stretches(model)
     warnings.extend(reading.notes)
     local = local_regression(nodes.x, nodes.pressure, nodes.sigma, _stretch_bounds(nodes, model))
+    if reading.collapse is not None:
+        reading = replace(reading, falls=_falls(nodes, local, float(model.knots[reading.collapse])))
     zero = _zero(nodes, model, reading, local, rows.direction)
     warnings.extend(zero.warnings)
     view = features.BranchView(
@@ -180,6 +186,15 @@ def _fit_until(model: KneeModel, reading: Reading, nodes: Nodes) -> float:
         rounded = min(2.0 * float(model.widths[knee + 1]), 0.5 * gap)
         stop = min(stop, float(model.knots[knee + 1]) - rounded)
     return stop
+
+
+def _falls(nodes: Nodes, local: LocalFit, knee: float) -> bool:
+    """Whether the smoothed pressure falls after the collapse: beyond noise, and beyond what drifts."""
+    at = int(np.clip(np.searchsorted(nodes.x, knee), 1, nodes.x.size - 1))
+    peak = float(np.max(local.pressure[:at]))
+    after = int(np.argmin(local.pressure[at:])) + at
+    fall = peak - float(local.pressure[after])
+    return fall > max(LEAST_FALL, FALL_SIGMAS * float(local.u_pressure[after]))
 
 
 def _stretch_bounds(nodes: Nodes, model: KneeModel) -> NDArray[np.int64]:

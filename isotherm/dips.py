@@ -18,6 +18,9 @@ FloatArray = NDArray[np.float64]
 DEPTH: Final = 0.7  # a dip's modulus against the lower of its two shoulders
 SHOULDER: Final = 0.4  # the right shoulder against the left: less is a film that has yielded
 SIGMAS: Final = 2.0  # bounds of the moduli compared, in u
+SHORTEST: Final = 0.05  # share of the branch's range of ln A that a coexistence covers at least
+RISEN: Final = 1.0  # mN/m by which the branch has risen where a coexistence begins
+RISEN_SIGMAS: Final = 5.0
 ROUNDED: Final = 0.15  # first guess of a rounding, as a share of the dip's half-width
 
 
@@ -75,7 +78,10 @@ def with_dips(
     whole = np.array([0, x.size], dtype=np.int64)
     local = local_regression(x, y, sigma, whole)
     dip = find_dip(x, local.modulus, local.u_modulus)
-    if dip is None:
+    if dip is None or dip.end - dip.onset < SHORTEST * float(np.ptp(x)):
+        return candidates
+    risen = float(np.interp(dip.onset, x, local.pressure) - local.pressure[0])
+    if risen < max(RISEN, RISEN_SIGMAS * float(np.median(sigma))):
         return candidates
     middle = 0.5 * (dip.onset + dip.end)
     reach = 0.5 * (dip.end - dip.onset)

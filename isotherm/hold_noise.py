@@ -17,7 +17,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
-__all__ = ["NOISE_PARAMETERS", "NoiseGrid", "noise_grid"]
+__all__ = ["LONGEST_PART", "NOISE_PARAMETERS", "NoiseGrid", "noise_grid"]
 
 FloatArray = NDArray[np.float64]
 
@@ -27,7 +27,7 @@ NOISE_PARAMETERS = 3
 # its own sampling error from node to node.
 _SHARES = (0.01, 0.03, 0.1, 0.25, 0.5, 0.75, 0.9, 0.97)
 # Correlation lasting longer than this part of the hold cannot be told from the film's own drift.
-_LONGEST_PART = 0.25
+LONGEST_PART = 0.25
 _TIMES = 7
 
 
@@ -55,7 +55,7 @@ def noise_grid(time: FloatArray) -> NoiseGrid:
     m = time.size
     spacing = float(np.median(np.diff(time)))
     span = float(time[-1] - time[0])
-    longest = max(_LONGEST_PART * span, 2.0 * spacing)
+    longest = max(LONGEST_PART * span, 2.0 * spacing)
     lags = np.abs(time[:, None] - time[None, :])
     pairs = [(0.0, 0.0)] + [
         (f, tau) for tau in np.geomspace(spacing, longest, _TIMES) for f in _SHARES

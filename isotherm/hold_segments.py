@@ -37,6 +37,9 @@ _FEWEST_BLOCKS = 8
 _GAP_PART = 0.05  # of a hold: a disturbance no longer than this does not end it
 # mN/m: how far below the set point the approach to it begins, for placing its arrival.
 _APPROACH = 3.0
+# Relative: farther from the area kept than this, the barrier is travelling rather than slowing to its stop.
+_AREA_APPROACH = 5e-3
+_TRAVEL_BLOCKS = 5  # of travel before the stop, for the straight line
 # mN/m: modulus of an ordinary condensed film, to weigh a relative change of area against one of pressure.
 _MODULUS = 100.0
 # mN/m: a drift any trough shows plainly; and how many times the other's it must be to be sure of the kind.
@@ -169,22 +172,50 @@ def _trim_travel(data: _Condensed, first: int, last: int, travel: float) -> tupl
     return first, last
 
 
-def _arrival(
-    controlled: FloatArray, blocks: FloatArray, edges: NDArray[np.int64], found: tuple[int, int],
-    floor: int, reach: float,
-) -> int:  # fmt: skip
-    """Row at which the controlled quantity first reaches its set point, not before block `floor`."""
+def _far_block(blocks: FloatArray, target: float, found: tuple[int, int], floor: int, reach: float) -> int:
+    """Last block before the hold that is still on its way to the set point; -1 where there is none."""
+    before = np.flatnonzero(np.abs(blocks[floor : found[0] + 1] - target) > reach)
+    return floor + int(before[-1]) if before.size else -1
+
+
+def _pressure_arrival(
+    data: _Condensed, pressure: FloatArray, found: tuple[int, int], floor: int
+) -> int:
+    """Row at which the pressure first reaches the set point."""
     first, last = found
-    target = float(np.median(blocks[first : last + 1]))
-    before = np.flatnonzero(np.abs(blocks[floor : first + 1] - target) > reach)
-    if before.size == 0:
-        return int(edges[floor])
-    far = floor + int(before[-1])
-    side = np.sign(target - blocks[far])
-    rows = controlled[edges[far] : edges[last + 1]]
-    scatter = robust_noise(rows)
-    there = np.flatnonzero(side * (rows - target) >= -scatter)
-    return int(edges[far] + (there[0] if there.size else 0))
+    target = float(np.median(data.pressure[first : last + 1]))
+    # Coming from another hold, the approach may be shorter; a record that begins with its hold begins
+    # within reach, ringing included.
+    step = abs(target - float(data.pressure[floor])) if floor else target
+    reach = max(min(_APPROACH, 0.5 * step), 0.5 * data.pressure_band)
+    far = _far_block(data.pressure, target, found, floor, reach)
+    if far < 0:
+        return int(data.edges[floor])
+    rows = pressure[data.edges[far] : data.edges[last + 1]]
+    side = np.sign(target - data.pressure[far])
+    there = np.flatnonzero(side * (rows - target) >= -robust_noise(rows))
+    return int(data.edges[far] + (there[0] if there.size else 0))
+
+
+def _barrier_arrival(
+    data: _Condensed, time: FloatArray, area: FloatArray, found: tuple[int, int], floor: int
+) -> int:
+    """Row at which the barrier stops: its travel, extended as a straight line, meets the area kept."""
+    first, last = found
+    target = float(np.median(data.area[first : last + 1]))
+    reach = max(data.area_band, _AREA_APPROACH * abs(target))
+    far = _far_block(data.area, target, found, floor, reach)
+    if far < 0:
+        return int(data.edges[floor])
+    begin = int(data.edges[max(floor, far - _TRAVEL_BLOCKS)])
+    stop, limit = int(data.edges[far + 1]), int(data.edges[first + 1])
+    if stop - begin < 3:
+        return min(stop, limit)
+    slope, level = np.polyfit(time[begin:stop] - time[stop - 1], area[begin:stop], 1)
+    if slope == 0.0:
+        return min(stop, limit)
+    meets = time[stop - 1] + (target - level) / slope
+    return int(np.clip(np.searchsorted(time, meets), stop - 1, limit))
 
 
 def find_stretches(time: FloatArray, area: FloatArray, pressure: FloatArray) -> tuple[Stretch, ...]:
@@ -233,7 +264,7 @@ def find_stretches(time: FloatArray, area: FloatArray, pressure: FloatArray) -> 
             continue
         longest = max(longest, float(data.time[b] - data.time[a]))
         taken.append((a, b))
-    return _placed(data, area, pressure, _merged(data, sorted(taken)), longest)
+    return _placed(data, time, area, pressure, _merged(data, sorted(taken)), longest)
 
 
 def _merged(data: _Condensed, taken: list[tuple[int, int]]) -> list[tuple[int, int]]:
@@ -255,21 +286,18 @@ def _merged(data: _Condensed, taken: list[tuple[int, int]]) -> list[tuple[int, i
 
 
 def _placed(
-    data: _Condensed, area: FloatArray, pressure: FloatArray, taken: list[tuple[int, int]],
-    longest: float,
+    data: _Condensed, time: FloatArray, area: FloatArray, pressure: FloatArray,
+    taken: list[tuple[int, int]], longest: float,
 ) -> tuple[Stretch, ...]:  # fmt: skip
     """Give each stretch its kind and the row at which its set point was reached."""
     stretches: list[Stretch] = []
     floor = 0
     taken = [(a, b) for a, b in taken if data.time[b] - data.time[a] >= _SHORTEST_PART * longest]
     for (a, b), kind in zip(taken, _kinds(data, taken), strict=True):
-        target = float(np.median(data.pressure[a : b + 1]))
         if kind == "isobaric":
-            step = abs(target - float(data.pressure[floor]))
-            reach = min(_APPROACH, max(0.5 * step, 0.5 * data.pressure_band))
-            start = _arrival(pressure, data.pressure, data.edges, (a, b), floor, reach)
+            start = _pressure_arrival(data, pressure, (a, b), floor)
         else:
-            start = _arrival(area, data.area, data.edges, (a, b), floor, data.area_band)
+            start = _barrier_arrival(data, time, area, (a, b), floor)
         # the last block may hold the first rows of what follows
         stop = int(data.edges[b + 1] if b + 1 == data.time.size else data.edges[b])
         stretches.append(Stretch(kind, start, stop))

@@ -19,6 +19,8 @@ __all__ = ["find_knees", "refine_knees"]
 FloatArray = NDArray[np.float64]
 
 HIGHEST_DEGREE: Final = 5  # of a stretch; a fluid branch from lift-off to collapse needs about 4
+MODEST_DEGREE: Final = 2  # of the first fit
+ROUNDS: Final = 2  # of enriching shapes
 NODES_PER_DEGREE: Final = 8  # nodes a stretch must have for each degree
 STEP_SIGMAS: Final = 4.0  # a knee whose step of slope is not this many u above zero is dropped
 ROWS_PER_KNEE: Final = 120  # rows, or means of neighbouring rows, a knee is refined on
@@ -37,8 +39,12 @@ def find_knees(nodes: Nodes) -> KneeModel:
     if x.size < DENSE:
         candidates = sparse_candidates(x, y, sigma)
         return _fit(x, y, sigma, candidates, sparse_degrees(candidates, x))
-    candidates = with_dips(search(x, y, sigma), x, y, sigma)
+    candidates = search(x, y, sigma)
     model = _fit(x, y, sigma, candidates)
+    scatter = sigma * np.sqrt(max(model.inflation, 1.0))
+    dipped = with_dips(candidates, x, y, scatter)
+    if dipped is not candidates:
+        candidates, model = dipped, _fit(x, y, sigma, dipped)
     while True:
         weak = _weakest(model)
         if weak is None:
@@ -63,11 +69,18 @@ def _fit(
     inside = np.diff(np.searchsorted(x, edges))
     if highest is None:
         highest = tuple(int(np.clip(c // NODES_PER_DEGREE, 1, HIGHEST_DEGREE)) for c in inside)
-    degrees = choose_degrees(x, y, sigma, knots, widths, highest)
+    # modest shapes first: a rich polynomial would explain a rounding that the knee has yet to fit
+    modest = tuple(min(h, MODEST_DEGREE) for h in highest)
+    degrees = choose_degrees(x, y, sigma, knots, widths, modest)
     model = fit_knees(x, y, sigma, knots, widths, degrees)
-    again = choose_degrees(x, y, sigma, model.knots, model.widths, highest)
-    if again != degrees:
-        model = fit_knees(x, y, sigma, model.knots, model.widths, again)
+    for _ in range(ROUNDS):
+        degrees = choose_degrees(x, y, sigma, model.knots, model.widths, highest)
+        if degrees == model.degrees:
+            return model
+        richer = fit_knees(x, y, sigma, model.knots, model.widths, degrees)
+        if _bic(richer, y, sigma) > _bic(model, y, sigma):
+            return model
+        model = richer
     return model
 
 

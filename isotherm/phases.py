@@ -28,7 +28,7 @@ BASELINE_RISE: Final = (
     0.5  # mN/m; a baseline rises by less, or by less than BASELINE_SHARE of the whole
 )
 BASELINE_SHARE: Final = 0.02
-SHARP: Final = 0.5  # a kink's rounding (4 widths) may take this share of the shorter neighbour
+SHARP: Final = 1.5  # a kink's rounding (4 widths) may take this share of the shorter neighbour
 
 
 @dataclass(frozen=True)
@@ -174,8 +174,8 @@ def _plateau_end(stretches: tuple[Stretch, ...], before: int, last: int) -> int 
 
 def _is_kink(model: KneeModel, stretches: tuple[Stretch, ...], j: int) -> bool:
     here, after = stretches[j], stretches[j + 1]
-    if here.last < GASEOUS_BELOW or here.modulus <= 0:
+    if here.modulus < GASEOUS_BELOW:
         return False
     shorter = min(here.stop - here.start, after.stop - after.start)
     sharp = 4.0 * float(model.widths[j]) < SHARP * shorter
-    return sharp and after.first > KINK_RATIO * here.last and after.modulus > here.modulus
+    return sharp and after.modulus > KINK_RATIO * here.modulus

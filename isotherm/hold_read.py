@@ -1,0 +1,187 @@
+"""Read a record of film stability and find the holds in it."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, field
+from pathlib import Path
+
+import numpy as np
+from numpy.typing import NDArray
+
+from isotherm.constants import ZERO_CELSIUS
+from isotherm.errors import UpstrokeError
+from isotherm.hold_segments import Stretch, find_stretches
+from isotherm.sheet import RunSheet
+from isotherm.source import Source
+from isotherm.table import Table, read_table
+from isotherm.water import surface_tension
+
+__all__ = ["HoldRecord", "hold_record", "read_hold", "surface_pressure"]
+
+FloatArray = NDArray[np.float64]
+
+_FEWEST_ROWS = 60  # a dozen blocks of a few rows: fewer cannot tell the laws apart
+
+
+@dataclass(frozen=True)
+class HoldRecord:
+    """A record of area and pressure against time, with its holds.
+
+    time : (n,) s.  area : (n,) in `area_unit`, "cm^2" (trough) or "nm^2" (per molecule).
+    pressure : (n,) mN/m, as recorded.  stretches : the holds, in time order.
+    """
+
+    source: Source
+    time: FloatArray
+    area: FloatArray
+    area_unit: str
+    pressure: FloatArray
+    stretches: tuple[Stretch, ...]
+    title: str = ""
+    warnings: tuple[str, ...] = field(default=())
+
+
+def surface_pressure(table: Table, sheet: RunSheet) -> tuple[FloatArray, tuple[str, ...]]:
+    """Surface pressure of every row, mN/m, with what was assumed for it.
+
+    Parameters
+    ----------
+    table : Table
+        With a `pressure` or a `tension` column.
+    sheet : RunSheet
+        Its subphase's tension, or temperature, gives Pi = gamma0 - gamma.
+
+    Returns
+    -------
+    (n,) array, tuple of str
+        NaN where a cell is missing; warnings.
+
+    Raises
+    ------
+    UpstrokeError
+        When the table has neither column, or a tension but nothing to take it from.
+    """
+    if "pressure" in table.values:
+        return table.values["pressure"], ()
+    where = table.source.path
+    if "tension" not in table.values:
+        raise UpstrokeError(
+            "no column of surface pressure or tension",
+            where=where,
+            remedy="name it in the sheet's [[columns]] (role = \"pressure\")",
+        )
+    tension = table.values["tension"]
+    if sheet.subphase.tension is not None:
+        return sheet.subphase.tension.value - tension, ()
+    if sheet.subphase.temperature is not None:
+        celsius = sheet.subphase.temperature.value
+    elif "temperature" in table.values:
+        celsius = float(np.nanmedian(table.values["temperature"]))
+    else:
+        raise UpstrokeError(
+            "tension recorded, but the clean subphase's is not known",
+            where=where,
+            remedy="give [subphase] tension, or its temperature for pure water",
+        )
+    clean = surface_tension(celsius + ZERO_CELSIUS)
+    note = f"pressure taken from pure water's tension at {celsius:.1f} degC, {clean:.2f} mN/m"
+    return clean - tension, (note,)
+
+
+def _area(table: Table, sheet: RunSheet) -> tuple[FloatArray, str]:
+    """Area column and its unit; a barrier position becomes an area where the sheet gives the width."""
+    if "area" in table.values:
+        return table.values["area"], "cm^2"
+    if "molecular_area" in table.values:
+        return table.values["molecular_area"], "nm^2"
+    if "barrier_position" in table.values and sheet.trough.width is not None:
+        position = table.values["barrier_position"]
+        gap = position if position.ndim == 1 else np.abs(position[:, 0] - position[:, 1])
+        return gap * sheet.trough.width.value / 100.0, "cm^2"  # mm x mm -> cm^2
+    raise UpstrokeError(
+        "no column of area",
+        where=table.source.path,
+        remedy='name it in the sheet\'s [[columns]] (role = "area"), or give [trough] width where the '
+        "record has barrier positions",
+    )
+
+
+def hold_record(table: Table, sheet: RunSheet) -> HoldRecord:
+    """Make a record from a table and find its holds.
+
+    Parameters
+    ----------
+    table : Table
+        With time, area (or molecular area, or barrier position) and pressure (or tension).
+    sheet : RunSheet
+        Run sheet; may be empty.
+
+    Returns
+    -------
+    HoldRecord
+
+    Raises
+    ------
+    UpstrokeError
+        When a column is missing, or the record holds nothing.
+    """
+    where = table.source.path
+    if "time" not in table.values:
+        raise UpstrokeError(
+            "film stability needs a column of time",
+            where=where,
+            remedy='name it in the sheet\'s [[columns]] (role = "time")',
+        )
+    pressure, notes = surface_pressure(table, sheet)
+    area, unit = _area(table, sheet)
+    time = table.values["time"]
+    warnings = [*table.warnings, *notes]
+    kept = np.isfinite(time) & np.isfinite(area) & np.isfinite(pressure)
+    if not kept.all():
+        warnings.append(f"{int((~kept).sum())} rows with a missing cell left out")
+        time, area, pressure = time[kept], area[kept], pressure[kept]
+    if time.size and np.any(np.diff(time) <= 0):
+        order = np.argsort(time, kind="stable")
+        time, area, pressure = time[order], area[order], pressure[order]
+        fresh = np.concatenate([[True], np.diff(time) > 0])
+        warnings.append("time runs back or stands still; rows sorted, repeated times left out")
+        time, area, pressure = time[fresh], area[fresh], pressure[fresh]
+    if time.size < _FEWEST_ROWS:
+        raise UpstrokeError(
+            f"{time.size} rows are too few to judge a hold",
+            where=where,
+            remedy=f"give a record of at least {_FEWEST_ROWS} rows",
+        )
+    stretches = find_stretches(time, area, pressure)
+    if not stretches:
+        raise UpstrokeError(
+            "no hold found: neither pressure nor area keeps still under a film for long enough",
+            where=where,
+            remedy="give a record of a film held at a pressure or at an area",
+        )
+    return HoldRecord(
+        table.source, time, area, unit, pressure, stretches, sheet.title, tuple(warnings)
+    )
+
+
+def read_hold(path: str | Path, sheet: RunSheet | None = None) -> HoldRecord:
+    """Read a record of film stability and find its holds.
+
+    Parameters
+    ----------
+    path : str or Path
+        Export with time, area and pressure.
+    sheet : RunSheet, optional
+        Run sheet.
+
+    Returns
+    -------
+    HoldRecord
+
+    Raises
+    ------
+    UpstrokeError
+        When the file cannot be read, a column is missing, or it holds nothing.
+    """
+    known = sheet if sheet is not None else RunSheet()
+    return hold_record(read_table(path, known, needs=("time", "pressure")), known)
