@@ -19,6 +19,7 @@ from transfer.evidence_reading import (
     build_reading,
     film_key,
     films_of,
+    from_sheet,
     setting,
 )
 from transfer.evidence_series import EvidencePoint, EvidenceSeries, Impedance
@@ -68,7 +69,7 @@ def capacitance_reading(series: EvidenceSeries, ledger: LedgerView) -> Reading:
         inputs["electrode area"] = area
         powers = (*powers, ("electrode area", -1.0))
         true_area *= area.value
-    permittivity = series.quantity("permittivity")
+    permittivity = from_sheet(series, "permittivity", shown)
     inputs["permittivity"] = permittivity
     increments: dict[str, Increment] = {}
     for film in shown:

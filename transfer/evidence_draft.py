@@ -88,7 +88,7 @@ def _table(
     points = table.pop("points", None)
     allowed = tuple(key.name for key in KINDS[kind].keys)
     _known(table, allowed, kind, place, "points")
-    plain = kind.replace("_", " ")
+    plain = KINDS[kind].words
     label = str(table.pop("label", plain if many == 1 else f"{plain} {number}"))
     if not isinstance(points, list) or not points:
         raise UpstrokeError(
@@ -188,7 +188,7 @@ def _row(
 ) -> None:
     kind = given.pop("kind", "").lower().replace(" ", "_").replace("-", "_")
     _kind(kind, where)
-    label = given.pop("label", kind.replace("_", " "))
+    label = given.pop("label", KINDS[kind].words)
     draft = drafts.setdefault((kind, label), Draft(kind, label, where))
     keys = {key.name: key for key in KINDS[kind].keys}
     per_point = {k: v for k, v in given.items() if k in POINT_KEYS and k not in ("unit", "u")}

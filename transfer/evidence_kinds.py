@@ -38,6 +38,12 @@ class Kind:
     files: str = ""
     lowest: float = float("-inf")
 
+    @property
+    def words(self) -> str:
+        """The kind's name as people write it."""
+        plain = self.name.replace("_", " ")
+        return plain.replace("xray", "X-ray").replace("bragg", "Bragg")
+
 
 def _positive(name: str, dimension: str, meaning: str, example: str, high: float = 1e30) -> Key:
     return Key(name, "quantity", meaning, f'"{example}"', dimension, 0.0, high, above=True)

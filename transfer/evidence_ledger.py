@@ -20,13 +20,16 @@ FloatArray = NDArray[np.float64]
 class FilmInputs:
     """What the run sheet says about one layer of a film; None where it says nothing.
 
-    layer_thickness nm, molar_mass g/mol, molecular_area nm^2 (at the dipping pressure, on water).
+    layer_thickness nm, molar_mass g/mol, molecular_area nm^2 (at the dipping pressure, on water),
+    permittivity 1 (relative), absorptivity L/mol/cm (decadic).
     """
 
     name: str = ""
     layer_thickness: Quantity | None = None
     molar_mass: Quantity | None = None
     molecular_area: Quantity | None = None
+    permittivity: Quantity | None = None
+    absorptivity: Quantity | None = None
 
 
 @dataclass(frozen=True)

@@ -11,16 +11,17 @@ from transfer.evidence_reading import (
     build_reading,
     film_key,
     films_of,
+    from_sheet,
     setting,
 )
 from transfer.evidence_series import EvidenceSeries
 
-__all__ = ["SURFACE_DENSITY", "absorbance_reading"]
+__all__ = ["CM2_PER_MOL", "SURFACE_DENSITY", "absorbance_reading"]
 
 # Γ = 1/(N_A A) in mol/cm^2 for A in nm^2: 1 nm^2 = 1e-14 cm^2.
 SURFACE_DENSITY = 1e14 / AVOGADRO
 # 1 L/(mol cm) = 1e3 cm^2/mol.
-_CM2_PER_MOL = 1e3
+CM2_PER_MOL = 1e3
 
 
 def absorbance_reading(series: EvidenceSeries, ledger: LedgerView) -> Reading:
@@ -38,7 +39,7 @@ def absorbance_reading(series: EvidenceSeries, ledger: LedgerView) -> Reading:
     shown = films_of(series, ledger)
     faces = setting(series, "faces", 2, notes)
     inputs: dict[str, Quantity | None] = {
-        "absorptivity": series.quantity("absorptivity"),
+        "absorptivity": from_sheet(series, "absorptivity", shown),
         "orientation": setting(series, "orientation", 1, notes),
         "fraction": setting(series, "fraction", 1, notes),
     }
@@ -47,7 +48,7 @@ def absorbance_reading(series: EvidenceSeries, ledger: LedgerView) -> Reading:
         area = film_key("area per molecule", film)
         inputs[area] = film.molecular_area
         increments[film.name] = Increment(
-            faces.value * _CM2_PER_MOL * SURFACE_DENSITY,
+            faces.value * CM2_PER_MOL * SURFACE_DENSITY,
             (("absorptivity", 1.0), ("orientation", 1.0), ("fraction", 1.0), (area, -1.0)),
         )
     return build_reading(

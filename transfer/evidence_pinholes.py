@@ -74,7 +74,7 @@ def capacitance_pinholes(line: KindLine, ledger: LedgerView) -> Pinholes | None:
     note = (
         "no more than its uncertainty"
         if f < 2.0 * u_f
-        else "more capacitance than the intact film has; a thinner film or a larger permittivity shows the same"
+        else "above that of the intact film; a thinner film or a larger permittivity shows the same"
     )
     return Pinholes(reading.label, x, Quantity(f, u_f, "1"), _limit(f, u_f), note)
 

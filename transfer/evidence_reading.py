@@ -14,7 +14,7 @@ from isotherm.quantity import Quantity
 from transfer.evidence_ledger import FilmInputs, LedgerView
 from transfer.evidence_series import EvidenceSeries
 
-__all__ = ["Increment", "Reading", "build_reading", "film_key", "films_of", "setting"]
+__all__ = ["Increment", "Reading", "build_reading", "film_key", "films_of", "from_sheet", "setting"]
 
 FloatArray = NDArray[np.float64]
 
@@ -115,6 +115,16 @@ def films_of(series: EvidenceSeries, ledger: LedgerView) -> tuple[FilmInputs, ..
             remedy="name a film as the run sheet does",
         )
     return (ledger.film(wanted),)
+
+
+def from_sheet(series: EvidenceSeries, key: str, shown: tuple[FilmInputs, ...]) -> Quantity | None:
+    """Return a setting; when the evidence file lacks it, what the run sheet says for all films shown."""
+    given = series.quantity(key)
+    if given is not None:
+        return given
+    found = {getattr(film, key) for film in shown}
+    only = next(iter(found)) if len(found) == 1 else None
+    return only if isinstance(only, Quantity) else None
 
 
 def film_key(what: str, film: FilmInputs) -> str:

@@ -204,7 +204,9 @@ def statement_of(joint: JointResult, kinds: Sequence[KindResult], bent_together:
     elif joint.disagrees:
         also = [n for n in joint.undecided if n not in joint.disagrees]
         doubt = f" ({', '.join(also)} cannot be ruled out instead)" if also else ""
-        head = f"Disagrees with the rest: {', '.join(joint.disagrees)}{doubt}."
+        why = {k.label: f" ({k.reason})" for k in kinds if k.bend is not None and k.reason}
+        which = ", ".join(f"{name}{why.get(name, '')}" for name in joint.disagrees)
+        head = f"Disagrees with the rest: {which}{doubt}."
     else:
         head = f"{' and '.join(joint.undecided)} disagree, and nothing else tells which is right."
     if joint.layers is None:

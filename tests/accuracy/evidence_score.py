@@ -19,6 +19,7 @@ import numpy as np
 
 from isotherm.quantity import Quantity
 from transfer.evidence import assess
+from transfer.evidence_kinds import KINDS as EVIDENCE_KINDS
 from transfer.evidence_ledger import FilmInputs, LedgerView
 from transfer.evidence_read import read_evidence
 from transfer.evidence_result import EvidenceResult
@@ -92,7 +93,9 @@ def simulate(rng: np.random.Generator, fault: str) -> Sample:
     rows = ["kind,layers,value,u,unit,absorptivity,crystal_frequency,faces,electrons,electrode_area,"
             "roughness,permittivity"]  # fmt: skip
     for kind in kinds:
-        points = int(rng.integers(6, 11)) if kind == bad and fault == "bend" else int(rng.integers(3, 9))
+        points = (
+            int(rng.integers(6, 11)) if kind == bad and fault == "bend" else int(rng.integers(3, 9))
+        )
         if kind == bad and fault in ("outlier", "scatter"):
             points = max(points, 5)
         chosen = np.unique(np.round(np.linspace(rng.integers(0, 3), n, min(points, n))).astype(int))
@@ -103,7 +106,9 @@ def simulate(rng: np.random.Generator, fault: str) -> Sample:
             start = true_layers[int(rng.integers(chosen[2], chosen[-3] + 1))]
             on = np.minimum(on, start) + rng.uniform(0.0, 0.5) * np.maximum(on - start, 0.0)
         base = {"ellipsometric_thickness": 1.5, "interfacial_capacitance": 0.05}.get(kind, 0.0)
-        value = rise[kind] * (factor if kind == bad else 1.0) * (on if kind != "bragg_spacing" else 1.0)
+        value = (
+            rise[kind] * (factor if kind == bad else 1.0) * (on if kind != "bragg_spacing" else 1.0)
+        )
         value = base + value
         relative = rng.uniform(0.02, 0.15) if kind != "bragg_spacing" else 0.005
         u = np.full(len(chosen), relative * abs(rise[kind]))
@@ -131,14 +136,14 @@ def simulate(rng: np.random.Generator, fault: str) -> Sample:
         lays_film=np.ones(n, dtype=bool),
     )
     total = float(true_layers[-1])
-    return Sample(
-        "\n".join(rows), ledger, kinds, bad, fault, factor, total, total * density
-    )
+    return Sample("\n".join(rows), ledger, kinds, bad, fault, factor, total, total * density)
 
 
 def _row(kind, layers, v, s, electrode, roughness, absorptivity, permittivity):  # type: ignore[no-untyped-def]
     absorb = crystal = faces = electrons = area = rough = perm = ""
-    unit = {"absorbance": "1", "resonator_frequency": "Hz", "electroactive_coverage": "µC"}.get(kind, "nm")
+    unit = {"absorbance": "1", "resonator_frequency": "Hz", "electroactive_coverage": "µC"}.get(
+        kind, "nm"
+    )
     if kind == "absorbance":
         absorb, faces = f"{absorptivity} L/(mol·cm)", "2"
     elif kind == "resonator_frequency":
@@ -193,9 +198,7 @@ def score(half: str, sets: int) -> dict[str, float]:
             fault = FAULTS[number % len(FAULTS)]
             bad = simulate(rng, fault)
             result = run(bad, Path(folder))
-            hit = bad.bad.replace("_", " ") in result.joint.disagrees[:1] or (
-                bad.bad.replace("_", " ") in result.joint.disagrees
-            )
+            hit = EVIDENCE_KINDS[bad.bad].words in result.joint.disagrees
             tried[fault] += 1
             named[fault] += hit
             only += hit and len(result.joint.disagrees) == 1
