@@ -75,6 +75,9 @@ def with_dips(
     candidates: list[Candidate], x: FloatArray, y: FloatArray, sigma: FloatArray
 ) -> list[Candidate]:
     """The candidates, with the two knees of a dip put in where no pair of them encloses one."""
+    steps = [c.after - c.before for c in candidates]
+    if any(a < 0 < b for a, b in zip(steps[:-1], steps[1:], strict=True)):
+        return candidates
     whole = np.array([0, x.size], dtype=np.int64)
     local = local_regression(x, y, sigma, whole)
     dip = find_dip(x, local.modulus, local.u_modulus)

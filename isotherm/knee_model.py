@@ -26,7 +26,7 @@ __all__ = [
 
 FloatArray = NDArray[np.float64]
 
-MAX_ITERATIONS: Final = 30
+MAX_ITERATIONS: Final = 14
 CONVERGED: Final = 1e-2  # smallest fall of χ² worth another iteration, in units of its mean term
 # Misfits below this share of the pressure range decide nothing: no rounding shape is exact (our choice).
 INDIFFERENT: Final = 2e-4

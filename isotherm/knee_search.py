@@ -25,7 +25,8 @@ INDIFFERENT: Final = 5e-4
 # A stretch shorter than this share of both neighbours, its slope between theirs, is a rounding.
 SHORT: Final = 0.25
 SMOOTH_DEGREE: Final = 6  # a smooth rival gets as many parameters as the richest knee model
-WIDTH_GRID: Final = (0.006, 0.02, 0.06, 0.15)  # rounding widths tried, shares of half a window
+POSITIONS: Final = 28  # hinges tried along a window, before the best is refined
+WIDTH_GRID: Final = (0.008, 0.035, 0.14)  # rounding widths tried, shares of half a window
 
 
 @dataclass(frozen=True)
@@ -96,8 +97,8 @@ def test_knee(x: FloatArray, y: FloatArray, sigma: FloatArray) -> Verdict | None
     fitter = _HingeFitter(t, weight, target, q, along, floor)
     edge = 2 if n < 30 else max(2, n // 20)
     positions = t[edge : n - edge]
-    if positions.size > 40:
-        positions = positions[:: positions.size // 40 + 1]
+    if positions.size > POSITIONS:
+        positions = positions[:: positions.size // POSITIONS + 1]
     widths = np.array(WIDTH_GRID) if n >= 16 else np.array([WIDTH_GRID[0]])
     coarse = fitter.best(np.repeat(positions, widths.size), np.tile(widths, positions.size))
     if coarse is None:

@@ -20,6 +20,7 @@ FloatArray = NDArray[np.float64]
 
 HIGHEST_DEGREE: Final = 5  # of a stretch; a fluid branch from lift-off to collapse needs about 4
 MODEST_DEGREE: Final = 2  # of the first fit
+COARSE: Final = 8  # iterations of a fit that will be refined
 ROUNDS: Final = 2  # of enriching shapes
 NODES_PER_DEGREE: Final = 8  # nodes a stretch must have for each degree
 STEP_SIGMAS: Final = 4.0  # a knee whose step of slope is not this many u above zero is dropped
@@ -72,12 +73,12 @@ def _fit(
     # modest shapes first: a rich polynomial would explain a rounding that the knee has yet to fit
     modest = tuple(min(h, MODEST_DEGREE) for h in highest)
     degrees = choose_degrees(x, y, sigma, knots, widths, modest)
-    model = fit_knees(x, y, sigma, knots, widths, degrees)
+    model = fit_knees(x, y, sigma, knots, widths, degrees, iterations=COARSE)
     for _ in range(ROUNDS):
         degrees = choose_degrees(x, y, sigma, model.knots, model.widths, highest)
         if degrees == model.degrees:
             return model
-        richer = fit_knees(x, y, sigma, model.knots, model.widths, degrees)
+        richer = fit_knees(x, y, sigma, model.knots, model.widths, degrees, iterations=COARSE)
         if _bic(richer, y, sigma) > _bic(model, y, sigma):
             return model
         model = richer

@@ -50,13 +50,9 @@ def local_regression(
     stretch = np.searchsorted(stretches, np.arange(m), side="right") - 1
     low, high = stretches[stretch], stretches[stretch + 1]
     weight = 1.0 / sigma**2
-    base = x.mean()
     unit = max(float(np.ptp(x)), 1e-12)
-    t = ((x - base) / unit).astype(np.longdouble)
-    v = (y - y.mean()).astype(np.longdouble)
-    powers = t[:, None] ** np.arange(5)
-    sums = np.vstack([np.zeros(5), np.cumsum(weight[:, None] * powers, axis=0)])
-    cross = np.vstack([np.zeros(3), np.cumsum((weight * v)[:, None] * powers[:, :3], axis=0)])
+    t = x / unit
+    v = y - y.mean()
     value = np.full(m, np.nan)
     u_value = np.full(m, np.inf)
     slope = np.full(m, np.nan)
@@ -70,7 +66,12 @@ def local_regression(
             break
         a = np.maximum(at - half, low[at])
         b = np.minimum(at + half + 1, high[at])
-        fit = _parabola(sums[b] - sums[a], cross[b] - cross[a], t[at], b - a)
+        index = at[:, None] + np.arange(-half, half + 1)
+        inside = (index >= a[:, None]) & (index < b[:, None])
+        index = np.clip(index, 0, m - 1)
+        fit = _parabola(
+            t[index] - t[at][:, None], v[index], np.where(inside, weight[index], 0.0), b - a
+        )
         known = np.isfinite(fit.u_slope)
         lower[at] = np.where(
             known, np.maximum(lower[at], fit.slope - AGREE * fit.u_slope), lower[at]
@@ -99,34 +100,39 @@ class _Parabolas:
     u_slope: FloatArray
 
 
-def _parabola(s: FloatArray, r: FloatArray, at: FloatArray, count: IntArray) -> _Parabolas:
-    """Weighted parabolas about `at` from moment sums s (k, 5) and r (k, 3); lines below 5 nodes."""
-    c = at
-    m0 = s[:, 0]
-    m1 = s[:, 1] - c * m0
-    m2 = s[:, 2] - 2 * c * s[:, 1] + c**2 * m0
-    m3 = s[:, 3] - 3 * c * s[:, 2] + 3 * c**2 * s[:, 1] - c**3 * m0
-    m4 = s[:, 4] - 4 * c * s[:, 3] + 6 * c**2 * s[:, 2] - 4 * c**3 * s[:, 1] + c**4 * m0
-    r0 = r[:, 0]
-    r1 = r[:, 1] - c * r0
-    r2 = r[:, 2] - 2 * c * r[:, 1] + c**2 * r0
-    size = np.maximum(np.sqrt(m2 / m0), 1e-9)  # scales the window to order one
-    n = np.zeros((c.size, 3, 3))
-    n[:, 0, 0], n[:, 0, 1], n[:, 0, 2] = m0, m1 / size, m2 / size**2
-    n[:, 1, 0], n[:, 1, 1], n[:, 1, 2] = n[:, 0, 1], n[:, 0, 2], m3 / size**3
-    n[:, 2, 0], n[:, 2, 1], n[:, 2, 2] = n[:, 0, 2], n[:, 1, 2], m4 / size**4
-    n /= m0[:, None, None].astype(float)
-    right = np.stack([r0, r1 / size, r2 / size**2], axis=1) / m0[:, None]
+def _parabola(t: FloatArray, v: FloatArray, w: FloatArray, count: IntArray) -> _Parabolas:
+    """Weighted parabolas through (k, h) values v at offsets t; a line below five points.
+
+    The value and the slope are those at offset 0.
+    """
+    m0 = w.sum(axis=1)
+    size = np.maximum(np.sqrt(np.einsum("kh,kh->k", w, t * t) / m0), 1e-12)
+    s = t / size[:, None]
+    w = w / m0[:, None]
+    ws = w * s
+    wss = ws * s
+    m1 = ws.sum(axis=1)
+    m2 = wss.sum(axis=1)
+    m3 = np.einsum("kh,kh->k", wss, s)
+    m4 = np.einsum("kh,kh->k", wss, s * s)
+    r0 = np.einsum("kh,kh->k", w, v)
+    r1 = np.einsum("kh,kh->k", ws, v)
+    r2 = np.einsum("kh,kh->k", wss, v)
     few = count < 5
-    n[few, 2, :2] = n[few, :2, 2] = 0.0
-    n[few, 2, 2] = 1.0
-    right[few, 2] = 0.0
-    n[:, [0, 1, 2], [0, 1, 2]] += 1e-9
-    inverse = np.linalg.inv(n)
-    solution = np.einsum("kij,kj->ki", inverse, right.astype(float))
-    variance = np.maximum(inverse[:, [0, 1], [0, 1]], 0.0) / m0[:, None].astype(float)
-    size = size.astype(float)
-    u = np.sqrt(variance)
-    none = count < 3
-    u_slope = np.where(none, np.inf, u[:, 1] / size)
-    return _Parabolas(solution[:, 0], u[:, 0], solution[:, 1] / size, u_slope)
+    # cofactors of the symmetric matrix [[1, m1, m2], [m1, m2, m3], [m2, m3, m4]]
+    a = np.where(few, 1.0, m2 * m4 - m3 * m3)
+    c00 = np.where(few, m2, a)
+    c01 = np.where(few, -m1, m2 * m3 - m1 * m4)
+    c02 = np.where(few, 0.0, m1 * m3 - m2 * m2)
+    c11 = np.where(few, 1.0, m4 - m2 * m2)
+    c12 = np.where(few, 0.0, m1 * m2 - m3)
+    det = np.where(few, m2 - m1 * m1, c00 + m1 * c01 + m2 * c02)
+    sound = (det > 1e-12) & (count >= 3)
+    det = np.where(sound, det, 1.0)
+    value = (c00 * r0 + c01 * r1 + c02 * r2) / det
+    slope = (c01 * r0 + c11 * r1 + c12 * r2) / det / size
+    u_value = np.sqrt(np.maximum(c00 / det, 0.0) / m0)
+    u_slope = np.sqrt(np.maximum(c11 / det, 0.0) / m0) / size
+    return _Parabolas(
+        value, np.where(sound, u_value, np.inf), slope, np.where(sound, u_slope, np.inf)
+    )
