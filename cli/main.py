@@ -45,6 +45,10 @@ _register(
     sheet="Write a commented run sheet to fill in.",
     isotherm="Areas, phases, transitions, collapse and modulus of a compression.",
 )
+_register(
+    "A film on a substrate",
+    transfer="Transfer ratio of every stroke, deposition type, layers.",
+)
 
 
 class LazyGroup(TyperGroup):

@@ -13,9 +13,13 @@ __all__ = [
     "CsvOption",
     "FigureOption",
     "ForceOption",
+    "IsothermOption",
+    "IsothermSheetOption",
     "JobsOption",
     "JsonOption",
     "KeepGoingOption",
+    "LogArgument",
+    "NeededSheetOption",
     "SheetOption",
     "TraceArgument",
     "TracesArgument",
@@ -39,6 +43,19 @@ ForceOption = Annotated[
 SheetOption = Annotated[
     Path | None,
     typer.Option("--sheet", "-s", metavar="SHEET", help="Run sheet (TOML); see upstroke sheet."),
+]
+NeededSheetOption = Annotated[
+    Path,
+    typer.Option("--sheet", "-s", metavar="SHEET", help="Run sheet (TOML); see upstroke sheet."),
+]
+LogArgument = Annotated[Path, typer.Argument(metavar="LOG", help="Dipping log, as exported.")]
+IsothermOption = Annotated[
+    Path | None,
+    typer.Option("--isotherm", "-i", metavar="TRACE", help="Isotherm of the film that is dipped."),
+]
+IsothermSheetOption = Annotated[
+    Path | None,
+    typer.Option("--isotherm-sheet", metavar="SHEET", help="Its own run sheet, if it has one."),
 ]
 TraceArgument = Annotated[Path, typer.Argument(metavar="TRACE", help="Export of a trough.")]
 TracesArgument = Annotated[

@@ -15,13 +15,16 @@ __all__ = [
     "COVERAGE_NOTE",
     "Column",
     "bullets",
+    "hanging",
     "heading",
+    "inverse",
     "join_blocks",
     "paragraph",
     "plain_number",
     "pretty_unit",
     "quantity_cells",
     "range_text",
+    "scaled",
     "shown",
     "source_block",
     "table",
@@ -80,6 +83,32 @@ def with_unit(quantity: Quantity | None) -> str:
     return f"{format_quantity(quantity)} {pretty_unit(quantity.unit)}".rstrip()
 
 
+def scaled(quantity: Quantity, factor: float, unit: str) -> Quantity:
+    """Write a quantity in a unit `factor` times smaller."""
+
+    def times(u: float | None) -> float | None:
+        return None if u is None else abs(factor) * u
+
+    return Quantity(
+        factor * quantity.value,
+        times(quantity.u),
+        unit,
+        times(quantity.u_random),
+        times(quantity.u_systematic),
+    )
+
+
+def inverse(quantity: Quantity, unit: str = "mN/m") -> Quantity | None:
+    """Write one over a quantity, u to first order; None where it is not positive."""
+    if quantity.value <= 0:
+        return None
+    return scaled(
+        Quantity(quantity.value, quantity.u, "", quantity.u_random, quantity.u_systematic),
+        1.0 / quantity.value**2,
+        unit,
+    )
+
+
 def plain_number(value: float | None, digits: int = 3) -> str:
     """Write a number that carries no uncertainty of its own, with few digits."""
     if value is None or not math.isfinite(value):
@@ -126,6 +155,17 @@ def paragraph(text: str, width: int, *, indent: str = "") -> str:
         printable(text), width, initial_indent=indent, subsequent_indent=indent,
         break_on_hyphens=False,
     )  # fmt: skip
+
+
+def hanging(text: str, width: int, *, indent: int) -> str:
+    """Wrap running text with its first line at the margin's indent and the others two further in."""
+    return textwrap.fill(
+        printable(text),
+        width,
+        initial_indent=" " * indent,
+        subsequent_indent=" " * (indent + 2),
+        break_on_hyphens=False,
+    )
 
 
 def bullets(lines: Sequence[str], width: int) -> str:
