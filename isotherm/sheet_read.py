@@ -88,7 +88,7 @@ def parse_sheet(text: str, path: str = "") -> RunSheet:
         film=_film(values.get("film", {}), place),
         subphase=Subphase(**values.get("subphase", {})),
         trough=_trough(values.get("trough", {}), place),
-        substrate=_substrate(values["substrate"], place) if "substrate" in values else None,
+        substrate=_substrate(values["substrate"], place) if values.get("substrate") else None,
         dipping=Dipping(**values.get("dipping", {})),
         stack=_stack(values.get("stack", {})),
         target=Target(**values.get("target", {})),
@@ -103,7 +103,9 @@ def _not_toml(error: tomllib.TOMLDecodeError, text: str, where: str) -> Upstroke
     remedy = 'quantities and text go in double quotes, as in volume = "50 µL"'
     if found is None:
         return UpstrokeError(
-            f"not TOML: {reason[:100]} (at the end of the sheet)", where=where, remedy=remedy
+            f"not TOML: {reason[:100]}",
+            where=f"{where}, line {max(1, len(text.splitlines()))} (the last)",
+            remedy=remedy,
         )
     line, column = int(found.group(1)), int(found.group(2))
     lines = text.splitlines()

@@ -160,7 +160,7 @@ SECTIONS: Final[tuple[Section, ...]] = (
             Key(
                 "tension",
                 "quantity",
-                "of the clean subphase as measured; else that of pure water is used",
+                "clean, as measured; else that of pure water",
                 '"72.7 ± 0.1 mN/m"',
                 "pressure",
                 1.0,
@@ -197,7 +197,7 @@ SECTIONS: Final[tuple[Section, ...]] = (
             _positive(
                 "width",
                 "length",
-                "between the side walls; only where the export gives barrier positions",
+                "between side walls; only for barrier positions",
                 "75 mm",
                 high=1e5,
             ),
@@ -209,7 +209,7 @@ SECTIONS: Final[tuple[Section, ...]] = (
         (
             _choice(
                 "shape",
-                "plate: width, thickness; rod: diameter; table: thickness and [[substrate.profile]]",
+                "plate, rod, or table (with substrate.profile)",
                 ("plate", "rod", "table"),
             ),
             _positive("width", "length", "plate", "20.0 ± 0.1 mm", high=1e5),
@@ -218,7 +218,7 @@ SECTIONS: Final[tuple[Section, ...]] = (
             _positive("height", "length", "from the lower edge to the top", "40 mm", high=1e5),
             Key("wetting", "flag", "whether the bare substrate is wetted by the subphase", "true"),
             _text("material", "", "silicon"),
-            _text("cleaning", "how it was cleaned", "UV and ozone, 20 min, then water"),
+            _text("cleaning", "how it was cleaned", "water, then ethanol"),
         ),
         cautions=(
             "Oxidising baths (acid with peroxide, chromic acid) burn, and may explode with organics: trained",
@@ -273,7 +273,7 @@ SECTIONS: Final[tuple[Section, ...]] = (
             ),
             _choice(
                 "position_reads",
-                "depth: the reading grows as the substrate goes down; height: the reverse",
+                "depth: grows going down; height: grows going up",
                 ("depth", "height"),
             ),
             Key(
@@ -288,7 +288,7 @@ SECTIONS: Final[tuple[Section, ...]] = (
             _positive(
                 "modulus",
                 "pressure",
-                "of the film at the dipping pressure; else an isotherm or the dwells give it",
+                "of the film there; else an isotherm or the dwells tell",
                 "180 mN/m",
                 high=1e5,
             ),
@@ -314,7 +314,7 @@ SECTIONS: Final[tuple[Section, ...]] = (
             Key("layers", "integer", "how many", "20", low=1, high=1e6),
             _choice(
                 "type",
-                "X: down-strokes only; Z: up-strokes only; Y: both, equal; XY: both, unequal",
+                "X: down only; Z: up only; Y: both; XY: both, unequal",
                 ("Y", "X", "Z", "XY"),
             ),
             _choice("first_stroke", "the first that deposits", ("up", "down")),
@@ -345,7 +345,7 @@ SECTIONS: Final[tuple[Section, ...]] = (
             Key(
                 "drift_limit",
                 "number",
-                "largest change of the transfer ratio from stroke to stroke",
+                "largest slope of the transfer ratio per stroke",
                 "0.002",
                 low=0.0,
                 high=10.0,

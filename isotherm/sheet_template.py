@@ -24,7 +24,7 @@ def _line(key: Key) -> str:
         meaning = " | ".join(key.choices)
     if not meaning:
         return setting
-    line = f"{setting:<42}  # {meaning}"
+    line = f"{setting:<40}  # {meaning}"
     if len(line) <= _WIDTH:
         return line
     return "\n".join(
@@ -35,7 +35,7 @@ def _line(key: Key) -> str:
 def _block(section: Section) -> str:
     heading = f"[[{section.path}]]" if section.many else f"[{section.path}]"
     lines = [f"## {section.meaning}"]
-    lines += [f"##   ! {caution}" for caution in section.cautions]
+    lines += [f"##   {caution}" for caution in section.cautions]
     # only plain tables start switched on: an empty one says nothing, a child table would
     lines.append(f"# {heading}" if section.many or "." in section.path else heading)
     lines += [_line(key) for key in section.keys]

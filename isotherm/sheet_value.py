@@ -47,11 +47,11 @@ def suggestion(name: str, known: Sequence[str], elsewhere: Sequence[str] = ()) -
     """What to write instead of the unknown key `name`."""
     from difflib import get_close_matches
 
+    if elsewhere:
+        return f"it belongs elsewhere: {' or '.join(elsewhere[:3])}"
     close = get_close_matches(name.lower()[:60], known, n=1, cutoff=0.6)
     if close:
         return f"did you mean '{close[0]}'?"
-    if elsewhere:
-        return f"it belongs elsewhere: {' or '.join(elsewhere[:3])}"
     return f"known here: {', '.join(known)}"
 
 

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import importlib
 import io
 import zipfile
 from datetime import date, datetime, time, timedelta
@@ -33,7 +34,7 @@ def workbook_text(data: bytes, where: str) -> bytes:
         When openpyxl is not installed, the workbook is damaged, or several worksheets hold numbers.
     """
     try:
-        import openpyxl
+        openpyxl: Any = importlib.import_module("openpyxl")
     except ImportError:
         raise UpstrokeError(
             "reading .xlsx needs the package openpyxl, which is not installed",

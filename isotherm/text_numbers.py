@@ -114,9 +114,9 @@ def _in_parts(
     if len(read) < count:
         return None
     line = first_line
-    for part in read:  # every line is a row here, blank ones too
-        part.lines = part.lines + line
-        line += len(part.lines)
+    for one in read:  # every line is a row here, blank ones too
+        one.lines = one.lines + line
+        line += len(one.lines)
     return _joined(read, wanted)
 
 

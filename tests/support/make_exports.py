@@ -30,7 +30,7 @@ class InventedRun:
 
 
 def invented_run() -> InventedRun:
-    """A compression of a film nobody spread: 40 rows, decimals as an instrument would round them."""
+    """A compression of a film nobody spread: 40 rows, rounded as an instrument would."""
     time = np.arange(40) * 15.0
     area = np.round(240.0 - 4.5 * np.arange(40) + 0.03 * np.sin(np.arange(40)), 2)
     molecular = np.round(area / 240.0 * 0.80, 4)
@@ -104,7 +104,8 @@ def _texts() -> dict[str, bytes]:
     )
     files["preamble.txt"] = (
         "Trough run, invented\nOperator: nobody\nBarrier speed: 10 mm/min\nDate: 2031-05-06\nSteps 1 2 3\n\n"
-        "Max area 243 cm2\nMin area 60 cm2\nTarget pressure 30 mN/m\n\nTime (s)\tArea (cm²)\tPressure (mN/m)\n"
+        "Max area 243 cm2\nMin area 60 cm2\nTarget pressure 30 mN/m\n\n"
+        "Time (s)\tArea (cm²)\tPressure (mN/m)\n"
         + _rows(three, "\t")
     )
     files["preamble_table.csv"] = (
@@ -172,7 +173,8 @@ def _texts() -> dict[str, bytes]:
         "(mN/m),Air temperature (degC),Subphase temperature (K)\n"
         + _rows(
             [
-                list(range(40)), (run.time / 60.0).tolist(), [10.0] * 40, np.round(run.area * 100.0, 1).tolist(),
+                list(range(40)), (run.time / 60.0).tolist(), [10.0] * 40,
+                np.round(run.area * 100.0, 1).tolist(),
                 [30.0] * 40, three[2], [23.4] * 40, np.round(run.temperature + 273.15, 2).tolist(),
             ],
             ",",
@@ -270,7 +272,9 @@ def _bad() -> dict[str, tuple[bytes, list[str]]]:
             "Area (nm^2/molecule),Mean molecular area (nm^2),Pressure (mN/m)\n" + rows,
             ["2 columns", "molecular area", "[[columns]]"],
         ),
-        "unknown_unit.csv": ("Area per molecule (nm^2),Pressure (furlong)\n" + molecule, ["unknown unit", "furlong"]),
+        "unknown_unit.csv": (
+            "Area per molecule (nm^2),Pressure (furlong)\n" + molecule, ["unknown unit", "furlong"]
+        ),
         "unknown_area_unit.csv": ("Area (acre),Pressure (mN/m)\n" + two, ["unknown unit", "acre"]),
         "no_area_unit.csv": ("Area,Pressure (mN/m)\n" + two, ["no unit", "[[columns]]", "unit ="]),
         "bulk_pressure.csv": ("Area per molecule (nm^2),Pressure (kPa)\n" + molecule, ["pressure"]),
