@@ -9,7 +9,7 @@ from numpy.typing import NDArray
 
 from transfer.contact import Contact, immersion
 from transfer.ratio_nodes import Nodes
-from transfer.strokes_motion import Motion
+from transfer.strokes_motion import Motion, Move
 from transfer.strokes_pressure import Pressure
 
 __all__ = ["Passage", "Strokes", "Unjudged", "find_strokes"]
@@ -23,8 +23,6 @@ _LEAST_MM = 0.3
 _LEAST_U = 3.0
 # A stroke that crosses less than this part of the usual one is called partial.
 _PARTIAL_PART = 0.85
-# A rest in air shorter than this part of the usual dwell is a pause on the way, not the end of a stroke.
-_PAUSE_PART = 0.5
 
 
 @dataclass(frozen=True)
@@ -87,85 +85,61 @@ def find_strokes(
     where = {
         (int(r), int(h)): k for k, (r, h) in enumerate(zip(nodes.rest, nodes.hold, strict=True))
     }
-    joins = _joins(time, motion)
     passages: list[Passage] = []
     unjudged: list[Unjudged] = []
     idle = 0
-    for m, move in enumerate(motion.moves):
-        change = depth[m + 1] - depth[m]
+    for moves in _ways(motion, nodes, where, held, contact, depth):
+        a, b = moves[0], moves[-1] + 1
+        change = depth[b] - depth[a]
+        start, end = motion.moves[a].start, motion.moves[b - 1].end
         if abs(change) < least:
-            idle += 1
-            _extend(passages, m, motion, nodes, where, held, joins)
+            idle += len(moves)
             continue
-        ends = _same_hold(m, nodes, where, held, move.first, move.last)
-        if ends is None:
-            unjudged.append(Unjudged(move.start, move.end, _why(held, move.first, move.last)))
+        ends = [_same_hold(m, nodes, where, held, motion.moves[m]) for m in moves]
+        first = ends[0]
+        if first is None:
+            first_row, last_row = motion.moves[a].first, motion.moves[b - 1].last
+            unjudged.append(Unjudged(start, end, _why(held, first_row, last_row)))
             continue
-        before, after, hold = ends
-        direction = "down" if change > 0 else "up"
-        shallow, deep = sorted((float(depth[m]), float(depth[m + 1])))
-        shallow = _in_air(shallow, levels, m, m + 1, contact)
-        if passages and passages[-1].moves[-1] == m - 1:
-            last = passages[-1]
-            if last.direction == direction and last.hold == hold and depth[m] > 0:
-                passages[-1] = replace(
-                    last,
-                    moves=(*last.moves, m),
-                    nodes=(*last.nodes, after),
-                    end=move.end,
-                    shallow=min(last.shallow, shallow),
-                    deep=max(last.deep, deep),
-                )
-                continue
-        moves: tuple[int, ...] = (m,)
-        ends_at: tuple[int, ...] = (before, after)
-        start = move.start
-        lead = m - 1
-        if lead >= 0 and joins[lead] and abs(depth[m] - depth[lead]) < least:
-            # the stroke had begun in air and paused there
-            led = _same_hold(lead, nodes, where, held, motion.moves[lead].first, move.last)
-            if led is not None and led[2] == hold:
-                moves, ends_at, start = (lead, m), (led[0], before, after), motion.moves[lead].start
-        passages.append(Passage(direction, moves, ends_at, hold, start, move.end, shallow, deep))
+        shallow, deep = sorted((float(depth[a]), float(depth[b])))
+        passages.append(
+            Passage(
+                "down" if change > 0 else "up",
+                moves,
+                (first[0], *(e[1] for e in ends if e is not None)),
+                first[2],
+                start,
+                end,
+                _in_air(shallow, levels, a, b, contact),
+                deep,
+            )
+        )
     usual = float(np.median([p.deep - max(p.shallow, 0.0) for p in passages])) if passages else 0.0
     flagged = [_flag(p, time, motion, nodes, usual) for p in passages]
     return Strokes(tuple(flagged), tuple(unjudged), idle)
 
 
-def _joins(time: FloatArray, motion: Motion) -> list[bool]:
-    """Whether move m goes on as move m + 1: same way, after a rest short against the usual dwell."""
-    levels = np.asarray([rest.level for rest in motion.rests], dtype=np.float64)
-    way = np.sign(np.diff(levels))
-    stay = np.asarray(
-        [time[min(r.last, time.size - 1)] - time[min(r.first, time.size - 1)] for r in motion.rests]
-    )
-    turning = np.concatenate([[False], way[1:] != way[:-1], [False]])
-    usual = float(np.median(stay[turning])) if turning.any() else 0.0
-    return [
-        bool(way[m] == way[m + 1] and stay[m + 1] < _PAUSE_PART * usual)
-        for m in range(way.size - 1)
-    ] + [False]
-
-
-def _extend(
-    passages: list[Passage],
-    m: int,
+def _ways(
     motion: Motion,
     nodes: Nodes,
     where: dict[tuple[int, int], int],
     held: Pressure,
-    joins: list[bool],
-) -> None:
-    """Let a stroke that paused in air go on to where it stops."""
-    if not passages or passages[-1].moves[-1] != m - 1 or not joins[m - 1]:
-        return
-    last = passages[-1]
-    ends = _same_hold(m, nodes, where, held, motion.moves[m].first, motion.moves[m].last)
-    if ends is None or ends[2] != last.hold:
-        return
-    passages[-1] = replace(
-        last, moves=(*last.moves, m), nodes=(*last.nodes, ends[1]), end=motion.moves[m].end
-    )
+    contact: Contact,
+    depth: FloatArray,
+) -> list[tuple[int, ...]]:
+    """Group moves that go on the same way after a rest in the water, within one hold: pauses of a stroke."""
+    levels = np.asarray([rest.level for rest in motion.rests], dtype=np.float64)
+    way = np.sign(np.diff(immersion(contact, levels)))
+    homes = [_same_hold(m, nodes, where, held, move) for m, move in enumerate(motion.moves)]
+    groups: list[tuple[int, ...]] = []
+    for m, home in enumerate(homes):
+        before = homes[m - 1] if m else None
+        together = home is not None and before is not None and home[2] == before[2]
+        if groups and together and way[m] == way[m - 1] and depth[m] > 0:
+            groups[-1] = (*groups[-1], m)
+        else:
+            groups.append((m,))
+    return groups
 
 
 def _least(motion: Motion, contact: Contact) -> float:
@@ -188,12 +162,11 @@ def _same_hold(
     nodes: Nodes,
     where: dict[tuple[int, int], int],
     held: Pressure,
-    first: int,
-    last: int,
+    way: Move,
 ) -> tuple[int, int, int] | None:
     """Nodes before and after a move that lie in one hold with it, or None."""
     for h, hold in enumerate(held.holds):
-        if hold.first <= first + 1 and hold.last >= last - 1:
+        if hold.first <= way.first + 1 and hold.last >= way.last - 1:
             before, after = where.get((move, h)), where.get((move + 1, h))
             if before is None or after is None:
                 continue

@@ -32,6 +32,10 @@ _MAX_PLATEAUS = 6
 # A film that comes back larger by this part was renewed; creep and strokes only make it smaller.
 _RENEWED_PART = 0.01
 _GLITCH_ROWS = 2
+# A hold begins and ends where the pressure is within this part of the band: on a ramp, that is near its end.
+_EDGE = 0.5
+# Between its first and last third a ramp through the band climbs by 4/3 of the band (2/3 of its width).
+_CLIMB = 0.9
 
 
 @dataclass(frozen=True)
@@ -110,8 +114,11 @@ def find_holds(
         if inside.sum() < max(need, _PLATEAU_PART * time.size):
             break
         for first, last in _true_runs(inside):
-            # a ramp fills the band from edge to edge; a hold does not
-            climbing = abs(smooth[last] - smooth[first]) > 1.2 * band
+            # a ramp crosses the band from edge to edge; a hold stays where it is
+            third = max(1, (last - first + 1) // 3)
+            early = float(np.median(smooth[first : first + third]))
+            late = float(np.median(smooth[last + 1 - third : last + 1]))
+            climbing = abs(late - early) > _CLIMB * band
             if last - first + 1 >= need and not climbing and at > _NO_FILM:
                 label[first : last + 1] = len(settings)
         free &= ~inside
@@ -137,7 +144,7 @@ def find_holds(
         inside = label[rows] >= 0
         value = float(np.median(pressure[rows][inside]))
         spread = 1.4826 * float(np.median(np.abs(smooth[rows][inside] - value)))
-        limit = max(0.15 * band, 4.0 * spread)
+        limit = max(_EDGE * band, 4.0 * spread)
         close = inside & (np.abs(smooth[rows] - value) <= limit)
         usable = np.flatnonzero(close)
         first, last = first + int(usable[0]), first + int(usable[-1])
