@@ -4,12 +4,16 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import replace
+from pathlib import Path
 from typing import Final
 
 from isotherm.errors import UpstrokeError
 from isotherm.quantity import Quantity
+from isotherm.result import IsothermResult
+from isotherm.sheet import RunSheet
 from transfer.evidence_capacitance import capacitance_reading
 from transfer.evidence_coverage import coverage_reading
+from transfer.evidence_from_result import ledger_from_result
 from transfer.evidence_implied import (
     LEDGER,
     ledger_member,
@@ -21,13 +25,15 @@ from transfer.evidence_ledger import LedgerView
 from transfer.evidence_line import KindLine, fit_reading
 from transfer.evidence_optical import SURFACE_DENSITY, absorbance_reading
 from transfer.evidence_pinholes import blocking_pinholes, capacitance_pinholes
+from transfer.evidence_read import read_evidence
 from transfer.evidence_report import kind_result, statement_of
 from transfer.evidence_resonator import resonator_reading
 from transfer.evidence_result import EvidenceResult, JointResult, Pinholes
 from transfer.evidence_series import EvidenceSet
 from transfer.evidence_thickness import spacing_reading, thickness_reading
+from transfer.result import TransferResult
 
-__all__ = ["SCALE_LEVEL", "SHAPE_LEVEL", "assess"]
+__all__ = ["SCALE_LEVEL", "SHAPE_LEVEL", "assess", "evidence_for"]
 
 # Chance of one or more false alarms, split between the test that all kinds imply the same number of
 # layers and the tests of each kind's shape (shared out evenly over the kinds). Together 4.5 %: the
@@ -44,6 +50,32 @@ _READERS: Final = {
     "electroactive_coverage": coverage_reading,
     "interfacial_capacitance": capacitance_reading,
 }
+
+
+def evidence_for(
+    path: str | Path,
+    result: TransferResult,
+    sheet: RunSheet,
+    *,
+    isotherm: IsothermResult | None = None,
+) -> EvidenceResult:
+    """Read the evidence file at `path` and test it against a transfer result.
+
+    Parameters
+    ----------
+    path : str or Path
+        CSV or TOML, see `evidence_read`.
+    result : TransferResult
+    sheet : RunSheet
+    isotherm : IsothermResult or None
+        Gives the area per molecule at the dipping pressure when the sheet does not.
+
+    Raises
+    ------
+    UpstrokeError
+        As `read_evidence` and `assess`.
+    """
+    return assess(read_evidence(path), ledger_from_result(result, sheet, isotherm=isotherm))
 
 
 def assess(evidence: EvidenceSet, ledger: LedgerView) -> EvidenceResult:
@@ -66,7 +98,7 @@ def assess(evidence: EvidenceSet, ledger: LedgerView) -> EvidenceResult:
             where=evidence.path,
             remedy="check the log's transfer ratios first",
         )
-    warnings = list(evidence.warnings)
+    warnings = [*ledger.warnings, *evidence.warnings]
     readings = []
     pinholes: list[Pinholes] = []
     for series in evidence.series:

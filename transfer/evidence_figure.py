@@ -27,6 +27,7 @@ _SHOWN = {
     "1": (1.0, ""),
     "Hz": (1.0, "Hz"),
 }
+_NANOMOLES = 2e-9  # mol/cm^2; above, pmol/cm^2 would need five digits
 _AXES = {
     "absorbance": "absorbance",
     "frequency": "frequency change Δf",
@@ -77,12 +78,15 @@ def _wrapped(text: str, width: int) -> str:
     return "\n".join(textwrap.wrap(text, max(width, 40)))
 
 
-def _scale(unit: str) -> tuple[float, str]:
+def _scale(unit: str, largest: float) -> tuple[float, str]:
+    """Factor and unit for an axis whose largest value is `largest` (in the result's unit)."""
+    if unit == "mol/cm^2" and largest > _NANOMOLES:
+        return 1e9, "nmol/cm²"
     return _SHOWN.get(unit, (1.0, unit))
 
 
 def _draw_kind(axis: Axes, kind: KindResult) -> None:
-    factor, unit = _scale(kind.unit)
+    factor, unit = _scale(kind.unit, float(np.max(np.abs(kind.y))))
     name = _AXES.get(kind.symbol, kind.symbol)
     axis.set_xlabel("layers by transfer ratio N")
     axis.set_ylabel(f"{name} ({unit})" if unit else name)
