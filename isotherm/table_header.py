@@ -109,7 +109,7 @@ def _bare_unit(text: str) -> tuple[str, str] | None:
 
 def _bare_ways(text: str) -> Iterator[tuple[str, str]]:
     """The whole cell, or what follows a slash, comma, colon, `in`, the last blanks or underscores."""
-    if len(text) > 1 and is_unit(text) and not roles_of(text, None):
+    if (len(text) > 1 or text == "s") and is_unit(text) and not roles_of(text, None):
         yield "", text
     for match in re.finditer(r"/", text):
         name, right = text[: match.start()].strip(), text[match.end() :].strip()

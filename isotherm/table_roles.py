@@ -80,7 +80,7 @@ def assign_roles(
     candidates: dict[str, list[int]] = {role: [] for role in ROLES}
     unsure: dict[str, list[int]] = {}
     for column, cell in enumerate(cells):
-        if column in used or kinds[column] in "TE":
+        if column in used or kinds[column] == "T":
             continue
         roles = [r for r in cell.roles if kinds[column] != "C" or r == "time"]
         if len(roles) == 1:
@@ -88,6 +88,10 @@ def assign_roles(
         elif len(roles) > 1:
             for role in roles:
                 unsure.setdefault(role, []).append(column)
+    for columns in candidates.values():
+        # a column without readings stands back behind one that has some
+        filled = [c for c in columns if kinds[c] != "E"]
+        columns[:] = filled or columns
     _prefer_numbers(candidates["time"], kinds, cells, warnings)
     for role, columns in candidates.items():
         if role in fixed or not columns:

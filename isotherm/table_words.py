@@ -170,7 +170,7 @@ def _by_name(name: str) -> tuple[str, ...]:
 
 def _by_unit(unit: str) -> tuple[str, ...]:
     """A header that is nothing but a unit."""
-    if unit.strip() in ("A", "C", "m", "s", "K", "V") and unit.strip() != "s":
+    if unit.strip() in ("A", "C", "m", "K", "V"):
         return ()
     for role in ("time", "temperature", "molecular_area", "potential"):
         if dimension_fits(unit, ROLE_DIMENSION[role]):

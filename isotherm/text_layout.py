@@ -113,9 +113,11 @@ def merge_kinds(have: list[str], more: list[str]) -> list[str] | None:
     return out
 
 
-def _starts(kinds: list[str]) -> bool:
+def _starts(kinds: list[str], layout: Layout, fewest: int) -> bool:
     readings = kinds.count("N") + kinds.count("C")
-    return readings >= 2 and readings >= kinds.count("T")
+    if fewest < 2 and layout.delimiter == " ":
+        return False
+    return readings >= fewest and readings >= kinds.count("T")
 
 
 def find_block(lines: Sequence[str], *, complete: bool) -> Block | None:
@@ -126,6 +128,26 @@ def find_block(lines: Sequence[str], *, complete: bool) -> Block | None:
     lines : sequence of str
         The beginning of the file, or all of it when `complete`.
     """
+    block = _longest_run(lines, complete, fewest=2)
+    if block is None and complete:
+        # rows that never have two readings: one column is missing throughout
+        block = _longest_run(lines, complete, fewest=1)
+    return None if block is None else _with_rows_above(lines, block)
+
+
+def _with_rows_above(lines: Sequence[str], block: Block) -> Block:
+    """Add rows just above that lack so many readings that they did not count as a beginning."""
+    first, kinds = block.first, list(block.kinds)
+    while first > 0:
+        more = row_kinds(lines[first - 1], block.layout)
+        merged = merge_kinds(kinds, more) if more is not None and len(more) == len(kinds) else None
+        if merged is None:
+            break
+        first, kinds = first - 1, merged
+    return Block(block.layout, first, tuple(kinds), block.rows + block.first - first)
+
+
+def _longest_run(lines: Sequence[str], complete: bool, fewest: int) -> Block | None:
     runs = {layout: _Run() for layout in _CANDIDATES}
     for number, line in enumerate(lines):
         if not line.strip():
@@ -140,7 +162,7 @@ def find_block(lines: Sequence[str], *, complete: bool) -> Block | None:
             merged = merge_kinds(run.kinds, kinds) if run.rows else None
             if merged is None:
                 run.rows = 0
-                if not _starts(kinds):
+                if not _starts(kinds, layout, fewest):
                     continue
                 run.first, run.kinds = number, kinds
             else:
