@@ -60,7 +60,7 @@ def draw_build(rng: np.random.Generator) -> Build:
     """Draw kind, number of strokes, first direction and the TR of each stroke."""
     kind = str(rng.choice(KINDS, p=KIND_SHARES))
     count = _count(rng, kind)
-    first = "up" if rng.random() < 0.4 else "down"
+    first = "up" if rng.random() < 0.4 and kind != "wetting" else "down"
     scatter = float(rng.choice([0.005, 0.01, 0.02]))
     down_level, up_level = rng.uniform(0.9, 1.03, 2)
     if kind in ("fading", "drop"):
@@ -82,21 +82,24 @@ def draw_build(rng: np.random.Generator) -> Build:
         ratios[drop_after:] *= DROP
     elif kind == "peel":
         ratios[int(rng.integers(3, count))] = float(rng.uniform(-0.9, -0.3))
-    elif kind == "wetting":
+    elif kind == "wetting":  # first is "down": a wetting substrate takes its first layer going up
         ratios[0] = 0.005 * float(rng.standard_normal())
     type_ = kind if kind in ("X", "Z", "XY") else "Y"
     steady = kind == "Y"
     return Build(kind, type_, first, ratios, drop_after, steady)
 
 
-def decidable_type(build: Build, judgeable: list[bool]) -> str | None:
-    """Type the judgeable strokes can tell, or None.
+def decidable_type(build: Build, judgeable: list[bool], true: list[float]) -> str | None:
+    """Type the judgeable strokes can tell, or None; `true` are the TRs as they came out.
 
-    A first stroke that takes nothing says nothing (the substrate may be wetting), and a type needs a
-    stroke in each direction besides it.
+    A first stroke that takes nothing says nothing (the substrate may be wetting), a type needs a stroke in
+    each direction besides it, and where up and down differ by 13 to 25 % Y and XY are a matter of taste.
     """
-    seen = set()
+    seen: dict[str, list[float]] = {"down": [], "up": []}
     for index, usable in enumerate(judgeable):
         if usable and not (index == 0 and abs(build.ratios[0]) < 0.1):
-            seen.add(build.direction(index))
-    return build.type if seen == {"down", "up"} else None
+            seen[build.direction(index)].append(true[index])
+    if not (seen["down"] and seen["up"]):
+        return None
+    low, high = sorted(float(np.median(values)) for values in seen.values())
+    return None if build.type in ("Y", "XY") and 0.75 < low / high < 0.87 else build.type

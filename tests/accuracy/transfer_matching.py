@@ -142,7 +142,7 @@ def compare(reading: Reading, truth: Truth, row: float) -> Match:
                 > 0.0
                 and reading.strokes[i].direction == true.direction
             ]
-            guessed += any(
+            guessed += true.flag_due and any(
                 reading.strokes[i].ratio is not None and not reading.strokes[i].flags for i in near
             )
             free = [i for i in free if i not in near]

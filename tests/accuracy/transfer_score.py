@@ -138,7 +138,7 @@ def figures(scores: list[LogScore]) -> Figures:
     places = [(s.reading.contact, s.truth.contact) for s in searched if s.reading.contact]
     judged = sum(len(s.match.errors) for s in scores)
     silent = sum(s.match.unjudged for s in scores)
-    open_ended = [s for s in scores if not all(k.judgeable for k in s.truth.strokes)]
+    open_ended = [s for s in scores if any(k.flag_due for k in s.truth.strokes)]
     looked = [s for s in scores if s.reading.changes is not None]
     return Figures(
         len(scores),

@@ -200,8 +200,10 @@ def _steps(values: FloatArray, step: float) -> FloatArray:
 
 
 def _strokes(
-    t: FloatArray, depth: FloatArray, plan: Plan, body: Body, true: dict[int, float], end: float
-) -> tuple[StrokeTruth, ...]:
+    t: FloatArray, depth: FloatArray, plan: Plan, body: Body, true: dict[int, float], end: float,
+    off: FloatArray,
+) -> tuple[StrokeTruth, ...]:  # fmt: skip
+    """Truth of each stroke begun; `off` is the true pressure less its set value (n,), mN/m."""
     out = []
     for move in plan.moves:
         if move.start >= end:
@@ -223,6 +225,7 @@ def _strokes(
                 coated,
                 true[move.index],
                 judgeable,
+                not judgeable and (move.end > end or float(np.abs(off[span]).max()) > 1.0),
             )
         )
     return tuple(out)
@@ -275,7 +278,7 @@ def simulate(seed: int, family: str) -> tuple[SimulatedLog, RunSheet, Truth]:
     position += float(rng.choice([0.0, 0.005, 0.02])) * rng.standard_normal(rows.size)
     area = area + AREA_NOISE * rng.standard_normal(rows.size)
     pressure_read += float(rng.uniform(0.003, 0.02)) * rng.standard_normal(rows.size)
-    strokes = _strokes(t, depth, plan, body, true, plan.end)
+    strokes = _strokes(t, depth, plan, body, true, plan.end, pressure - target)
     own_contact = uneven or not plan.crosses or rng.random() < 0.65
     contact_given = own_contact or not _contact_findable(plan.moves[: len(strokes)], build.ratios)
     exact = rng.random() < 0.75
@@ -308,7 +311,7 @@ def simulate(seed: int, family: str) -> tuple[SimulatedLog, RunSheet, Truth]:
         seed,
         family,
         strokes,
-        decidable_type(build, usable),
+        decidable_type(build, usable, [s.ratio for s in strokes]),
         renewals,
         contact,
         modulus,

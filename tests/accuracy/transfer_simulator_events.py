@@ -236,7 +236,8 @@ def simulate_events(seed: int) -> tuple[SimulatedLog, RunSheet, Truth]:
     )  # fmt: skip
     truth = Truth(
         seed, "events", tuple(notes.strokes),
-        decidable_type(build, [True] * len(notes.strokes)), tuple(notes.renewals), contact,
+        decidable_type(build, [True] * len(notes.strokes), [s.ratio for s in notes.strokes]),
+        tuple(notes.renewals), contact,
         modulus, machine.creep_sum / machine.clock, build.drop_after, build.steady, exact, given,
         tuple(sorted(notes.traits | {build.kind})),
     )  # fmt: skip

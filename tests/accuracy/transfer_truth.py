@@ -32,6 +32,7 @@ class StrokeTruth:
     start, end : s, of the whole motion; wet_start, wet_end : s, while the waterline is on the substrate.
     coated_area : cm^2, by geometry; ratio : film taken (area at the set pressure) over coated_area.
     judgeable : False where pressure control was lost in the stroke or the log ends inside it.
+    flag_due : whether a TR given all the same needs a flag (control lost by more than 1 mN/m, or cut off).
     """
 
     start: float
@@ -42,6 +43,7 @@ class StrokeTruth:
     coated_area: float
     ratio: float
     judgeable: bool = True
+    flag_due: bool = False
 
 
 @dataclass(frozen=True)
