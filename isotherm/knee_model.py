@@ -16,6 +16,7 @@ from numpy.typing import NDArray
 
 __all__ = [
     "INDIFFERENT",
+    "WIDEST",
     "KneeModel",
     "ModelTerms",
     "choose_degrees",
@@ -27,9 +28,10 @@ __all__ = [
 FloatArray = NDArray[np.float64]
 
 MAX_ITERATIONS: Final = 14
+WIDEST: Final = 0.5  # rounding width, as a share of the shorter neighbouring stretch
 CONVERGED: Final = 1e-2  # smallest fall of χ² worth another iteration, in units of its mean term
 # Misfits below this share of the pressure range decide nothing: no rounding shape is exact (our choice).
-INDIFFERENT: Final = 2e-4
+INDIFFERENT: Final = 5e-5
 # Huber's bound for the scaled residual (Huber, Robust Statistics, 1981: 1.345 for 95 % efficiency; wider
 # here, since spikes are already out and only their remains matter).
 HUBER: Final = 3.0
@@ -289,6 +291,7 @@ def fit_knees(
     degrees: tuple[int, ...],
     *,
     iterations: int = MAX_ITERATIONS,
+    widest: float = WIDEST,
 ) -> KneeModel:
     """Fit knots, widths and polynomials together (Levenberg-Marquardt, Huber weights).
 
@@ -296,6 +299,7 @@ def fit_knees(
     ----------
     x, y, sigma : (n,) x = -ln A increasing; pressure and its standard uncertainty, mN/m.
     knots, widths : (K,) starting values. degrees : K + 1 polynomial degrees.
+    iterations : at most so many. widest : largest rounding, a share of the shorter neighbour.
 
     Returns
     -------
@@ -310,11 +314,12 @@ def fit_knees(
     gaps = np.diff(np.concatenate([[x[0]], knots, [x[-1]]]))
     room = np.minimum(gaps[:-1], gaps[1:])
     floor = np.maximum(np.minimum(0.1 * spacing, 0.02 * room), 1e-9)
-    widths = np.clip(widths, floor, 0.5 * room)
+    widths = np.clip(widths, floor, widest * room)
     prior_mean = np.log(np.maximum(room, 1e-9)) + PRIOR_LOG_WIDTH
     weight = 1.0 / sigma
     coefficients = np.linalg.lstsq(
-        _design(_coordinates(x, knots, widths, 0.5 * float(x[0] + x[-1]))[0], degrees, scales) * weight[:, None],
+        _design(_coordinates(x, knots, widths, 0.5 * float(x[0] + x[-1]))[0], degrees, scales)
+        * weight[:, None],
         y * weight,
         rcond=None,
     )[0]
@@ -359,7 +364,7 @@ def fit_knees(
             step = unit * np.linalg.solve(trust, unit * right)
             new_knots = knots + np.clip(step[p : p + k], -0.3 * room, 0.3 * room)
             new_widths = np.clip(
-                widths * np.exp(np.clip(step[p + k :], -1.0, 1.0)), floor, 0.5 * room
+                widths * np.exp(np.clip(step[p + k :], -1.0, 1.0)), floor, widest * room
             )
             edges = np.concatenate([[x[0]], new_knots, [x[-1]]])
             if np.all(np.diff(edges) > 0.02 * np.minimum(gaps, 1.0)):

@@ -9,7 +9,7 @@ from numpy.typing import NDArray
 
 from isotherm.condense import DENSE, Nodes
 from isotherm.dips import with_dips
-from isotherm.knee_model import INDIFFERENT, KneeModel, choose_degrees, fit_knees
+from isotherm.knee_model import INDIFFERENT, WIDEST, KneeModel, choose_degrees, fit_knees
 from isotherm.knee_search import Candidate, search
 from isotherm.knee_uncertainty import with_model_doubt
 from isotherm.sparse import sparse_candidates, sparse_degrees
@@ -19,8 +19,9 @@ __all__ = ["find_knees", "refine_knees"]
 FloatArray = NDArray[np.float64]
 
 HIGHEST_DEGREE: Final = 5  # of a stretch; a fluid branch from lift-off to collapse needs about 4
-MODEST_DEGREE: Final = 2  # of the first fit
-COARSE: Final = 8  # iterations of a fit that will be refined
+MODEST_DEGREE: Final = 3  # of the first fit
+SPARSE_WIDEST: Final = 0.12  # few points: a wide rounding and a curved stretch look the same
+COARSE: Final = 10  # iterations of a fit that will be refined
 ROUNDS: Final = 2  # of enriching shapes
 NODES_PER_DEGREE: Final = 8  # nodes a stretch must have for each degree
 STEP_SIGMAS: Final = 4.0  # a knee whose step of slope is not this many u above zero is dropped
@@ -70,15 +71,18 @@ def _fit(
     inside = np.diff(np.searchsorted(x, edges))
     if highest is None:
         highest = tuple(int(np.clip(c // NODES_PER_DEGREE, 1, HIGHEST_DEGREE)) for c in inside)
+    widest = WIDEST if x.size >= DENSE else SPARSE_WIDEST
     # modest shapes first: a rich polynomial would explain a rounding that the knee has yet to fit
     modest = tuple(min(h, MODEST_DEGREE) for h in highest)
     degrees = choose_degrees(x, y, sigma, knots, widths, modest)
-    model = fit_knees(x, y, sigma, knots, widths, degrees, iterations=COARSE)
+    model = fit_knees(x, y, sigma, knots, widths, degrees, iterations=COARSE, widest=widest)
     for _ in range(ROUNDS):
         degrees = choose_degrees(x, y, sigma, model.knots, model.widths, highest)
         if degrees == model.degrees:
             return model
-        richer = fit_knees(x, y, sigma, model.knots, model.widths, degrees, iterations=COARSE)
+        richer = fit_knees(
+            x, y, sigma, model.knots, model.widths, degrees, iterations=COARSE, widest=widest
+        )
         if _bic(richer, y, sigma) > _bic(model, y, sigma):
             return model
         model = richer
@@ -117,7 +121,9 @@ def refine_knees(
     if not np.all(nodes.count == 1):
         x, y, sigma = _with_rows(nodes, keep, knots, model.widths, area, pressure)
     k = knots.size
-    fitted = fit_knees(x, y, sigma, knots, model.widths[:k], model.degrees[: k + 1])
+    widest = WIDEST if x.size >= DENSE else SPARSE_WIDEST
+    degrees = model.degrees[: k + 1]
+    fitted = fit_knees(x, y, sigma, knots, model.widths[:k], degrees, widest=widest)
     return with_model_doubt(fitted, x, y, sigma)
 
 

@@ -22,17 +22,25 @@ FloatArray = NDArray[np.float64]
 
 SHAPE: Final = 0.004  # share of the pressure range that a straight piece may miss a curved film by
 PENALTY: Final = 2.0  # of a piece, in ln n
-FEWEST: Final = 3  # points of a piece; neighbours share none
+FEWEST: Final = 2  # points of a piece; neighbours share none
 FLAT: Final = 2.0  # mN/m; a start softer than this is a baseline
 DIP: Final = 0.7  # a dip against both shoulders
 SHOULDER: Final = 0.4  # right shoulder of a dip against the left one
-STEP: Final = 2.5  # a kink between two straight branches; a curved fluid branch steps by less
-STRAIGHT: Final = 4  # points each branch beside a kink needs
+STEP: Final = 1.5  # a kink between two straight branches
+STRAIGHT: Final = 3  # points each branch beside a kink needs
+EVIDENCE: Final = (
+    10.0  # by which two lines must fit better (in χ²) than one cubic of as many parameters
+)
+FALL: Final = (
+    1.0  # mN/m by which a pressure must fall to tell a collapse by itself
+)
+FALL_SIGMAS: Final = 5.0
 CURVED: Final = 5  # points
 YIELD: Final = (
     0.4  # a film that softens to this share of its stiffest and stays there has collapsed
 )
-BEYOND: Final = 2  # intervals between points that must be soft beyond a collapse's knee
+BEYOND: Final = 2  # points that must fall short of the rising line, extended, to tell a collapse
+SHORT_SIGMAS: Final = 4.0  # by this many u
 SIGMAS: Final = 2.0
 
 
@@ -100,17 +108,43 @@ def sparse_candidates(x: FloatArray, y: FloatArray, sigma: FloatArray) -> list[C
             j = end
             continue
         here, after = pieces[j], pieces[j + 1]
-        straight = min(here.last - here.first, after.last - after.first) >= STRAIGHT
         sure = after.modulus - SIGMAS * after.u > STEP * (here.modulus + SIGMAS * here.u)
-        if straight and sure and here.modulus > FLAT:
+        if sure and here.modulus > FLAT and _beats_smooth(here, after, x, y, sigma):
             knees.append(_meeting(here, after, x))
         j += 1
     if last + 1 < len(pieces):
         knee = _meeting(pieces[last], pieces[last + 1], x)
-        soft = np.diff(y) < YIELD * pieces[last].modulus * np.diff(x)
-        if int(soft[x[:-1] > knee.x].sum()) >= BEYOND:
+        beyond = x > knee.x
+        rising = pieces[last]
+        spread = np.hypot(sigma, SHAPE * float(np.ptp(y)))
+        doubt = np.hypot(spread, rising.u * (x - rising.x0))
+        short = rising.level + rising.modulus * (x - rising.x0) - y > SHORT_SIGMAS * doubt
+        fall = float(np.max(y[~beyond], initial=-np.inf) - np.min(y[beyond], initial=np.inf))
+        fallen = fall > max(FALL, FALL_SIGMAS * float(np.max(sigma)))
+        if fallen or int((short & beyond).sum()) >= BEYOND:
             knees.append(knee)
     return sorted(knees, key=lambda c: c.x)
+
+
+def _beats_smooth(
+    here: Piece, after: Piece, x: FloatArray, y: FloatArray, sigma: FloatArray
+) -> bool:
+    """Whether two lines describe the points of two neighbouring pieces better than a cubic does."""
+    if min(here.last - here.first, after.last - after.first) < STRAIGHT:
+        return False
+    part = slice(here.first, after.last)
+    px, py, s = x[part], y[part], np.hypot(sigma[part], SHAPE * float(np.ptp(y)))
+    t = (px - px.mean()) / max(float(np.ptp(px)), 1e-12)
+    powers = np.vander(t, 4) / s[:, None]
+    smooth = py / s - powers @ np.linalg.lstsq(powers, py / s, rcond=None)[0]
+    first = np.arange(here.first, after.last) < here.last
+    line = np.where(
+        first,
+        here.level + here.modulus * (px - here.x0),
+        after.level + after.modulus * (px - after.x0),
+    )
+    bent = (py - line) / s
+    return float(smooth @ smooth - bent @ bent) > EVIDENCE
 
 
 def sparse_degrees(candidates: list[Candidate], x: FloatArray) -> tuple[int, ...]:
