@@ -15,13 +15,17 @@ SHORTEST = 6.0  # mm of wet travel, of a partial stroke
 
 @dataclass
 class Move:
-    """A stroke: times in s, immersion depths in mm, position in the build (from 0)."""
+    """A stroke: times in s, immersion depths in mm, position in the build (from 0).
+
+    decoy: passes through the film while its set point is changed, so it takes film and is no stroke.
+    """
 
     start: float
     end: float
     begin_depth: float
     end_depth: float
     index: int
+    decoy: bool = False
 
 
 @dataclass
@@ -91,6 +95,21 @@ def _dwell(rng: np.random.Generator, plan: Plan, base: float, scarce: bool) -> N
         plan.wait(seconds)
 
 
+def _pass_meanwhile(rng: np.random.Generator, plan: Plan) -> None:
+    """Change the set point, go to the other end of the stroke and back, change it back, settle."""
+    begun, last = plan.now, plan.moves[-1]
+    for target in (last.begin_depth, last.end_depth):
+        plan.wait(40.0)
+        start, here = plan.now, plan.depths[-1]
+        plan.go(abs(target - here) / 0.4, target)
+        plan.moves.append(Move(start, plan.now, here, target, last.index, decoy=True))
+    plan.wait(40.0)
+    shift = float(rng.choice([-1.0, 1.0]) * rng.uniform(1.5, 4.0))
+    plan.windows.append(Window("set-point", begun, plan.now, shift))
+    plan.wait(float(rng.uniform(150.0, 300.0)))
+    plan.traits.add("pass while set-point changed")
+
+
 def _disturb(rng: np.random.Generator, plan: Plan) -> None:
     """Lengthen the dwell by a window in which pressure is not held."""
     kinds = [k for k in ("set-point", "lost") if k in plan.traits]
@@ -98,6 +117,9 @@ def _disturb(rng: np.random.Generator, plan: Plan) -> None:
         return
     kind = str(rng.choice(kinds))
     plan.wait(60.0)
+    if kind == "set-point" and rng.random() < 0.3:
+        _pass_meanwhile(rng, plan)
+        return
     length = float(rng.uniform(60.0, 400.0))
     shift = float(rng.choice([-1.0, 1.0]) * rng.uniform(0.8, 4.0)) if kind == "set-point" else 0.0
     plan.windows.append(Window(kind, plan.now, plan.now + length, shift))
@@ -199,7 +221,9 @@ def make_plan(rng: np.random.Generator, build: Build, body: Body, rate: float) -
             left = float(rng.uniform(400.0, 800.0))
             _renew(rng, plan, left, base)
         if index:
+            before = len(plan.moves)
             _disturb(rng, plan)
+            left -= need * (len(plan.moves) - before)
         begun = plan.now
         _stroke(rng, plan, target, speed * float(rng.uniform(0.97, 1.03)), index)
         if "lost in stroke" in plan.traits and index == len(turns) // 2 and index:
@@ -212,7 +236,7 @@ def make_plan(rng: np.random.Generator, build: Build, body: Body, rate: float) -
         _dwell(rng, plan, base, "scarce dwells" in plan.traits and not last)
     plan.wait(30.0)
     plan.end = plan.now
-    if "log ends in stroke" in plan.traits and len(plan.moves) > 1:
+    if "log ends in stroke" in plan.traits and len(build.ratios) > 1:
         last_move = plan.moves[-1]
         plan.end = last_move.start + (last_move.end - last_move.start) * float(
             rng.uniform(0.2, 0.8)

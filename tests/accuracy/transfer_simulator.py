@@ -77,8 +77,10 @@ def _taken(
             weight = 1.0 + 0.2 * (depth[span] - depth[span].mean()) / 20.0
         elif kind == "late":  # nothing is taken in the first few millimetres of travel
             weight = (np.abs(depth[span] - max(move.begin_depth, 0.0)) > 2.5).astype(float)
-        taken[span] = ratios[move.index] * weight * crossed[span]
+        taken[span] = (0.9 if move.decoy else ratios[move.index]) * weight * crossed[span]
         total = crossed[span].sum()
+        if move.decoy:
+            continue
         true[move.index] = float(taken[span].sum() / total) if total > 0 else 0.0
     return taken, true
 
@@ -206,7 +208,7 @@ def _strokes(
     """Truth of each stroke begun; `off` is the true pressure less its set value (n,), mN/m."""
     out = []
     for move in plan.moves:
-        if move.start >= end:
+        if move.start >= end or move.decoy:
             continue
         judgeable = move.end <= end and not any(
             w.kind == "lost" and w.start < move.end and w.end > move.start for w in plan.windows
@@ -232,7 +234,10 @@ def _strokes(
 
 
 def _contact_findable(moves: list[Move], ratios: FloatArray) -> bool:
-    return any(min(m.begin_depth, m.end_depth) < -0.5 and ratios[m.index] > 0.3 for m in moves)
+    return any(
+        not m.decoy and min(m.begin_depth, m.end_depth) < -0.5 and ratios[m.index] > 0.3
+        for m in moves
+    )
 
 
 def simulate(seed: int, family: str) -> tuple[SimulatedLog, RunSheet, Truth]:
@@ -280,7 +285,9 @@ def simulate(seed: int, family: str) -> tuple[SimulatedLog, RunSheet, Truth]:
     pressure_read += float(rng.uniform(0.003, 0.02)) * rng.standard_normal(rows.size)
     strokes = _strokes(t, depth, plan, body, true, plan.end, pressure - target)
     own_contact = uneven or not plan.crosses or rng.random() < 0.65
-    contact_given = own_contact or not _contact_findable(plan.moves[: len(strokes)], build.ratios)
+    contact_given = own_contact or not _contact_findable(
+        [m for m in plan.moves if m.start < plan.end], build.ratios
+    )
     exact = rng.random() < 0.75
     told = float(np.exp(0.03 * rng.standard_normal())) * modulus if rng.random() < 0.5 else None
     wetting = True if build.kind == "wetting" and rng.random() < 0.5 else None
