@@ -49,6 +49,12 @@ _register(
     "A film on a substrate",
     transfer="Transfer ratio of every stroke, deposition type, layers.",
 )
+_register(
+    "Series of runs",
+    replicates="Mean curve, spread of every feature, outlying runs.",
+    mixture="Excess area and Gibbs energy of mixtures, miscibility.",
+    temperature="Slope and heat of the transition, critical point, trends.",
+)
 
 
 class LazyGroup(TyperGroup):

@@ -10,6 +10,7 @@ import typer
 __all__ = [
     "AtOption",
     "ColumnOption",
+    "CommonSheetOption",
     "CsvOption",
     "FigureOption",
     "ForceOption",
@@ -20,6 +21,7 @@ __all__ = [
     "KeepGoingOption",
     "LogArgument",
     "NeededSheetOption",
+    "PressuresOption",
     "SheetOption",
     "TraceArgument",
     "TracesArgument",
@@ -43,6 +45,19 @@ ForceOption = Annotated[
 SheetOption = Annotated[
     Path | None,
     typer.Option("--sheet", "-s", metavar="SHEET", help="Run sheet (TOML); see upstroke sheet."),
+]
+CommonSheetOption = Annotated[
+    Path | None,
+    typer.Option(
+        "--sheet",
+        "-s",
+        metavar="SHEET",
+        help="Run sheet for runs without their own (run7.toml beside run7.txt is run 7's own).",
+    ),
+]
+PressuresOption = Annotated[
+    str | None,
+    typer.Option("--at", metavar="LIST", help="Pressures (mN/m) to compare at: --at 10,20,30."),
 ]
 NeededSheetOption = Annotated[
     Path,

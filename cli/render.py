@@ -17,6 +17,7 @@ __all__ = [
     "bullets",
     "hanging",
     "heading",
+    "interval_text",
     "inverse",
     "join_blocks",
     "paragraph",
@@ -52,6 +53,7 @@ PRETTY = {
     "ng/cm^2": "ng/cm²",
     "1/nm^2": "1/nm²",
     "mol/cm^2": "mol/cm²",
+    "nm^2/K": "nm²/K",
 }
 
 
@@ -142,6 +144,23 @@ def quantity_cells(quantity: Quantity | None) -> list[str]:
 def range_text(ends: tuple[float, float], places: int) -> str:
     """Write a stretch from one end to the other, with so many decimal places."""
     return f"{ends[0]:.{places}f} to {ends[1]:.{places}f}"
+
+
+def interval_text(ends: tuple[float | None, float | None] | None, shift: float = 0.0) -> str:
+    """Write an interval with the decimals its own width deserves; an end without bound is open.
+
+    `shift` is taken off both ends, for another zero of the same scale.
+    """
+    if ends is None:
+        return MISSING
+    low, high = (None if end is None else end - shift for end in ends)
+    places = 3
+    if low is not None and high is not None and high > low:
+        # half the width is about two standard uncertainties
+        told = format_quantity(Quantity((low + high) / 2, (high - low) / 4, "1"))
+        places = len(told.partition(" ± ")[0].partition(".")[2])
+    written = ["open" if end is None else f"{end:.{places}f}" for end in (low, high)]
+    return f"{written[0]} to {written[1]}"
 
 
 def heading(text: str, width: int) -> str:

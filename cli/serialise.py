@@ -8,7 +8,7 @@ import io
 import json
 import math
 import sys
-from collections.abc import Iterable, Sequence
+from collections.abc import Iterable, Mapping, Sequence
 from pathlib import Path
 from typing import Any
 
@@ -16,7 +16,7 @@ from cli import __version__
 from cli.terminal import printable
 from isotherm.errors import UpstrokeError
 
-__all__ = ["csv_bytes", "input_stamp", "json_bytes", "with_provenance"]
+__all__ = ["csv_bytes", "input_stamp", "json_bytes", "rows_csv", "with_provenance"]
 
 # The libraries whose release can move a number.
 NUMERIC_LIBRARIES = ("numpy", "scipy", "pandas", "ruptures")
@@ -62,6 +62,12 @@ def csv_bytes(header: Sequence[str], rows: Iterable[Sequence[Any]]) -> bytes:
     writer.writerow([_cell(name) for name in header])
     writer.writerows([_cell(value) for value in row] for row in rows)
     return buffer.getvalue().encode("utf-8", "backslashreplace")
+
+
+def rows_csv(rows: Sequence[Mapping[str, Any]]) -> bytes:
+    """Return rows of named cells as CSV; the header holds every name in the order first met."""
+    header = list(dict.fromkeys(name for row in rows for name in row))
+    return csv_bytes(header, [[row.get(name) for name in header] for row in rows])
 
 
 def _cell(value: Any) -> str:
