@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
+
 import numpy as np
 
 from isotherm.source import Source
@@ -39,3 +41,18 @@ def volmer_trace(
         pressure_u=0.1,
         title="fluid",
     )
+
+
+def with_potential(
+    trace: Trace,
+    rng: np.random.Generator,
+    *,
+    onset: float = 1.35,
+    noise: float = 3.0,
+    level: float = 0.0,
+    sign: float = 1.0,
+) -> Trace:
+    """The trace with a potential (mV) that leaves `level` at `onset` and rises with a bend."""
+    inside = np.maximum(onset - trace.area, 0.0)
+    rise = 500.0 * inside - 120.0 * inside**2
+    return replace(trace, potential=level + sign * rise + rng.normal(0, noise, len(trace.area)))
