@@ -136,7 +136,7 @@ def _point_line(place: Place, kind: str, number: int, count: int) -> str:
             points += len(re.findall(r"\b(?:layers|stroke)\s*=", start.partition("#")[0]))
             if points >= count:
                 return f"{place.where}, line {line_number}"
-    return place.of(kind)
+    return place.of(f"{kind}.points")
 
 
 def draft_from_csv(text: str, path: str) -> list[Draft]:

@@ -63,17 +63,17 @@ def test_two_sweeps_are_told_apart_and_a_start_inside_is_left_out():
 
 
 def test_no_peak_is_said():
+    sweep = split_sweeps(voltammogram(0.0, 0.05, noise=2e-9))[0]
     with pytest.raises(UpstrokeError, match="no peak stands out") as caught:
-        for sweep in split_sweeps(voltammogram(0.0, 0.05, noise=2e-9)):
-            measure_wave(sweep, RATE, "cycle.csv")
+        measure_wave(sweep, RATE, "cycle.csv")
     assert "cycle.csv" in str(caught.value)
     assert "\n" not in str(caught.value)
 
 
 def test_a_wave_cut_by_the_window_is_said():
-    with pytest.raises(UpstrokeError, match="cut by the potential window|no peak"):
-        for sweep in split_sweeps(voltammogram(5e-6, 0.05, noise=2e-9, place=0.49)):
-            measure_wave(sweep, RATE, "cycle.csv")
+    sweep = split_sweeps(voltammogram(5e-6, 0.05, noise=2e-9, place=0.48))[0]
+    with pytest.raises(UpstrokeError, match="cut by the potential window"):
+        measure_wave(sweep, RATE, "cycle.csv")
 
 
 def test_constant_potential_is_said():
