@@ -13,7 +13,13 @@ from numpy.typing import NDArray
 from isotherm.errors import UpstrokeError
 from isotherm.sheet import RunSheet
 from isotherm.source import ColumnSource, Source
-from isotherm.table_header import Header, HeaderCell, find_header, split_header
+from isotherm.table_header import (
+    Header,
+    HeaderCell,
+    find_header,
+    split_header,
+    whole_block,
+)
 from isotherm.table_roles import (
     Assigned,
     assign_roles,
@@ -100,6 +106,10 @@ def read_table(
     text = _find_rows(data, where)
     hints = sheet.columns if sheet is not None else ()
     header = _header(text, warnings)
+    if text.block.earlier:
+        first, last = text.block.earlier[0][0] + 1, text.block.earlier[0][1] + 1
+        lines = f"line {first}" if first == last else f"lines {first} to {last}"
+        warnings.append(f"numbers above the header ({lines}) are not read")
     taken, notes = assign_roles(header.cells, text.block.kinds, hints, needs, where)
     warnings += notes
     _check_needs(needs, taken, header, text, where)
@@ -136,6 +146,7 @@ def _find_rows(data: bytes, where: str) -> _Text:
         lines = tuple(line.decode(encoding, "replace").rstrip("\r\n") for line in raw)
         block = find_block(lines, complete=complete)
         if block is not None:
+            block = whole_block(lines, block)
             start = sum(len(line) for line in raw[: block.first])
             return _Text(data, encoding, lines, block, start)
         if complete:
@@ -271,7 +282,9 @@ def _convert(
         named = f"{where}, column {describe(one.column, one.cell)}"
         header = one.cell.text
         if one.column in numbers.clocks:
-            values[one.role] = clock_seconds(numbers.clocks[one.column], where=named)
+            values[one.role] = clock_seconds(
+                numbers.clocks[one.column], where=named, form=one.cell.clock
+            )
             columns[one.role] = ColumnSource(header, "clock", one.column + 1)
             continue
         raw = numbers.columns[one.column]

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import re
 from collections.abc import Iterator, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import Final
 
 from isotherm.table_words import plain_words, roles_of
@@ -12,7 +12,7 @@ from isotherm.text_cells import MISSING, cell_kind
 from isotherm.text_layout import Block, Layout
 from isotherm.units import is_unit
 
-__all__ = ["Header", "HeaderCell", "find_header", "parse_cell", "split_header"]
+__all__ = ["Header", "HeaderCell", "find_header", "parse_cell", "split_header", "whole_block"]
 
 _LINES_ABOVE: Final = 12  # text lines looked at above the rows
 _COMMENT_SIGNS: Final = "#%!*/'>"
@@ -31,13 +31,16 @@ _NOTES: Final = frozenset(_NOTE_WORDS.split())
 
 @dataclass(frozen=True)
 class HeaderCell:
-    """What the header says of one column. `unknown` is text in the place of a unit that is none."""
+    """What the header says of one column.
+
+    unknown : text in the place of a unit that is none. clock : form of a clock time, such as hh:mm:ss.
+    """
 
     text: str
     name: str
     unit: str | None = None
     unknown: str | None = None
-    clock: bool = False
+    clock: str = ""
 
     @property
     def roles(self) -> tuple[str, ...]:
@@ -66,7 +69,7 @@ def parse_cell(text: str) -> HeaderCell:
         inside = match.group(1).strip()
         name = " ".join((plain[: match.start()] + " " + plain[match.end() :]).split())
         if _is_clock_format(inside):
-            return HeaderCell(text, name, clock=True)
+            return HeaderCell(text, name, clock=inside)
         # one letter in brackets after a name is as often its symbol: then the unit must suit the name
         if is_unit(inside) and (len(inside) > 1 or _suits(name, inside)):
             return HeaderCell(text, name.rstrip(" /,:;"), inside)
@@ -203,6 +206,37 @@ def _is_unit_line(cells: Sequence[str]) -> bool:
     return bool(filled) and all(_is_unit_cell(c) for c in filled)
 
 
+def whole_block(lines: Sequence[str], block: Block) -> Block:
+    """Take rows alike further up into the block, unless a header of their own parts them from it.
+
+    Odd lines among the rows (a pause noted, an unreadable row, the header again) break a run of rows.
+    """
+    first = block.first
+    taken = 0
+    for start, last in block.earlier:
+        gap = [line for line in lines[last + 1 : first] if line.strip()]
+        above = {line.strip() for line in lines[:start]}
+        if any(
+            line.strip() not in above and _heads(line, block.layout, block.columns) for line in gap
+        ):
+            break
+        first, taken = start, taken + 1
+    return replace(block, first=first, earlier=block.earlier[taken:])
+
+
+def _heads(line: str, layout: Layout, columns: int) -> bool:
+    """Whether a line of text could be a header: text or units in as many cells as the rows have."""
+    cells = split_header(line, layout, columns)
+    if cells is None or any(cell_kind(cell, layout.decimal) in "NC" for cell in cells):
+        return False
+    filled = [cell for cell in cells if cell]
+    if any(parse_cell(cell).roles or _is_unit_cell(cell) for cell in filled):
+        return True
+    # names unknown here are words, each another; readings that went wrong are not
+    words = all(cell[:1].isalpha() for cell in filled)
+    return words and len(filled) >= 2 and len(set(filled)) == len(filled)
+
+
 def find_header(lines: Sequence[str], block: Block) -> Header:
     """Find names and units in the text lines above the block (one line, or names and units on two)."""
     columns = block.columns
@@ -264,7 +298,7 @@ def _with_unit(cell: HeaderCell, unit: str) -> HeaderCell:
     if cell.unit is not None or not bare or bare.lower() in MISSING:
         return cell
     if _is_clock_format(bare):
-        return HeaderCell(cell.text, cell.name, clock=True)
+        return HeaderCell(cell.text, cell.name, clock=bare)
     name = cell.name
     if cell.unknown is not None:
         name = f"{name} {cell.unknown}"

@@ -21,7 +21,7 @@ _INFINITE: Final = {
     "inf": math.inf, "+inf": math.inf, "-inf": -math.inf, "infinity": math.inf, "+infinity": math.inf,
     "-infinity": -math.inf, "∞": math.inf, "+∞": math.inf, "-∞": -math.inf, "1.#inf": math.inf,
     "-1.#inf": -math.inf, "ol": math.inf, "overload": math.inf, "overflow": math.inf,
-    "over": math.inf, "ovl": math.inf,
+    "over": math.inf, "ovr": math.inf, "ovl": math.inf,
     "ovrflw": math.inf,
 }  # fmt: skip
 _LONGEST: Final = 48  # characters of one number

@@ -24,7 +24,7 @@ _PARTS: Final = re.compile(
 )
 
 
-def clock_seconds(cells: Sequence[str], *, where: str) -> NDArray[np.float64]:
+def clock_seconds(cells: Sequence[str], *, where: str, form: str = "") -> NDArray[np.float64]:
     """Convert clock times (`09:15:02.5`, `2031-05-06T09:15:02`, `06.05.2031 09:15:02`) to seconds.
 
     Parameters
@@ -33,6 +33,8 @@ def clock_seconds(cells: Sequence[str], *, where: str) -> NDArray[np.float64]:
         One cell per row; a cell that is no time gives NaN.
     where : str
         Column named in the error.
+    form : str
+        How the header says it is written, such as `mm:ss`; "" where it does not.
 
     Returns
     -------
@@ -53,12 +55,12 @@ def clock_seconds(cells: Sequence[str], *, where: str) -> NDArray[np.float64]:
         return out
     dates = {(g[0], g[1], g[2]): 0.0 for g in used if g[0] is not None}
     dates = _days(dates, where)
-    short = sum(g[3] is not None and g[5] is None and g[6] is None for g in used)
+    short = sum(g[3] is not None and g[5] is None for g in used)
     if short and short < len(used):
         raise UpstrokeError(
             "some times have seconds and some have not", where=where, remedy="export the seconds"
         )
-    minutes_first = any(g[6] is not None for g in used)  # 01:30.5 is minutes and seconds
+    minutes_first = _minutes_first(used, form.casefold(), where) if short else False
     for row, g in enumerate(groups):
         if g is None or (g[0] is None and g[3] is None):
             continue
@@ -66,6 +68,23 @@ def clock_seconds(cells: Sequence[str], *, where: str) -> NDArray[np.float64]:
     if not dates:
         _unroll(out)
     return out
+
+
+def _minutes_first(used: Sequence[tuple[str | None, ...]], form: str, where: str) -> bool:
+    """Whether 12:30 is minutes and seconds."""
+    if any(g[6] is not None for g in used):
+        return True  # 01:30.5: only seconds have decimals
+    if form in ("mm:ss", "m:ss", "m:s", "min:s"):
+        return True
+    if form in ("hh:mm", "h:mm", "h:m") or any(g[0] is not None or g[7] is not None for g in used):
+        return False
+    if any(int(g[3] or 0) > 23 for g in used):
+        return True
+    raise UpstrokeError(
+        "times may be hours and minutes or minutes and seconds",
+        where=where,
+        remedy="export the seconds, or say (mm:ss) or (hh:mm) in the header",
+    )
 
 
 def _of_day(g: tuple[str | None, ...], minutes_first: bool) -> float:

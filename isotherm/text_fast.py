@@ -71,5 +71,7 @@ def read_fast(
 
 
 def _rectangular(data: bytes, start: int, stop: int, delimiter: str, columns: int) -> bool:
-    rows = data.count(b"\n", start, stop) or data.count(b"\r", start, stop)
-    return data.count(delimiter.encode(), start, stop) <= (columns - 1) * (rows + 1)
+    """Whether there are just as many cells as rows of `columns` have."""
+    mark = b"\n" if data.find(b"\n", start, stop) >= 0 else b"\r"
+    rows = data.count(mark, start, stop) + (0 if data.endswith(mark, start, stop) else 1)
+    return data.count(delimiter.encode(), start, stop) == (columns - 1) * rows

@@ -48,12 +48,14 @@ class Block:
     """The numeric rows: layout, line (0-based) of the first, cells in a row, kind of each column.
 
     rows : how many rows in a row were seen, which is all of them only for a short block.
+    earlier : (first, last) lines of stretches above of rows alike, which may belong to it.
     """
 
     layout: Layout
     first: int
     kinds: tuple[str, ...]
     rows: int
+    earlier: tuple[tuple[int, int], ...] = ()
 
     @property
     def columns(self) -> int:
@@ -144,7 +146,24 @@ def _with_rows_above(lines: Sequence[str], block: Block) -> Block:
         if merged is None:
             break
         first, kinds = first - 1, merged
-    return Block(block.layout, first, tuple(kinds), block.rows + block.first - first)
+    earlier: list[tuple[int, int]] = []
+    last = None
+    for number in range(first - 1, -1, -1):
+        line = lines[number]
+        if not line.strip():
+            continue
+        more = row_kinds(line, block.layout)
+        alike = more is not None and len(more) == len(kinds) and merge_kinds(kinds, more)
+        if alike:
+            last = number if last is None else last
+            start = number
+        elif last is not None:
+            earlier.append((start, last))
+            last = None
+    if last is not None:
+        earlier.append((start, last))
+    rows = block.rows + block.first - first
+    return Block(block.layout, first, tuple(kinds), rows, tuple(earlier))
 
 
 def _longest_run(lines: Sequence[str], complete: bool, fewest: int) -> Block | None:

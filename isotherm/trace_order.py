@@ -47,12 +47,12 @@ def time_order(time: NDArray[np.float64]) -> TimeOrder:
             return TimeOrder(
                 None,
                 time + shift,
-                f"time starts again {len(back)} times in the file; the parts are taken one after the other",
+                f"time starts again {len(back)} {'time' if len(back) == 1 else 'times'} in the file; "
+                "the parts are taken one after the other",
             )
     order = np.argsort(time, kind="stable")
-    return TimeOrder(
-        order, time[order], f"{len(back)} rows were out of order in time; rows were sorted by time"
-    )
+    rows = "1 row was" if len(back) == 1 else f"{len(back)} rows were"
+    return TimeOrder(order, time[order], f"{rows} out of order in time; sorted by time")
 
 
 def _restarts(time: NDArray[np.float64], starts: NDArray[np.intp], ends: NDArray[np.intp]) -> bool:

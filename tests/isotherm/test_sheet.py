@@ -189,7 +189,7 @@ def test_refusals_name_key_found_and_allowed(text: str, words: list[str]) -> Non
 
 def test_reading_the_file(tmp_path: Path) -> None:
     path = tmp_path / "run.toml"
-    path.write_bytes("[film]\r\nname = \"Säure\"\r\n".encode("utf-8-sig"))
+    path.write_bytes('[film]\r\nname = "Säure"\r\n'.encode("utf-8-sig"))
     assert read_sheet(path).film.name == "Säure"
     path.write_bytes('[film]\nname = "Säure"\n'.encode("utf-16"))
     assert read_sheet(path).film.name == "Säure"

@@ -56,13 +56,21 @@ def test_missing_and_infinite_cells_are_counted(path: Path) -> None:
 
 
 def test_line_numbers_are_those_of_the_file() -> None:
-    for name in ("preamble.txt", "repeated_header.csv", "blank_lines.csv", "footer.csv", "utf16.csv"):
+    for name in (
+        "preamble.txt",
+        "repeated_header.csv",
+        "blank_lines.csv",
+        "footer.csv",
+        "utf16.csv",
+    ):
         path = EXPORTS / "good" / name
         data = path.read_bytes()
         text = data.decode("utf-16" if data.startswith(b"\xff\xfe") else "utf-8")
         lines = text.splitlines()
         for row, number in enumerate(read_table(path).lines.tolist()):
-            assert lines[number - 1].replace(",", ".").replace(";", "\t").startswith(f"{15.0 * row}"), name
+            assert (
+                lines[number - 1].replace(",", ".").replace(";", "\t").startswith(f"{15.0 * row}")
+            ), name
 
 
 @pytest.mark.parametrize("name", sorted(_BAD))

@@ -105,7 +105,8 @@ def test_columns_that_could_be_two_things() -> None:
 
 
 @pytest.mark.parametrize(
-    ("text", "unknown"), [("Pressure (furlong)", "furlong"), ("Pressure/foo", "foo"), ("Area [acre]", "acre")]
+    ("text", "unknown"),
+    [("Pressure (furlong)", "furlong"), ("Pressure/foo", "foo"), ("Area [acre]", "acre")],
 )
 def test_what_stands_for_a_unit_and_is_none(text: str, unknown: str) -> None:
     assert parse_cell(text).unknown == unknown

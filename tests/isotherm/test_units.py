@@ -91,7 +91,9 @@ def test_one_of_each_unit(text: str, dimension: str, factor: float) -> None:
     assert convert(np.array([2.0, 3.0])) == pytest.approx([2 * factor, 3 * factor], rel=1e-14)
 
 
-@pytest.mark.parametrize(("text", "factor"), [("mM", 1.0), ("µmol/mL", 1.0), ("mol/L", 1e3), ("M", 1e3)])
+@pytest.mark.parametrize(
+    ("text", "factor"), [("mM", 1.0), ("µmol/mL", 1.0), ("mol/L", 1e3), ("M", 1e3)]
+)
 def test_amount_concentrations_stay_amounts(text: str, factor: float) -> None:
     convert = conversion(text, "concentration")
     assert convert.unit == "mmol/L"
@@ -111,8 +113,28 @@ def test_decimal_conversions_are_exact_to_the_last_bit() -> None:
     assert conversion("mm^2", "area")(12345.0) == 123.45
 
 
-@pytest.mark.parametrize("text", ["furlong", "", "-", "m//s", "/m", "m/", "(m", "m)", "m^", "m^x", "mN/q", "m" * 61,
-                                  "^" * 50, "(" * 50, "1e999", "m^99999999", "/" * 60])
+@pytest.mark.parametrize(
+    "text",
+    [
+        "furlong",
+        "",
+        "-",
+        "m//s",
+        "/m",
+        "m/",
+        "(m",
+        "m)",
+        "m^",
+        "m^x",
+        "mN/q",
+        "m" * 61,
+        "^" * 50,
+        "(" * 50,
+        "1e999",
+        "m^99999999",
+        "/" * 60,
+    ],
+)
 def test_what_is_no_unit(text: str) -> None:
     assert not is_unit(text)
 
@@ -146,7 +168,9 @@ def test_any_text_is_a_unit_or_none(text: str) -> None:
         assert unit.mantissa > 0
 
 
-_SYMBOLS = st.sampled_from(["m", "cm", "nm", "N", "mN", "s", "min", "Å", "A", "g", "mol", "K", "10", "%", "V"])
+_SYMBOLS = st.sampled_from(
+    ["m", "cm", "nm", "N", "mN", "s", "min", "Å", "A", "g", "mol", "K", "10", "%", "V"]
+)
 _JOINS = st.sampled_from(["/", " ", "·", "^2", "^-1", "-1", "(", ")", "²", "⁻¹", ".", "*"])
 
 

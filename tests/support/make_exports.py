@@ -105,8 +105,7 @@ def _texts() -> dict[str, bytes]:
     files["preamble.txt"] = (
         "Trough run, invented\nOperator: nobody\nBarrier speed: 10 mm/min\nDate: 2031-05-06\nSteps 1 2 3\n\n"
         "Max area 243 cm2\nMin area 60 cm2\nTarget pressure 30 mN/m\n\n"
-        "Time (s)\tArea (cm²)\tPressure (mN/m)\n"
-        + _rows(three, "\t")
+        "Time (s)\tArea (cm²)\tPressure (mN/m)\n" + _rows(three, "\t")
     )
     files["preamble_table.csv"] = (
         "probe;plate\nwidth;19,62\nperimeter;39,24\ncalibration 1;0,51\n\nZeit;Fläche;Druck\ns;cm²;mN/m\n"
