@@ -28,9 +28,9 @@ __all__ = ["HoldRecord", "HoldResult", "analyse_hold", "planned_dipping_time", "
 
 FloatArray = NDArray[np.float64]
 
-# Blocks the fit sees: a law that changes within a tenth of the hold is still resolved twenty times over,
+# Blocks the fit sees: a law that changes within a tenth of the hold is still resolved ten times over,
 # and the cost of the fit is set by it, not by the rows.
-_BLOCKS = 192
+_BLOCKS = 96
 _FEWEST_BLOCKS = 20
 # Settling that shows in the drifting quantity only: at most this part of a hold is taken for it, so that a
 # law that fails at the start is not made to fit by cutting the start away.

@@ -40,7 +40,7 @@ _KEPT_NODES = 4000
 class LawFit:
     """One law fitted: its likelihood and, per node of shape and noise, the level's parameters.
 
-    name : law.  parameters : k, the noise's three included.
+    name : law.  parameters : k, the noise's variance included.
     deviance : -2 ln L (constant common to all laws of one hold).  aicc : same constant.
     weight : (q,) likelihood weight of each node, sums to 1.  best : index of the most likely node.
     time_constant : (q,) s.  exponent : (q,).  level : (q,) y0.  drop : (q,) b, positive for loss.
@@ -75,7 +75,7 @@ def aicc(deviance: float, parameters: int, effective: float) -> float:
     deviance : float
         -2 ln L.
     parameters : int
-        k, the noise's included.
+        k, the noise's variance included.
     effective : float
         n, independent observations. The last term is held at its value for n - k - 1 = 1 below that, where
         it would diverge and then change sign: correlated residuals may amount to fewer than k + 2.

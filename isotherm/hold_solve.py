@@ -79,6 +79,16 @@ def _block_growth(law: Law, blocks: Blocks, tau: FloatArray, exponent: FloatArra
     return np.asarray(sum(parts))
 
 
+def _few_observations(effective: FloatArray, parameters: int) -> FloatArray:
+    """Widening of a variance estimated from few independent observations: nu / (nu - 2).
+
+    JCGM 101:2008, 6.4.9.4: the standard uncertainty of a quantity known by a t-distribution. Below three
+    degrees of freedom the ratio is held at 3, where the distribution has no variance any more.
+    """
+    freedom = np.maximum(effective - parameters, 3.0)
+    return np.asarray(freedom / (freedom - 2.0))
+
+
 def solve_nodes(
     law: Law,
     hold: WhitenedHold,
@@ -110,11 +120,12 @@ def solve_nodes(
     syy = np.einsum("jm,jm->j", y, y)[:, None]
     log_det = hold.grid.log_det[which][:, None]
     mean = s1y / s11
+    few = _few_observations(hold.grid.effective[which], law.parameters)[:, None]
     if law.name == "constant":
         rss = np.maximum(syy - s1y * mean, _TINY)
         variance = rss / max(n - 1, 1)
         zero = np.zeros_like(mean)
-        covariance = np.stack([variance / s11, zero, zero], axis=-1)
+        covariance = np.stack([few * variance / s11, zero, zero], axis=-1)
         weight = -0.5 * (log_det + np.log(s11) + (n - 1) * np.log(rss))
         deviance = n * np.log(rss / n) + log_det
         return Nodes(
@@ -145,9 +156,8 @@ def solve_nodes(
     rss = syy + level**2 * s11 + drop**2 * sgg
     rss = np.maximum(rss - 2 * level * s1y + 2 * drop * sgy - 2 * level * drop * s1g, _TINY)
     variance = rss / max(n - law.parameters, 1)
-    covariance = np.stack(
-        [variance * sgg / det, variance * s1g / det / size, variance * s11 / det / size**2], axis=-1
-    )
+    spread_of = few * variance / det
+    covariance = np.stack([spread_of * sgg, spread_of * s1g / size, spread_of * s11 / size**2], axis=-1)
     # the information of independent noise is divided out: g's own scale must not favour a shape
     information = np.log(det / n**2) - np.log(np.where(usable, spread, 1.0))
     weight = -0.5 * (log_det + information + (n - 2) * np.log(rss))
