@@ -17,7 +17,9 @@ FloatArray = NDArray[np.float64]
 SKELETON: Final = 320  # blocks that measure the curve's length
 NODES: Final = 256  # nodes the search works on
 SPIKE_SIGMAS: Final = 6.0  # a row this far from the median of its neighbours is a spike
-SPIKE_WINDOW: Final = 7  # rows; isolates spikes up to three rows long
+# u of a line through five rows, extended five rows from its middle, and of the row itself, in σ of a row:
+# sqrt(1 + 1/5 + 5²/10).
+EXTRAPOLATED: Final = 1.92
 # So few points do not tell scatter from shape; a point read off a figure is good to about this share of
 # the axis (common practice: the thickness of a drawn line).
 FEW: Final = 30  # rows
@@ -88,8 +90,8 @@ def _left_out(area: FloatArray, pressure: FloatArray, reach: int) -> FloatArray:
 def despike(pressure: FloatArray, noise: float) -> NDArray[np.bool_]:
     """Mark isolated outliers of (n,) pressure, mN/m: True where a row is a spike.
 
-    A spike stands out from the median of its neighbourhood by `SPIKE_SIGMAS` and by more than the
-    curve itself covers there; only runs of up to three rows qualify. Sparse runs are never despiked.
+    A spike stands out, to the same side, from the lines through the rows before and after it, each
+    extended to it; a knee or a peak lies on at least one of them. Sparse runs are never despiked.
     """
     n = pressure.size
     spikes = np.zeros(n, dtype=np.bool_)
@@ -98,14 +100,18 @@ def despike(pressure: FloatArray, noise: float) -> NDArray[np.bool_]:
     suspects = _suspects(pressure, noise)
     if suspects.size == 0:
         return spikes
-    half = SPIKE_WINDOW // 2 + 1
-    offsets = np.concatenate([np.arange(-half - 2, -2), np.arange(3, half + 3)])
-    index = np.clip(suspects[:, None] + offsets, 0, n - 1)
-    around = pressure[index]
-    middle = np.median(around, axis=1)
-    # what the curve covers across the window: median of the right side minus median of the left
-    travel = np.abs(np.median(around[:, half:], axis=1) - np.median(around[:, :half], axis=1))
-    spikes[suspects] = np.abs(pressure[suspects] - middle) > SPIKE_SIGMAS * noise + travel
+    # five rows each side, three to seven away, so that a spike of up to three rows is in neither line
+    steps = np.arange(3, 8)
+    misses = []
+    for side in (-1, 1):
+        index = np.clip(suspects[:, None] + side * steps, 0, n - 1)
+        window = pressure[index]
+        slope = (window @ (steps - 5.0)) / 10.0
+        misses.append(pressure[suspects] - (window.mean(axis=1) - 5.0 * slope))
+    left, right = misses
+    off = np.minimum(np.abs(left), np.abs(right)) > SPIKE_SIGMAS * EXTRAPOLATED * noise
+    inside = (suspects >= 7) & (suspects < n - 7)
+    spikes[suspects] = off & (left * right > 0) & inside
     return spikes
 
 

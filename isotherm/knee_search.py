@@ -22,6 +22,9 @@ ROUNDS: Final = 4  # of dropping and putting back
 MARGIN: Final = 0.2  # share of a stretch next to a knee that may be rounded by it
 # No rounding shape is exact: misfits below this share of a window's range decide nothing (our choice).
 INDIFFERENT: Final = 5e-4
+# A model describes a window when its mean squared residual is at most this many times the scatter about
+# the finest partition (our choice: twice its standard deviation).
+ADEQUATE: Final = 4.0
 # A stretch shorter than this share of both neighbours, its slope between theirs, is a rounding.
 SHORT: Final = 0.25
 SMOOTH_DEGREE: Final = 6  # a smooth rival gets as many parameters as the richest knee model
@@ -90,10 +93,10 @@ def test_knee(x: FloatArray, y: FloatArray, sigma: FloatArray) -> Verdict | None
     total = float(target @ target)
     rss_smooth = np.maximum(total - np.cumsum(along**2), 0.0)
     floor = _rounding_floor(y, weight)
-    bic_smooth = min(
-        n * np.log(float(rss_smooth[d]) + floor) + (d + 1) * np.log(n)
-        for d in range(1, smooth_degree + 1)
-    )
+    orders = np.arange(1, smooth_degree + 1)
+    bics = n * np.log(rss_smooth[orders] + floor) + (orders + 1) * np.log(n)
+    smoothest = int(np.argmin(bics))
+    bic_smooth = float(bics[smoothest])
     fitter = _HingeFitter(t, weight, target, q, along, floor)
     edge = 2 if n < 30 else max(2, n // 20)
     positions = t[edge : n - edge]
@@ -116,7 +119,7 @@ def test_knee(x: FloatArray, y: FloatArray, sigma: FloatArray) -> Verdict | None
         after / half,
         float(bic_smooth - best.bic),
     )
-    return Verdict(knee, best.bic)
+    return Verdict(knee, best.bic, best.rss, float(rss_smooth[orders[smoothest]]))
 
 
 @dataclass(frozen=True)
@@ -128,6 +131,7 @@ class _Hinge:
     degree: int
     curved: bool
     bic: float
+    rss: float
 
 
 @dataclass(frozen=True)
@@ -195,7 +199,7 @@ class _HingeFitter:
         bic = float(n * np.log(left) + (degree + 4 + int(curved)) * np.log(n))
         if best is not None and best.bic <= bic:
             return best
-        return _Hinge(float(at[i]), float(width[i]), degree, curved, bic)
+        return _Hinge(float(at[i]), float(width[i]), degree, curved, bic, left - self.floor)
 
     def slopes(self, hinge: _Hinge, powers: FloatArray) -> tuple[float, float]:
         """Slopes just left and right of the hinge, per unit of t."""
@@ -291,14 +295,16 @@ def search(x: FloatArray, y: FloatArray, sigma: FloatArray) -> list[Candidate]:
     finest = float(np.trace(costs, offset=1))
     scale = max(1.0, finest / max(n - 3 * (edges.size - 1), 1))
     knots = best_subset(costs, edges, PENALTY * float(np.log(n)) * scale, FEWEST_NODES)
-    return _Pruning(x, y, sigma, cost).run(knots)
+    return _Pruning(x, y, sigma, cost, scale).run(knots)
 
 
 class _Pruning:
     """Merge pairs that are one rounded knee, then drop what does not beat a smooth curve."""
 
-    def __init__(self, x: FloatArray, y: FloatArray, sigma: FloatArray, cost: StretchCosts) -> None:
-        self.x, self.y, self.sigma, self.cost = x, y, sigma, cost
+    def __init__(
+        self, x: FloatArray, y: FloatArray, sigma: FloatArray, cost: StretchCosts, scale: float
+    ) -> None:
+        self.x, self.y, self.sigma, self.cost, self.scale = x, y, sigma, cost, scale
         self.cache: dict[tuple[int, int], Verdict | None] = {}
 
     def judge(self, a: int, b: int) -> Verdict | None:
@@ -333,6 +339,14 @@ class _Pruning:
             stops = [0, *found, self.x.size]
             verdicts = [self.judge(*self.window(stops, k, k + 2)) for k in range(len(found))]
             scores = [v.knee.evidence if v is not None else -np.inf for v in verdicts]
+            # where neither model describes its window, the window holds more than one knee: keep it
+            unclear = [
+                v is not None
+                and v.knee.evidence > -EVIDENCE
+                and not self._adequate(v.smooth_rss, *self.window(stops, k, k + 2))
+                for k, v in enumerate(verdicts)
+            ]
+            scores = [np.inf if u else s for s, u in zip(scores, unclear, strict=True)]
             worst = int(np.argmin(scores))
             if scores[worst] >= EVIDENCE:
                 return [v.knee for v in verdicts if v is not None]
@@ -340,6 +354,11 @@ class _Pruning:
             while self._merge(found):
                 pass
         return []
+
+    def _adequate(self, rss: float, a: int, b: int) -> bool:
+        """Whether a weighted residual sum over nodes a to b is about what the noise leaves."""
+        floor = _rounding_floor(self.y[a:b], 1.0 / self.sigma[a:b])
+        return rss <= ADEQUATE * self.scale * (b - a) + floor
 
     def _add(self, found: list[int]) -> bool:
         """Put the best-supported knee inside a stretch back, if any is well supported."""
@@ -370,6 +389,8 @@ class _Pruning:
             apart = float(np.sum(self.cost(np.array([a, p, q]), np.array([p, q, b]))))
             if self._rounding(stops, k):
                 apart = np.inf
+            elif not self._adequate(one.knee_rss, a, b):
+                continue
             m = b - a
             floor = _rounding_floor(self.y[a:b], 1.0 / self.sigma[a:b])
             gain = m * np.log(min(apart, 1e300) + floor) + 11 * np.log(m) - one.bic
@@ -396,7 +417,9 @@ class _Pruning:
 
 @dataclass(frozen=True)
 class Verdict:
-    """The best knee of a window and the BIC of its model."""
+    """The best knee of a window: BIC and weighted residual sum of its model, and of the best polynomial's."""
 
     knee: Candidate
     bic: float
+    knee_rss: float
+    smooth_rss: float
