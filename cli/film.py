@@ -11,7 +11,7 @@ if TYPE_CHECKING:
     from isotherm.result import IsothermResult
     from isotherm.sheet import RunSheet
 
-__all__ = ["film_isotherm", "film_settings"]
+__all__ = ["film_isotherm", "film_settings", "record_settings"]
 
 
 def film_isotherm(
@@ -39,6 +39,19 @@ def film_isotherm(
     return analyse(read_trace(trace, sheet), at=tuple(sorted(asked)))
 
 
+def record_settings(
+    command: str, sheet: Path | None, columns: Sequence[str] | None, **others: Any
+) -> dict[str, Any]:
+    """Return what the JSON records of the options of any command with one sheet."""
+    from cli.serialise import input_stamp
+
+    settings: dict[str, Any] = {"command": command, **others}
+    settings["sheet"] = None if sheet is None else input_stamp(sheet)
+    if columns:
+        settings["columns"] = list(columns)
+    return settings
+
+
 def film_settings(
     command: str,
     sheet: Path | None,
@@ -50,10 +63,7 @@ def film_settings(
     """Return what the JSON records of the options of a command about a dipped film."""
     from cli.serialise import input_stamp
 
-    settings: dict[str, Any] = {"command": command, **others}
-    settings["sheet"] = None if sheet is None else input_stamp(sheet)
-    if columns:
-        settings["columns"] = list(columns)
+    settings = record_settings(command, sheet, columns, **others)
     if film is not None:
         settings["isotherm"] = {"path": film.source.path, "sha256": film.source.sha256}
     if own_sheet is not None:

@@ -11,7 +11,7 @@ import typer
 if TYPE_CHECKING:
     from isotherm.sheet import ColumnHint, RunSheet
 
-__all__ = ["column_hints", "load_sheet"]
+__all__ = ["column_hints", "load_sheet", "read_time"]
 
 
 def column_hints(texts: list[str] | None) -> tuple[ColumnHint, ...]:
@@ -71,3 +71,23 @@ def load_sheet(path: Path | None, columns: list[str] | None = None) -> RunSheet:
     told = {hint.role for hint in hints}
     kept = tuple(hint for hint in sheet.columns if hint.role not in told)
     return replace(sheet, columns=kept + hints)
+
+
+def read_time(text: str, *, option: str) -> float:
+    """Read a time with its unit, such as `4 h`, in seconds.
+
+    Raises
+    ------
+    typer.BadParameter
+        Wrong usage: no time, or not above zero.
+    """
+    from isotherm.errors import UpstrokeError
+    from isotherm.quantity_text import parse_quantity
+
+    try:
+        seconds = parse_quantity(text, "time").value
+    except UpstrokeError as error:
+        raise typer.BadParameter(str(error), param_hint=option) from error
+    if seconds <= 0:
+        raise typer.BadParameter(f"'{text}' is not above zero", param_hint=option)
+    return seconds

@@ -74,10 +74,11 @@ def isotherm(
 
 def _text(results: list[IsothermResult]) -> str:
     from cli.isotherm_text import isotherm_text
+    from cli.render import join_results
     from cli.terminal import terminal_width
 
     width = terminal_width()
-    return f"\n{'─' * width}\n".join(isotherm_text(result, width) for result in results)
+    return join_results([isotherm_text(result, width) for result in results], width)
 
 
 def _json(results: list[IsothermResult], settings: dict[str, Any], *, as_list: bool) -> bytes:

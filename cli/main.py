@@ -44,6 +44,7 @@ _register(
     "A film on water",
     sheet="Write a commented run sheet to fill in.",
     isotherm="Areas, phases, transitions, collapse and modulus of a compression.",
+    hold="Film stability: loss over time, and by which law.",
 )
 _register(
     "A film on a substrate",

@@ -15,11 +15,13 @@ __all__ = [
     "COVERAGE_NOTE",
     "Column",
     "bullets",
+    "duration_text",
     "hanging",
     "heading",
     "interval_text",
     "inverse",
     "join_blocks",
+    "join_results",
     "paragraph",
     "plain_number",
     "pretty_unit",
@@ -109,6 +111,15 @@ def inverse(quantity: Quantity, unit: str = "mN/m") -> Quantity | None:
         1.0 / quantity.value**2,
         unit,
     )
+
+
+def duration_text(seconds: float) -> str:
+    """Write a time the way a clock says it: 90 s, 25 min, 4.5 h."""
+    if seconds < 120:
+        return f"{seconds:.0f} s"
+    if seconds < 7200:
+        return f"{seconds / 60:.3g} min"
+    return f"{seconds / 3600:.3g} h"
 
 
 def plain_number(value: float | None, digits: int = 3) -> str:
@@ -201,6 +212,11 @@ def bullets(lines: Sequence[str], width: int) -> str:
 def join_blocks(blocks: Sequence[str]) -> str:
     """Join blocks with one empty line between, leaving out empty ones."""
     return "\n\n".join(block for block in blocks if block) + "\n"
+
+
+def join_results(texts: Sequence[str], width: int) -> str:
+    """Join the printed forms of several results with a rule between."""
+    return f"\n{'─' * width}\n".join(texts)
 
 
 def _is_number(cell: str) -> bool:

@@ -1,0 +1,97 @@
+"""`upstroke hold`: how fast a film is lost, and by which law."""
+
+from __future__ import annotations
+
+from pathlib import Path
+from typing import TYPE_CHECKING, Annotated, Any
+
+import typer
+
+from cli.options import (
+    ColumnOption,
+    CsvOption,
+    ForceOption,
+    JsonOption,
+    SheetOption,
+)
+
+if TYPE_CHECKING:
+    from isotherm.hold_result import HoldResult
+
+__all__ = ["app"]
+
+app = typer.Typer(add_completion=False, rich_markup_mode=None)
+
+
+@app.command()
+def hold(
+    records: Annotated[
+        list[Path],
+        typer.Argument(metavar="TRACE", help="Records of a film held at a pressure or an area."),
+    ],
+    sheet: SheetOption = None,
+    planned: Annotated[
+        str | None,
+        typer.Option(
+            "--over",
+            metavar="TIME",
+            help="Time the film is to last, such as '4 h'; else the sheet's dipping gives it.",
+        ),
+    ] = None,
+    column: ColumnOption = None,
+    json: JsonOption = None,
+    csv: CsvOption = None,
+    force: ForceOption = False,
+) -> None:
+    """Film stability: loss over time, and by which law.
+
+    Finds the holds in a record (constant pressure with drifting area, or constant area with drifting
+    pressure), fits the published laws of loss, and reports loss and rate averaged over them.
+
+    \b
+    Examples:
+      upstroke hold held30.csv --sheet run.toml
+      upstroke hold held30.csv held35.csv -s run.toml --over "4 h" --json held.json
+    """
+    from cli.film import record_settings
+    from cli.inputs import load_sheet, read_time
+    from cli.outputs import OutputChoice, Renderers, plan_outputs
+    from isotherm.hold import analyse_hold
+    from isotherm.hold_read import read_hold
+
+    seconds = None if planned is None else read_time(planned, option="--over")
+    plan = plan_outputs(
+        OutputChoice(json, csv, force=force), [*records, *([sheet] if sheet else [])]
+    )
+    run_sheet = load_sheet(sheet, column)
+    results = [analyse_hold(read_hold(path, run_sheet), run_sheet, seconds) for path in records]
+    settings = record_settings("hold", sheet, column, over_s=seconds)
+    plan.deliver(
+        Renderers(
+            text=lambda: _text(results),
+            json=lambda: _json(results, settings),
+            csv=lambda: _csv(results),
+        )
+    )
+
+
+def _text(results: list[HoldResult]) -> str:
+    from cli.hold_text import hold_text
+    from cli.render import join_results
+    from cli.terminal import terminal_width
+
+    width = terminal_width()
+    return join_results([hold_text(result, width) for result in results], width)
+
+
+def _json(results: list[HoldResult], settings: dict[str, Any]) -> bytes:
+    from cli.serialise import json_bytes, with_provenance
+
+    payloads = [with_provenance(result.to_json(), settings) for result in results]
+    return json_bytes(payloads if len(payloads) > 1 else payloads[0])
+
+
+def _csv(results: list[HoldResult]) -> bytes:
+    from cli.hold_csv import hold_csv
+
+    return hold_csv(results)
