@@ -232,7 +232,7 @@ def _creep(log: DippingLog, nodes: Nodes, fit: FilmFit) -> tuple[CreepSpan, ...]
         rows = used[edges[k] : edges[k + 1]]
         if rows.size < 2:
             continue
-        u = float(np.sqrt(max(fit.covariance[k, k], 0.0)))
+        u = float(fit.u_creep[k])
         spans.append(
             CreepSpan(
                 float(log.time[rows[0]]),

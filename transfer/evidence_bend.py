@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from dataclasses import dataclass
 
 import numpy as np
@@ -17,6 +18,8 @@ FloatArray = NDArray[np.float64]
 # a probability of 0.005 with a relative standard uncertainty of 10 %.
 _DRAWS = 20_000
 _SEED = 20_413
+# A hinge that chance alone would make at this rate, were it the only one tried, is none: no drawing.
+_NO_QUESTION = 0.05
 # Δχ² that bounds the set of hinges not worse than the best at 95 % (one position parameter).
 _NOT_WORSE = 3.84
 # Each arm needs two points of its own: with one, a bend and an outlying last point look the same.
@@ -34,7 +37,8 @@ class Bend:
     index_range : tuple of int
         First and last number of strokes not worse at 95 %.
     p_value : float
-        Probability of a bend as strong as this, at any layer, by chance alone.
+        Probability of a bend as strong as this, at any layer, by chance alone; an upper bound
+        where no bend is in question.
     fit : LineFit
         The hinged line.
     """
@@ -91,6 +95,10 @@ def find_bend(
     white = root @ line.residuals
     falls = (columns @ white) ** 2
     best = int(np.argmax(falls))
+    alone = math.erfc(math.sqrt(float(falls[best]) / 2.0))
+    if line.noise_scale is None and alone > _NO_QUESTION:
+        p_value = min(1.0, alone * len(places))
+        return _bend(x, y, cov_y, cov_x, line, reached, places, falls, p_value)
     rng = np.random.default_rng(_SEED)
     noise = rng.standard_normal((_DRAWS, len(x)))
     noise -= (noise @ base) @ base.T
@@ -101,6 +109,21 @@ def find_bend(
         drawn = drawn / np.maximum(np.sum(noise**2, axis=1) - drawn, 1e-300)
         found = found / max(float(white @ white) - found, 1e-300)
     p_value = float((1 + np.count_nonzero(drawn >= found)) / (1 + _DRAWS))
+    return _bend(x, y, cov_y, cov_x, line, reached, places, falls, p_value)
+
+
+def _bend(
+    x: FloatArray,
+    y: FloatArray,
+    cov_y: FloatArray,
+    cov_x: FloatArray,
+    line: LineFit,
+    reached: FloatArray,
+    places: list[int],
+    falls: FloatArray,
+    p_value: float,
+) -> Bend:
+    best = int(np.argmax(falls))
     near = [k for k, fall in zip(places, falls, strict=True) if falls[best] - fall <= _NOT_WORSE]
     scale = 1.0 if line.noise_scale is None else line.noise_scale**2
     fit = fit_line(

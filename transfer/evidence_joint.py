@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import math
 from collections.abc import Mapping, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import NDArray
@@ -117,6 +117,7 @@ def _solve(
     start: float,
     extra: Mapping[str, float] | None = None,
     freed: str = "",
+    pull: bool = False,
 ) -> _Solved | None:
     counts = np.array([m.counts for m in members])
     if not np.any(counts):
@@ -136,11 +137,13 @@ def _solve(
             around / math.sqrt(information),
             float(rest @ weight @ rest),
             len(members) - 1 - (1 if freed else 0),
-            _pull_probability(rest, counts, weight, information) if len(members) > 1 else 1.0,
+            1.0,
         )
         if not solved.value > 0.2 * start:
             break
         around = solved.value
+    if pull and solved.dof > 0:
+        return replace(solved, pull_p=_pull_probability(rest, counts, weight, information))
     return solved
 
 
@@ -220,10 +223,10 @@ def judge(
     several members lean on it: it is named when freeing it helps clearly more than leaving out any one.
     """
 
-    def solve(chosen: Sequence[Member], freed: str = "") -> _Solved | None:
-        return _solve(chosen, inputs, ledger_covariance, start, None, freed)
+    def solve(chosen: Sequence[Member], freed: str = "", *, pull: bool = False) -> _Solved | None:
+        return _solve(chosen, inputs, ledger_covariance, start, None, freed, pull)
 
-    first = solve(members)
+    first = solve(members, pull=True)
     if first is None:
         return Joint(0.0, 0, None, None, True, (), (), None, tuple(m.name for m in members))
     p_first = _probability(first)
@@ -251,7 +254,7 @@ def judge(
             undecided = close if len(close) > 1 else ()
         named.append(best)
         left = [m for m in left if m.name != best]
-        now = solve(left)
+        now = solve(left, pull=True)
     final = None if now is None else Quantity(now.value, now.u, "1")
     return Joint(
         chi_square=first.chi_square,

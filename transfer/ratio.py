@@ -9,8 +9,7 @@ from numpy.typing import NDArray
 
 from transfer.contact import Contact
 from transfer.geometry import Geometry
-from transfer.ratio_curves import film_level
-from transfer.ratio_film import FilmFit
+from transfer.ratio_film import FilmFit, film_area
 from transfer.ratio_nodes import Nodes
 from transfer.strokes import Passage
 from transfer.strokes_motion import Motion
@@ -77,21 +76,24 @@ def transfer_ratios(
     """
     count, size = len(passages), nodes.size
     by_mean = np.zeros((count, size))
-    by_film = np.zeros((count, size + 1))
+    terms = fit.model.size
+    by_film = np.zeros((count, terms + 1))
+    bends = 0.5 * fit.model.rate_changes() * (nodes.tt / np.maximum(nodes.rows, 1))[:, None]
     removed, raw = np.zeros(count), np.zeros(count)
     coated, u_shape, by_contact, u_level = (np.zeros(count) for _ in range(4))
     contact_u = contact.at.u if contact.at is not None and contact.at.u else 0.0
     for s, passage in enumerate(passages):
         for m, before, after in zip(passage.moves, passage.nodes, passage.nodes[1:], strict=False):
             middle = _middle(passage, motion, m, contact)
-            film_before = float(film_level(nodes, fit, before, middle))
-            film_after = float(film_level(nodes, fit, after, middle))
+            at = np.asarray([middle])
+            film_before = float(film_area(nodes, fit, before, at)[0])
+            film_after = float(film_area(nodes, fit, after, at)[0])
             removed[s] += film_before - film_after
             by_mean[s, before] += film_before
             by_mean[s, after] -= film_after
-            by_film[s, before] -= film_before * (middle - nodes.time[before])
-            by_film[s, after] -= film_after * (nodes.time[after] - middle)
-            by_film[s, size] += film_before * nodes.off[before] - film_after * nodes.off[after]
+            by_film[s, :terms] += film_before * (bends[before] - fit.model.loss(before, at)[0])
+            by_film[s, :terms] -= film_after * (bends[after] - fit.model.loss(after, at)[0])
+            by_film[s, terms] += film_before * nodes.off[before] - film_after * nodes.off[after]
         raw[s] = np.exp(nodes.log_area[passage.nodes[0]]) - np.exp(
             nodes.log_area[passage.nodes[-1]]
         )
@@ -118,8 +120,8 @@ def transfer_ratios(
     random = (dwell + film) * outer + level
     shape_part, contact_part = ratio * u_shape * scale, ratio * by_contact * scale
     systematic = np.outer(shape_part, shape_part) + np.outer(contact_part, contact_part)
-    creep = by_film[:, :size] @ fit.covariance[:size, :size] @ by_film[:, :size].T
-    pressure = by_film[:, size] ** 2 * fit.covariance[size, size]
+    creep = by_film[:, :terms] @ fit.covariance[:terms, :terms] @ by_film[:, :terms].T
+    pressure = by_film[:, terms] ** 2 * fit.covariance[terms, terms]
     return Ratios(
         coated=coated,
         u_coated=np.sqrt(u_shape**2 + by_contact**2 + u_level**2),

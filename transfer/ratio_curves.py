@@ -7,11 +7,11 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
-from transfer.ratio_film import FilmFit
+from transfer.ratio_film import FilmFit, film_area
 from transfer.ratio_nodes import Nodes
 from transfer.strokes_motion import Motion
 
-__all__ = ["RemovalCurve", "film_level", "removal_curve"]
+__all__ = ["RemovalCurve", "removal_curve"]
 
 FloatArray = NDArray[np.float64]
 
@@ -37,12 +37,6 @@ class RemovalCurve:
     time: FloatArray
     total: float
     u_total: float
-
-
-def film_level(nodes: Nodes, fit: FilmFit, node: int, time: float | FloatArray) -> FloatArray:
-    """Film area at the set point, cm^2, that a node's dwell gives at `time` (s) if nothing was taken."""
-    level = nodes.log_area[node] + fit.compressibility * nodes.off[node]
-    return np.asarray(np.exp(level - fit.creep[node] * (np.asarray(time) - nodes.time[node])))
 
 
 def removal_curve(
@@ -77,10 +71,11 @@ def removal_curve(
     t, x = time[rows], position[rows]
     off = pressure[rows] - nodes.target[before]
     at_target = area[rows] * (1.0 + fit.compressibility * off)
-    removed = film_level(nodes, fit, before, t) - at_target
+    removed = film_area(nodes, fit, before, t) - at_target
     start = motion.rests[nodes.rest[before]].level
     end = motion.rests[nodes.rest[after]].level
-    scale = float(film_level(nodes, fit, before, way.start))
+    middle = np.asarray([0.5 * (way.start + way.end)])
+    scale = float(film_area(nodes, fit, before, middle)[0])
     row_variance = scale**2 * fit.row_variance * fit.inflation
     if x.size > _BINS and end != start:
         edges = np.clip(((x - start) / (end - start) * _BINS).astype(np.intp), 0, _BINS - 1)
@@ -91,7 +86,7 @@ def removal_curve(
         variance = row_variance / count[used]
     else:
         variance = np.full(x.size, row_variance)
-    middle = 0.5 * (way.start + way.end)
-    total = float(film_level(nodes, fit, before, middle) - film_level(nodes, fit, after, middle))
+    left = float(film_area(nodes, fit, after, middle)[0])
+    total = scale - left
     u_total = scale * float(np.sqrt(fit.mean_variance[before] + fit.mean_variance[after]))
     return RemovalCurve(move, before, after, start, end, x, removed, variance, t, total, u_total)
