@@ -9,9 +9,10 @@ from typing import TYPE_CHECKING
 import typer
 
 if TYPE_CHECKING:
+    from isotherm.quantity import Quantity
     from isotherm.sheet import ColumnHint, RunSheet
 
-__all__ = ["column_hints", "load_sheet", "read_time"]
+__all__ = ["column_hints", "load_sheet", "read_quantity", "read_time"]
 
 
 def column_hints(texts: list[str] | None) -> tuple[ColumnHint, ...]:
@@ -73,6 +74,23 @@ def load_sheet(path: Path | None, columns: list[str] | None = None) -> RunSheet:
     return replace(sheet, columns=kept + hints)
 
 
+def read_quantity(text: str, dimension: str, *, option: str) -> Quantity:
+    """Read a quantity given as an option, such as `12 ± 3 mV`, in its fixed unit.
+
+    Raises
+    ------
+    typer.BadParameter
+        Wrong usage: no quantity of that dimension.
+    """
+    from isotherm.errors import UpstrokeError
+    from isotherm.quantity_text import parse_quantity
+
+    try:
+        return parse_quantity(text, dimension)
+    except UpstrokeError as error:
+        raise typer.BadParameter(str(error), param_hint=option) from error
+
+
 def read_time(text: str, *, option: str) -> float:
     """Read a time with its unit, such as `4 h`, in seconds.
 
@@ -81,13 +99,7 @@ def read_time(text: str, *, option: str) -> float:
     typer.BadParameter
         Wrong usage: no time, or not above zero.
     """
-    from isotherm.errors import UpstrokeError
-    from isotherm.quantity_text import parse_quantity
-
-    try:
-        seconds = parse_quantity(text, "time").value
-    except UpstrokeError as error:
-        raise typer.BadParameter(str(error), param_hint=option) from error
+    seconds = read_quantity(text, "time", option=option).value
     if seconds <= 0:
         raise typer.BadParameter(f"'{text}' is not above zero", param_hint=option)
     return seconds

@@ -45,6 +45,8 @@ _register(
     sheet="Write a commented run sheet to fill in.",
     isotherm="Areas, phases, transitions, collapse and modulus of a compression.",
     hold="Film stability: loss over time, and by which law.",
+    fluid="Co-area and cohesion of the fluid branch, gaseous limit.",
+    potential="Effective dipole moment against area, onset of potential.",
 )
 _register(
     "A film on a substrate",
