@@ -33,6 +33,7 @@ from isotherm.sheet import RunSheet
 __all__ = ["Figures", "LogScore", "figures", "main", "read_with_upstroke", "score_log", "seeds"]
 
 WORST = 30  # pictures drawn of failing logs, at most
+PASSES = "pass while set-point changed"  # trait of logs scored apart, too
 READERS = ("upstroke", "baseline", "limit")
 
 
@@ -54,6 +55,7 @@ class Figures:
     logs: int
     strokes: int
     strokes_right: float
+    strokes_right_plain: float
     type_right: float
     median: float
     ninety: float
@@ -144,6 +146,7 @@ def figures(scores: list[LogScore]) -> Figures:
         len(scores),
         judged,
         _share(s.match.strokes_right for s in scores),
+        _share(s.match.strokes_right for s in scores if PASSES not in s.truth.traits),
         _share(s.match.type_right for s in scores),
         float(median),
         float(ninety),
@@ -162,13 +165,14 @@ def figures(scores: list[LogScore]) -> Figures:
 
 
 def _percent(x: float) -> str:
-    return "   –  " if np.isnan(x) else f"{100 * x:5.1f}%"
+    return "–" if np.isnan(x) else f"{100 * x:5.1f}%"
 
 
 LINES: tuple[tuple[str, str, str, str], ...] = (
     ("logs", "logs", "", ""),
     ("strokes scored", "strokes", "", ""),
     ("all strokes found, none invented", "strokes_right", "%", ">= 99 %"),
+    ("same, without passes off pressure", "strokes_right_plain", "%", ""),
     ("deposition type right", "type_right", "%", ">= 98 %"),
     ("TR error, median", "median", "n", "<= 0.0015"),
     ("TR error, 90 %", "ninety", "n", "<= 0.006"),
@@ -191,8 +195,8 @@ def _table(scores: list[LogScore], families: list[str]) -> str:
         (f, [s for s in scores if s.truth.family == f]) for f in families if len(families) > 1
     ]
     sums = [(name, figures(group)) for name, group in groups]
-    width = 34
-    lines = [" " * width + "".join(f"{n[:8]:>9}" for n, _ in sums) + "  must reach"]
+    width = 35
+    lines = [" " * width + "".join(f"{n[:7]:>8}" for n, _ in sums) + "  must reach"]
     for text, name, kind, reach in LINES:
         cells = []
         for _, sum_ in sums:
@@ -202,7 +206,7 @@ def _table(scores: list[LogScore], families: list[str]) -> str:
                 if kind == "%"
                 else (f"{x:.5f}"[:7] if kind == "n" else f"{x:.0f}").replace("nan", "–")
             )
-        lines.append(f"{text:<{width}}" + "".join(f"{c:>9}" for c in cells) + f"  {reach}")
+        lines.append(f"{text:<{width}}" + "".join(f"{c:>8}" for c in cells) + f"  {reach}")
     return "\n".join(line.rstrip() for line in lines)
 
 
