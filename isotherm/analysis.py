@@ -132,7 +132,7 @@ def _branch(trace: Trace, rows: BranchRows, at: tuple[float, ...]) -> Branch:
     lift_off = None
     if reading.lift_off is not None:
         lift_off = features.knee_point(view, reading.lift_off).area
-    elif zero.offset.u is not None:
+    elif zero.offset.u_random is not None:
         lift_off = features.gradual_lift_off(view)
     collapse = features.collapse(view) if rows.direction == "compression" else None
     trough = None

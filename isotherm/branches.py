@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import itertools
 from dataclasses import dataclass
 from typing import Final
 
@@ -52,7 +53,7 @@ def robust_noise(values: FloatArray) -> float:
         return 0.0
     second = values[2:] - 2.0 * values[1:-1] + values[:-2]
     sigma = MAD_TO_SIGMA * float(np.median(np.abs(second))) / np.sqrt(6.0)
-    return max(sigma, quantum(values) / np.sqrt(12.0))
+    return float(max(sigma, quantum(values) / np.sqrt(12.0)))
 
 
 def quantum(values: FloatArray) -> float:
@@ -122,7 +123,7 @@ def find_branches(trace: Trace) -> tuple[BranchRows, ...]:
     noise = robust_noise(area)
     branches = []
     cycle = 0
-    for first, last in zip(turns[:-1], turns[1:], strict=True):
+    for first, last in itertools.pairwise(turns):
         direction = "compression" if area[last] < area[first] else "expansion"
         if direction == "compression" or cycle == 0:
             cycle += 1

@@ -63,7 +63,7 @@ def row_noise(area: FloatArray, pressure: FloatArray) -> float:
     sigma = min(MAD_TO_SIGMA * float(np.median(np.abs(r))) for r in scaled)
     if pressure.size < FEW:
         sigma = min(sigma, READING_ERROR * float(np.ptp(pressure)))
-    return max(sigma, quantum(pressure) / np.sqrt(12.0))
+    return float(max(sigma, quantum(pressure) / np.sqrt(12.0)))
 
 
 def _left_out(area: FloatArray, pressure: FloatArray, reach: int) -> FloatArray:
@@ -109,9 +109,11 @@ def despike(pressure: FloatArray, noise: float) -> NDArray[np.bool_]:
         slope = (window @ (steps - 5.0)) / 10.0
         misses.append(pressure[suspects] - (window.mean(axis=1) - 5.0 * slope))
     left, right = misses
+    # within seven rows of an end only the line from inside can be asked
+    left = np.where(suspects < 7, right, left)
+    right = np.where(suspects >= n - 7, left, right)
     off = np.minimum(np.abs(left), np.abs(right)) > SPIKE_SIGMAS * EXTRAPOLATED * noise
-    inside = (suspects >= 7) & (suspects < n - 7)
-    spikes[suspects] = off & (left * right > 0) & inside
+    spikes[suspects] = off & (left * right > 0)
     return spikes
 
 
@@ -143,10 +145,7 @@ def condense(area: FloatArray, pressure: FloatArray, noise: float, nodes: int = 
     straight stretch lies on it, so condensing loses no information there.
     """
     n = area.size
-    if n <= nodes:
-        starts = np.arange(n)
-    else:
-        starts = _even_length_starts(area, pressure, noise, nodes)
+    starts = np.arange(n) if n <= nodes else _even_length_starts(area, pressure, noise, nodes)
     counts = np.diff(np.append(starts, n)).astype(np.float64)
     mean_area = np.add.reduceat(area, starts) / counts
     mean_pressure = np.add.reduceat(pressure, starts) / counts

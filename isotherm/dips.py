@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import itertools
 from dataclasses import dataclass
 from typing import Final
 
@@ -76,7 +77,7 @@ def with_dips(
 ) -> list[Candidate]:
     """The candidates, with the two knees of a dip put in where no pair of them encloses one."""
     steps = [c.after - c.before for c in candidates]
-    if any(a < 0 < b for a, b in zip(steps[:-1], steps[1:], strict=True)):
+    if any(a < 0 < b for a, b in itertools.pairwise(steps)):
         return candidates
     whole = np.array([0, x.size], dtype=np.int64)
     local = local_regression(x, y, sigma, whole)

@@ -241,28 +241,56 @@ def limiting_area(view: BranchView) -> tuple[Quantity, Tangent] | None:
         inside = (nodes.x >= low) & (nodes.x <= high)
     if int(inside.sum()) < 3:
         return None
+    line = _line(view, inside)
+    if line.slope >= 0:
+        return None
+    value = -line.intercept / line.slope
+    # a stretch that is not quite straight has no single tangent: how far the line moves when a fifth
+    # is left off at either end is taken as the half-width of a rectangular distribution (GUM 4.3.7)
+    doubt = 0.0
+    part = 0.2 * (high - low)
+    for a, b in ((low + part, high), (low, high - part)):
+        fewer = inside & (nodes.x >= a) & (nodes.x <= b)
+        if int(fewer.sum()) >= 3:
+            other = _line(view, fewer)
+            if other.slope < 0:
+                doubt = max(doubt, abs(-other.intercept / other.slope - value) / math.sqrt(3.0))
+    zero = (view.zero.u_random or 0.0) / abs(line.slope)
+    systematic = math.hypot(view.zero.u_systematic or 0.0, view.pressure_u or 0.0) / abs(line.slope)
+    quantity = Quantity.combine(
+        value,
+        "nm^2",
+        u_random=math.hypot(line.u_root, zero, doubt),
+        u_systematic=math.hypot(value * (view.relative_u or 0.0), systematic),
+    )
+    area = nodes.area[inside]
+    return quantity, Tangent(line.slope, line.intercept, (float(area.max()), float(area.min())))
+
+
+@dataclass(frozen=True)
+class _Line:
+    """Π = slope A + intercept, mN/m per nm^2 and mN/m; u_root: of the area where it meets zero, nm^2."""
+
+    slope: float
+    intercept: float
+    u_root: float
+
+
+def _line(view: BranchView, inside: NDArray[np.bool_]) -> _Line:
+    """Weighted regression of Π (zero subtracted) on A over the nodes `inside`."""
+    nodes = view.nodes
     area, y = nodes.area[inside], nodes.pressure[inside] - view.offset
     w = 1.0 / nodes.sigma[inside] ** 2
     total = float(w.sum())
     centre = float((w * area).sum()) / total
     mean = float((w * y).sum()) / total
-    spread = float((w * (area - centre) ** 2).sum())
+    spread = max(float((w * (area - centre) ** 2).sum()), 1e-300)
     slope = float((w * (area - centre) * y).sum()) / spread
-    if slope >= 0:
-        return None
     residual = y - mean - slope * (area - centre)
     scale = max(1.0, float((w * residual**2).sum()) / max(y.size - 2, 1))
-    value = centre - mean / slope
-    variance = scale * ((1.0 / total) / slope**2 + (mean / slope**2) ** 2 / spread)
-    zero = (view.zero.u_random or 0.0) / abs(slope)
-    systematic = math.hypot(view.zero.u_systematic or 0.0, view.pressure_u or 0.0) / abs(slope)
-    quantity = Quantity.combine(
-        value,
-        "nm^2",
-        u_random=math.hypot(math.sqrt(variance), zero),
-        u_systematic=math.hypot(value * (view.relative_u or 0.0), systematic),
-    )
-    return quantity, Tangent(slope, mean - slope * centre, (float(area.max()), float(area.min())))
+    steep = slope if slope else -1e-12
+    variance = scale * ((1.0 / total) / steep**2 + (mean / steep**2) ** 2 / spread)
+    return _Line(slope, mean - slope * centre, math.sqrt(variance))
 
 
 def modulus_max(view: BranchView) -> MaxModulus | None:

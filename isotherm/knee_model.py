@@ -317,12 +317,10 @@ def fit_knees(
     widths = np.clip(widths, floor, widest * room)
     prior_mean = np.log(np.maximum(room, 1e-9)) + PRIOR_LOG_WIDTH
     weight = 1.0 / sigma
-    coefficients = np.linalg.lstsq(
-        _design(_coordinates(x, knots, widths, 0.5 * float(x[0] + x[-1]))[0], degrees, scales)
-        * weight[:, None],
-        y * weight,
-        rcond=None,
-    )[0]
+    start = _coordinates(x, knots, widths, 0.5 * float(x[0] + x[-1]))[0]
+    start_design = _design(start, degrees, scales) * weight[:, None]
+    solved = np.linalg.lstsq(start_design, y * weight, rcond=None)[0]
+    coefficients = np.asarray(solved, dtype=np.float64)
     p = coefficients.size
     damping = 1e-3
     huber = np.ones_like(y)

@@ -366,9 +366,10 @@ class _Pruning:
         best: Candidate | None = None
         for k in range(len(stops) - 1):
             verdict = self.judge(*self.window(stops, k, k + 1))
-            if verdict is not None and verdict.knee.evidence >= EVIDENCE:
-                if best is None or verdict.knee.evidence > best.evidence:
-                    best = verdict.knee
+            if verdict is None or verdict.knee.evidence < EVIDENCE:
+                continue
+            if best is None or verdict.knee.evidence > best.evidence:
+                best = verdict.knee
         if best is None:
             return False
         at = int(np.searchsorted(self.x, best.x))

@@ -8,6 +8,7 @@ stiffer branches, a large step up between two straight branches, a yield at the 
 
 from __future__ import annotations
 
+import itertools
 from dataclasses import dataclass
 from typing import Final
 
@@ -31,9 +32,7 @@ STRAIGHT: Final = 3  # points each branch beside a kink needs
 EVIDENCE: Final = (
     10.0  # by which two lines must fit better (in χ²) than one cubic of as many parameters
 )
-FALL: Final = (
-    1.0  # mN/m by which a pressure must fall to tell a collapse by itself
-)
+FALL: Final = 1.0  # mN/m by which a pressure must fall to tell a collapse by itself
 FALL_SIGMAS: Final = 5.0
 CURVED: Final = 5  # points
 YIELD: Final = (
@@ -80,7 +79,7 @@ def pieces_of(x: FloatArray, y: FloatArray, sigma: FloatArray) -> list[Piece]:
     inner = best_subset(costs, edges, PENALTY * float(np.log(n)), FEWEST)
     stops = [0, *inner, n]
     out = []
-    for a, b in zip(stops[:-1], stops[1:], strict=True):
+    for a, b in itertools.pairwise(stops):
         wx, px, py = w[a:b], x[a:b], y[a:b]
         total = float(wx.sum())
         x0, level = float((wx * px).sum()) / total, float((wx * py).sum()) / total

@@ -43,7 +43,10 @@ def find_zero(nodes: Nodes, end: float | None, film_from: float | None = None) -
     end : x where the flat start ends (its knee less the rounding), None where there is none.
     film_from : x from which film resists, to extrapolate drift over; None: over the whole branch.
     """
-    none = Quantity.combine(0.0, "mN/m", u_random=None, u_systematic=None)
+    # nothing subtracted: the zero may be off, and drift, by what is usual (rectangular, GUM 4.3.7)
+    none = Quantity.combine(
+        0.0, "mN/m", u_random=None, u_systematic=LARGEST_TREND / float(np.sqrt(3.0))
+    )
     if end is None:
         return Zero(
             none,
