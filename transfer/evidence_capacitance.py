@@ -26,6 +26,7 @@ from transfer.evidence_series import EvidencePoint, EvidenceSeries, Impedance
 
 __all__ = ["ELASTANCE_PER_NM", "capacitance_reading"]
 
+_SMALLEST = 1e-18  # F or F/cm^2; less is no electrode
 # d/ε0 in cm^2/µF for d in nm: 1e-9 m / (F/m) = m^2/F, and 1 m^2/F = 1e4 cm^2 / 1e6 µF.
 ELASTANCE_PER_NM = 1e-9 / EPSILON_0 * 1e-2
 
@@ -109,7 +110,7 @@ def _capacitance(
     point: EvidencePoint, at: Quantity | None, details: dict[str, Any], notes: list[str]
 ) -> Quantity:
     if point.value is not None:
-        if not point.value.value > 0:
+        if not point.value.value > _SMALLEST:
             raise UpstrokeError(
                 f"capacitance is {point.value.value:g}",
                 where=point.where,

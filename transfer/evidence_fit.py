@@ -13,9 +13,9 @@ __all__ = ["LineFit", "fit_line", "hinge_column", "lack_of_fit"]
 
 FloatArray = NDArray[np.float64]
 
-# The fixed-point iteration halves its step many times over at each turn; 1e-10 of the step's own
+# The fixed-point iteration shrinks its step many times over at each turn; 1e-7 of the step's own
 # standard uncertainty is far below anything printed.
-_TOLERANCE = 1e-10
+_TOLERANCE = 1e-7
 _TURNS = 100
 
 
@@ -203,24 +203,23 @@ def _solve(
     hinge: float | None,
     scale: float | None = None,
 ) -> LineFit:
-    parameters: FloatArray = np.linalg.lstsq(design, y, rcond=None)[0].astype(np.float64)
-    for _ in range(_TURNS):
-        slope = _local_slope(x, parameters, free_intercept, hinge)
-        covariance = cov_y + slope[:, None] * cov_x * slope[None, :]
-        weight = _inverse(covariance)
-        residuals = y - design @ parameters
-        # where the true layers most likely lie, given line and point (York's adjusted points)
-        adjusted = _design(x + cov_x @ (slope * (weight @ residuals)), free_intercept, hinge)
-        normal = adjusted.T @ weight @ design
-        step = np.linalg.solve(normal, adjusted.T @ weight @ residuals)
-        parameters = parameters + step
-        spread = np.sqrt(np.maximum(np.diag(np.linalg.pinv(adjusted.T @ weight @ adjusted)), 0))
-        if np.all(np.abs(step) <= _TOLERANCE * spread + 1e-300):
-            break
+    start: FloatArray = np.linalg.lstsq(design, y, rcond=None)[0].astype(np.float64)
+    problem = _Problem(x, y, cov_y, cov_x, design, free_intercept, hinge)
+    parameters = problem.iterate(start, adjust=True)
+    exact = parameters is not None
+    if parameters is None:
+        # far outliers let a steep line with huge errors of layers win: keep the layers where they are
+        parameters = problem.iterate(start, adjust=False)
+    if parameters is None:
+        raise UpstrokeError(
+            "no line goes through the values, they differ too wildly",
+            remedy="check their numbers and units",
+        )
     slope = _local_slope(x, parameters, free_intercept, hinge)
     weight = _inverse(cov_y + slope[:, None] * cov_x * slope[None, :])
     residuals = y - design @ parameters
-    adjusted = _design(x + cov_x @ (slope * (weight @ residuals)), free_intercept, hinge)
+    shift = cov_x @ (slope * (weight @ residuals)) if exact else 0.0
+    adjusted = _design(x + shift, free_intercept, hinge)
     return LineFit(
         parameters=parameters,
         covariance=np.linalg.inv(adjusted.T @ weight @ adjusted).astype(np.float64),
@@ -236,6 +235,45 @@ def _solve(
         hinge=hinge,
         noise_scale=scale,
     )
+
+
+@dataclass(frozen=True)
+class _Problem:
+    """Points and their covariances, solved by repeated linear least squares."""
+
+    x: FloatArray
+    y: FloatArray
+    cov_y: FloatArray
+    cov_x: FloatArray
+    design: FloatArray
+    free_intercept: bool
+    hinge: float | None
+
+    def iterate(self, start: FloatArray, *, adjust: bool) -> FloatArray | None:
+        """Parameters where the step has died out; None when it does not.
+
+        With `adjust`, the design is taken at the adjusted points, whose fixed point is the minimum
+        itself; without, at the points as read, which always settles but near the minimum only.
+        """
+        parameters = start
+        for _ in range(_TURNS):
+            slope = _local_slope(self.x, parameters, self.free_intercept, self.hinge)
+            weight = _inverse(self.cov_y + slope[:, None] * self.cov_x * slope[None, :])
+            residuals = self.y - self.design @ parameters
+            # where the true layers most likely lie, given line and point (York's adjusted points)
+            shift = self.cov_x @ (slope * (weight @ residuals)) if adjust else 0.0
+            at = _design(self.x + shift, self.free_intercept, self.hinge)
+            try:
+                step = np.linalg.solve(at.T @ weight @ self.design, at.T @ weight @ residuals)
+                spread = np.sqrt(np.abs(np.diag(np.linalg.inv(at.T @ weight @ at))))
+            except np.linalg.LinAlgError:
+                return None
+            if not np.all(np.isfinite(step)):
+                return None
+            parameters = parameters + step
+            if np.all(np.abs(step) <= _TOLERANCE * spread):
+                return parameters
+        return None
 
 
 def _inverse(covariance: FloatArray) -> FloatArray:

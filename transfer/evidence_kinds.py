@@ -45,8 +45,11 @@ class Kind:
         return plain.replace("xray", "X-ray").replace("bragg", "Bragg")
 
 
-def _positive(name: str, dimension: str, meaning: str, example: str, high: float = 1e30) -> Key:
-    return Key(name, "quantity", meaning, f'"{example}"', dimension, 0.0, high, above=True)
+# Bounds are physical, or so wide that only a slip crosses them.
+def _positive(
+    name: str, dimension: str, meaning: str, example: str, low: float, high: float
+) -> Key:
+    return Key(name, "quantity", meaning, f'"{example}"', dimension, low, high)
 
 
 def _whole(name: str, meaning: str, example: int, high: int) -> Key:
@@ -59,20 +62,27 @@ _COMMON: Final = (
     Key("intercept", "choice", "value of the bare substrate: fitted, or zero", '"free"',
         choices=("free", "zero")),
     _positive("common_uncertainty", "fraction",
-              "relative u shared by all its values (calibration, optical model)", "2 %", 1.0),
+              "relative u shared by all its values (calibration, optical model)", "2 %", 1e-9, 1.0),
 )  # fmt: skip
 _FACES: Final = _whole("faces", "faces coated and seen by the measurement", 2, 2)
 _FRACTION: Final = _positive(
-    "fraction", "fraction", "part of the molecules that carries the group measured", "1.0", 1.0
+    "fraction",
+    "fraction",
+    "part of the molecules that carries the group measured",
+    "1.0",
+    1e-9,
+    1.0,
 )
 
+_SCAN_RATE: Final = _positive("scan_rate", "V/s", "of the voltammograms", "50 mV/s", 1e-7, 1e7)
+
 ELECTRODE: Final = (
-    _positive("area", "cm^2", "geometric area", "0.196 ± 0.004 cm^2", 1e6),
-    _positive("roughness", "fraction", "true area over geometric area", "1.15 ± 0.05", 1e4),
+    _positive("area", "cm^2", "geometric area", "0.196 ± 0.004 cm^2", 1e-10, 1e6),
+    _positive("roughness", "fraction", "true area over geometric area", "1.15 ± 0.05", 0.1, 1e4),
 )
 _ELECTRODE_COLUMNS: Final = (
-    _positive("electrode_area", "cm^2", "geometric area", "0.196 ± 0.004 cm^2", 1e6),
-    _positive("roughness", "fraction", "true area over geometric area", "1.15 ± 0.05", 1e4),
+    _positive("electrode_area", "cm^2", "geometric area", "0.196 ± 0.004 cm^2", 1e-10, 1e6),
+    _positive("roughness", "fraction", "true area over geometric area", "1.15 ± 0.05", 0.1, 1e4),
 )
 
 POINT_KEYS: Final = (
@@ -86,9 +96,9 @@ _LIST: Final = (
         ("1",),
         (
             _positive("absorptivity", "L/mol/cm", "molar, decadic, at the wavelength measured",
-                      "1.2e4 ± 0.05e4 L/(mol·cm)"),
+                      "1.2e4 ± 0.05e4 L/(mol·cm)", 1e-3, 1e9),
             _positive("orientation", "fraction",
-                      "absorption relative to molecules lying at random (3/2: in the plane)", "1.5", 3.0),
+                      "absorption relative to random molecules (3/2: in the plane)", "1.5", 1e-6, 3.0),
             _FRACTION,
             _FACES,
         ),
@@ -98,7 +108,7 @@ _LIST: Final = (
         "frequency, or its change, of a coated quartz resonator",
         ("Hz",),
         (
-            _positive("crystal_frequency", "Hz", "fundamental of the bare crystal", "5 MHz", 1e10),
+            _positive("crystal_frequency", "Hz", "fundamental of the bare crystal", "5 MHz", 1e3, 1e10),
             _whole("overtone", "overtone measured at", 1, 101),
             _FACES,
         ),
@@ -119,7 +129,7 @@ _LIST: Final = (
         (
             _whole("electrons", "electrons per molecule", 1, 100),
             _FRACTION,
-            Key("scan_rate", "quantity", "of the voltammograms", '"50 mV/s"', "V/s", 0.0, 1e7, above=True),
+            _SCAN_RATE,
             *_ELECTRODE_COLUMNS,
         ),
         files="voltammogram",
@@ -130,11 +140,11 @@ _LIST: Final = (
         "capacitance; or voltammograms at several scan rates; or impedance",
         ("F", "F/cm^2"),
         (
-            _positive("permittivity", "fraction", "relative permittivity of the film", "2.6 ± 0.1", 1e4),
-            Key("scan_rate", "quantity", "of the voltammograms", '"50 mV/s"', "V/s", 0.0, 1e7, above=True),
+            _positive("permittivity", "fraction", "relative permittivity of the film", "2.6 ± 0.1", 1.0, 1e4),
+            _SCAN_RATE,
             Key("at", "quantity", "potential at which the charging current is read", '"0.10 V"', "V",
                 -1e3, 1e3),
-            _positive("frequency", "Hz", "at which the impedance is read", "100 Hz", 1e12),
+            _positive("frequency", "Hz", "at which the impedance is read", "100 Hz", 1e-6, 1e12),
             *_ELECTRODE_COLUMNS,
         ),
         files="capacitance",

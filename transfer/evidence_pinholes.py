@@ -19,6 +19,7 @@ __all__ = ["blocking_pinholes", "capacitance_pinholes"]
 
 # One-sided 95 % limit of a normal distribution.
 _ONE_SIDED = 1.645
+_STEP = 1e-3  # of u, for derivatives by differences
 
 
 def _limit(fraction: float, u: float | None) -> float | None:
@@ -62,14 +63,16 @@ def capacitance_pinholes(line: KindLine, ledger: LedgerView) -> Pinholes | None:
         film = 1.0 / (b + r)
         return (1.0 / n - film) / (1.0 / b - film)
 
+    if min(y_bare.value, y_now.value, rise) <= 0:
+        return None
     inputs = ((y_bare.value, y_bare.u or 0.0), (y_now.value, y_now.u or 0.0), (rise, u_rise))
     middle = [value for value, _ in inputs]
     f = fraction(*middle)
     variance = 0.0
     for n, (value, u) in enumerate(inputs):
         up, down = list(middle), list(middle)
-        up[n], down[n] = value + 0.5 * u, value - 0.5 * u
-        variance += (fraction(*up) - fraction(*down)) ** 2
+        up[n], down[n] = value + _STEP * u, value - _STEP * u
+        variance += ((fraction(*up) - fraction(*down)) / (2.0 * _STEP)) ** 2
     u_f = math.sqrt(variance)
     note = (
         "no more than its uncertainty"

@@ -53,6 +53,10 @@ __all__ = ["read_evidence"]
 
 _LARGEST = 20_000_000  # bytes; tables of values are far smaller
 _MOST_LAYERS = 1_000_000
+# No value of any kind comes near these in its fixed unit (Hz, nm, mol/cm^2, C, F, A, ohm).
+_LARGEST_VALUE = 1e15
+_SMALLEST_U = 1e-25
+_SLOWEST, _FASTEST = 1e-7, 1e7  # V/s
 # Absorbance is a pure number; these are ways to say so.
 _ABSORBANCE_UNIT = re.compile(r"\s*(?:(?<=\d\s)1|AU|a\.u\.|abs)\s*$", re.IGNORECASE)
 
@@ -94,6 +98,11 @@ def _series(draft: Draft, folder: Path) -> EvidenceSeries:
         name: read_value(keys[name], given, f"{draft.kind}.{name}", draft.places[name])
         for name, given in draft.settings.items()
     }
+    for name, setting in settings.items():
+        if isinstance(setting, Quantity) and (setting.u or 0.0) >= abs(setting.value):
+            raise UpstrokeError(f"the u of '{name}' is as large as its value",
+                                where=draft.places[name].of(f"{draft.kind}.{name}"),
+                                remedy="give the standard uncertainty, in the unit of the value")  # fmt: skip
     points: list[EvidencePoint] = []
     for raw in draft.points:
         point = _point(raw, kind, settings, folder)
@@ -146,6 +155,10 @@ def _point(raw: DraftPoint, kind: Kind, settings: dict[str, Any], folder: Path) 
         raise UpstrokeError(f"no value given for {kind.name}", where=where,
                             remedy=f"give value, u and unit{more}")  # fmt: skip
     value = _value(given, kind, where)
+    largest = max(abs(value.value), value.u or 0.0)
+    if largest > _LARGEST_VALUE or (value.u is not None and value.u < _SMALLEST_U):
+        raise UpstrokeError(f"impossible value of {kind.name}: {value.value:g} {value.unit}",
+                            where=where, remedy="check number, u and unit")  # fmt: skip
     if value.value < kind.lowest:
         what = "negative charge" if value.unit in ("C", "C/cm^2") else f"negative {kind.name}"
         raise UpstrokeError(f"{what.replace('_', ' ')} ({value.value:g} {value.unit})", where=where,
@@ -227,6 +240,9 @@ def _records(
             scan = settings.get("scan_rate")
             if rate is not None:
                 scan = parse_quantity(str(rate), "V/s", where=where)
+                if not _SLOWEST <= scan.value <= _FASTEST:
+                    raise UpstrokeError(f"a scan rate of {scan.value:g} V/s", where=where,
+                                        remedy="check its unit")  # fmt: skip
             elif scan is None and raw.scan_rate is not None:
                 scan = Quantity(raw.scan_rate, None, "V/s")
             if scan is None or not scan.value > 0:

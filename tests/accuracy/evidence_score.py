@@ -157,7 +157,21 @@ def _row(kind, layers, v, s, electrode, roughness, absorptivity, permittivity): 
         rough, perm, unit = roughness, permittivity, "µF/cm^2"
         v = max(v, 1e-3)
         v, s = r / v, r * s / v**2
-    return f"{kind},{layers},{v:.8g},{s:.4g},{unit},{absorb},{crystal},{faces},{electrons},{area},{rough},{perm}"
+    cells = (
+        kind,
+        layers,
+        f"{v:.8g}",
+        f"{s:.4g}",
+        unit,
+        absorb,
+        crystal,
+        faces,
+        electrons,
+        area,
+        rough,
+        perm,
+    )
+    return ",".join(map(str, cells))
 
 
 def run(sample: Sample, folder: Path) -> EvidenceResult:

@@ -140,7 +140,8 @@ def test_chance_bends_are_as_rare_as_stated():
     rng = np.random.default_rng(2)
     p = np.array([bent(rng, 0.0).p_value for _ in range(200)])
     assert np.mean(p < 0.05) < 0.10
-    assert 0.35 < np.mean(p < 0.5) < 0.65
+    # beyond 0.05 the value is an upper bound
+    assert np.mean(p < 0.5) < 0.65
 
 
 def test_one_point_beyond_is_no_bend():
