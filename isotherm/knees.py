@@ -20,6 +20,7 @@ FloatArray = NDArray[np.float64]
 
 HIGHEST_DEGREE: Final = 5  # of a stretch; a fluid branch from lift-off to collapse needs about 4
 MODEST_DEGREE: Final = 3  # of the first fit
+CLOSEST: Final = 1e-4  # share of the branch's range of ln A that two knees are apart at least
 SPARSE_WIDEST: Final = 0.12  # few points: a wide rounding and a curved stretch look the same
 COARSE: Final = 10  # iterations of a fit that will be refined
 ROUNDS: Final = 2  # of enriching shapes
@@ -39,13 +40,14 @@ def find_knees(nodes: Nodes) -> KneeModel:
     """
     x, y, sigma = nodes.x, nodes.pressure, nodes.sigma
     if x.size < DENSE:
-        candidates = sparse_candidates(x, y, sigma)
+        candidates = _in_order(sparse_candidates(x, y, sigma), x)
         return _fit(x, y, sigma, candidates, sparse_degrees(candidates, x))
-    candidates = search(x, y, sigma)
+    candidates = _in_order(search(x, y, sigma), x)
     model = _fit(x, y, sigma, candidates)
     scatter = sigma * np.sqrt(max(model.inflation, 1.0))
     dipped = with_dips(candidates, x, y, scatter)
     if dipped is not candidates:
+        dipped = _in_order(dipped, x)
         candidates, model = dipped, _fit(x, y, sigma, dipped)
     while True:
         weak = _weakest(model)
@@ -56,6 +58,17 @@ def find_knees(nodes: Nodes) -> KneeModel:
         if _bic(simpler, y, sigma) > _bic(model, y, sigma):
             return model
         candidates, model = fewer, simpler
+
+
+def _in_order(candidates: list[Candidate], x: FloatArray) -> list[Candidate]:
+    """Candidates in order of x, inside the branch, none on top of another."""
+    apart = CLOSEST * float(x[-1] - x[0])
+    out: list[Candidate] = []
+    for candidate in sorted(candidates, key=lambda c: c.x):
+        last = out[-1].x if out else float(x[0])
+        if candidate.x - last > apart and float(x[-1]) - candidate.x > apart:
+            out.append(candidate)
+    return out
 
 
 def _fit(
