@@ -127,6 +127,7 @@ def _disturb(rng: np.random.Generator, plan: Plan) -> None:
 
 
 def _renew(rng: np.random.Generator, plan: Plan, area: float, base: float) -> None:
+    plan.wait(40.0)  # nobody opens the barriers before the stroke has settled
     opened = plan.now
     opening = float(rng.uniform(20.0, 90.0))
     plan.wait(opening)
