@@ -9,6 +9,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from isotherm import features
+from isotherm.branch_view import BranchView
 from isotherm.branches import BranchRows, find_branches, steady_area
 from isotherm.condense import Nodes, condense, despike, row_noise
 from isotherm.errors import UpstrokeError
@@ -18,6 +19,7 @@ from isotherm.modulus import LocalFit, local_regression
 from isotherm.molecular_area import NM2_PER_CM2
 from isotherm.phases import Reading, read_stretches
 from isotherm.result import Branch, Curve, IsothermResult
+from isotherm.tangent import limiting_area
 from isotherm.trace import Trace
 from isotherm.zero import Zero, find_zero
 
@@ -125,10 +127,10 @@ def _branch(trace: Trace, rows: BranchRows, at: tuple[float, ...]) -> Branch:
         reading = replace(reading, falls=_falls(nodes, local, float(model.knots[reading.collapse])))
     zero = _zero(nodes, model, reading, local, rows.direction)
     warnings.extend(zero.warnings)
-    view = features.BranchView(
+    view = BranchView(
         nodes, model, reading, local, zero.offset, trace.area_relative_u, trace.pressure_u
     )
-    limiting = features.limiting_area(view)
+    limiting = limiting_area(view)
     lift_off = None
     if reading.lift_off is not None:
         lift_off = features.knee_point(view, reading.lift_off).area

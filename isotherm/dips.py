@@ -9,7 +9,7 @@ from typing import Final
 import numpy as np
 from numpy.typing import NDArray
 
-from isotherm.knee_search import Candidate
+from isotherm.knee_evidence import Candidate
 from isotherm.modulus import local_regression
 
 __all__ = ["Dip", "find_dip", "with_dips"]

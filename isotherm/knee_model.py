@@ -9,36 +9,23 @@ exactly at the knee's x: the trade's tangent construction is a parameter of the 
 from __future__ import annotations
 
 from dataclasses import dataclass
-from typing import Final
 
 import numpy as np
 from numpy.typing import NDArray
 
 __all__ = [
-    "INDIFFERENT",
-    "WIDEST",
     "KneeModel",
     "ModelTerms",
-    "choose_degrees",
+    "coordinates",
     "correlation_gain",
-    "fit_knees",
+    "design_matrix",
+    "jacobian_of",
     "model_terms",
+    "scales_of",
+    "slopes_of",
 ]
 
 FloatArray = NDArray[np.float64]
-
-MAX_ITERATIONS: Final = 14
-WIDEST: Final = 0.5  # rounding width, as a share of the shorter neighbouring stretch
-CONVERGED: Final = 1e-2  # smallest fall of χ² worth another iteration, in units of its mean term
-# Misfits below this share of the pressure range decide nothing: no rounding shape is exact (our choice).
-INDIFFERENT: Final = 5e-5
-# Huber's bound for the scaled residual (Huber, Robust Statistics, 1981: 1.345 for 95 % efficiency; wider
-# here, since spikes are already out and only their remains matter).
-HUBER: Final = 3.0
-# Weak prior on ln(width / stretch): rounded by a few per cent of the neighbouring stretch, within a
-# factor of e^1.5; it only matters where the data say nothing about the rounding.
-PRIOR_LOG_WIDTH: Final = -3.5
-PRIOR_LOG_WIDTH_SIGMA: Final = 1.5
 
 
 @dataclass(frozen=True)
@@ -68,13 +55,13 @@ class KneeModel:
 
     def pressure(self, x: FloatArray) -> FloatArray:
         """Fitted pressure at (n,) x, mN/m."""
-        g, _, _ = _coordinates(x, self.knots, self.widths, self._origin(0))
-        return np.asarray(_design(g, self.degrees, self.scales) @ self.coefficients)
+        g, _, _ = coordinates(x, self.knots, self.widths, self._origin(0))
+        return np.asarray(design_matrix(g, self.degrees, self.scales) @ self.coefficients)
 
     def modulus(self, x: FloatArray) -> FloatArray:
         """Fitted dΠ/dx at (n,) x, mN/m."""
-        g, rise, _ = _coordinates(x, self.knots, self.widths, self._origin(0))
-        slopes = _slopes(g, self.degrees, self.scales, self.coefficients)
+        g, rise, _ = coordinates(x, self.knots, self.widths, self._origin(0))
+        slopes = slopes_of(g, self.degrees, self.scales, self.coefficients)
         inside = np.diff(np.vstack([np.ones_like(x), rise, np.zeros_like(x)]), axis=0) * -1.0
         return np.asarray(np.sum(slopes * inside, axis=0))
 
@@ -141,7 +128,7 @@ class KneeModel:
         return value, gradient
 
 
-def _coordinates(
+def coordinates(
     x: FloatArray, knots: FloatArray, widths: FloatArray, centre: float
 ) -> tuple[FloatArray, FloatArray, FloatArray]:
     """g (K+1, n); rise (K, n) = dh_k/dx; broaden (K, n) = dh_k/d ln w_k; `centre` serves K = 0."""
@@ -160,7 +147,7 @@ def _coordinates(
     return g, rise, broaden
 
 
-def _design(g: FloatArray, degrees: tuple[int, ...], scales: FloatArray) -> FloatArray:
+def design_matrix(g: FloatArray, degrees: tuple[int, ...], scales: FloatArray) -> FloatArray:
     columns = [np.ones(g.shape[1])]
     for j, degree in enumerate(degrees):
         scaled = g[j] / scales[j]
@@ -171,7 +158,7 @@ def _design(g: FloatArray, degrees: tuple[int, ...], scales: FloatArray) -> Floa
     return np.stack(columns, axis=1)
 
 
-def _slopes(
+def slopes_of(
     g: FloatArray, degrees: tuple[int, ...], scales: FloatArray, coefficients: FloatArray
 ) -> FloatArray:
     """dp_j/dg_j for every stretch, (K+1, n)."""
@@ -205,10 +192,10 @@ class ModelTerms:
 
 def model_terms(model: KneeModel, x: FloatArray) -> ModelTerms:
     """Evaluate a model with its derivatives against coefficients, knots and ln widths."""
-    g, rise, broaden = _coordinates(x, model.knots, model.widths, 0.5 * (model.start + model.stop))
-    design = _design(g, model.degrees, model.scales)
-    slopes = _slopes(g, model.degrees, model.scales, model.coefficients)
-    jacobian, jump = _jacobian(design, slopes, rise, broaden)
+    g, rise, broaden = coordinates(x, model.knots, model.widths, 0.5 * (model.start + model.stop))
+    design = design_matrix(g, model.degrees, model.scales)
+    slopes = slopes_of(g, model.degrees, model.scales, model.coefficients)
+    jacobian, jump = jacobian_of(design, slopes, rise, broaden)
     parts = np.zeros_like(g)
     first = 1
     for j, degree in enumerate(model.degrees):
@@ -218,7 +205,7 @@ def model_terms(model: KneeModel, x: FloatArray) -> ModelTerms:
     return ModelTerms(g, parts, design, jacobian, jump, z)
 
 
-def _jacobian(
+def jacobian_of(
     design: FloatArray, slopes: FloatArray, rise: FloatArray, broaden: FloatArray
 ) -> tuple[FloatArray, FloatArray]:
     jump = slopes[1:] - slopes[:-1]
@@ -238,177 +225,5 @@ def correlation_gain(residual: FloatArray) -> float:
     return (1.0 + lag) / (1.0 - lag)
 
 
-def _scales(x: FloatArray, knots: FloatArray) -> FloatArray:
+def scales_of(x: FloatArray, knots: FloatArray) -> FloatArray:
     return np.maximum(np.diff(np.concatenate([[x[0]], knots, [x[-1]]])), 1e-9)
-
-
-def choose_degrees(
-    x: FloatArray,
-    y: FloatArray,
-    sigma: FloatArray,
-    knots: FloatArray,
-    widths: FloatArray,
-    highest: tuple[int, ...],
-) -> tuple[int, ...]:
-    """Raise polynomial degrees one at a time while BIC improves, all knees fixed.
-
-    highest : largest degree allowed in each stretch.
-    """
-    scales = _scales(x, knots)
-    g, _, _ = _coordinates(x, knots, widths, 0.5 * float(x[0] + x[-1]))
-    floor = float(np.sum(sigma**-2.0)) * (INDIFFERENT * max(float(np.ptp(y)), 1e-9)) ** 2
-    degrees = [min(1, h) for h in highest]
-    weight = 1.0 / sigma
-    target = y * weight
-    n = x.size
-    while True:
-        design = _design(g, tuple(degrees), scales) * weight[:, None]
-        q, _ = np.linalg.qr(design)
-        residual = target - q @ (q.T @ target)
-        open_stretches = [j for j, d in enumerate(degrees) if d < highest[j]]
-        if not open_stretches:
-            return tuple(degrees)
-        extra = np.stack(
-            [(g[j] / scales[j]) ** (degrees[j] + 1) * weight for j in open_stretches], axis=1
-        )
-        extra -= q @ (q.T @ extra)
-        size = np.maximum(np.sum(extra**2, axis=0), 1e-300)
-        gain = (extra.T @ residual) ** 2 / size
-        rss = float(residual @ residual)
-        best = int(np.argmax(gain))
-        left = max(rss - float(gain[best]), 0.0) + floor
-        if n * np.log((rss + floor) / left) < np.log(n) + 2.0:
-            return tuple(degrees)
-        degrees[open_stretches[best]] += 1
-
-
-def fit_knees(
-    x: FloatArray,
-    y: FloatArray,
-    sigma: FloatArray,
-    knots: FloatArray,
-    widths: FloatArray,
-    degrees: tuple[int, ...],
-    *,
-    iterations: int = MAX_ITERATIONS,
-    widest: float = WIDEST,
-) -> KneeModel:
-    """Fit knots, widths and polynomials together (Levenberg-Marquardt, Huber weights).
-
-    Parameters
-    ----------
-    x, y, sigma : (n,) x = -ln A increasing; pressure and its standard uncertainty, mN/m.
-    knots, widths : (K,) starting values. degrees : K + 1 polynomial degrees.
-    iterations : at most so many. widest : largest rounding, a share of the shorter neighbour.
-
-    Returns
-    -------
-    KneeModel
-        The covariance is that of the weighted fit times an inflation that covers excess scatter and
-        the correlation of neighbouring residuals.
-    """
-    knots, widths = knots.astype(float).copy(), widths.astype(float).copy()
-    k = knots.size
-    scales = _scales(x, knots)
-    spacing = float(x[-1] - x[0]) / max(x.size, 1)
-    gaps = np.diff(np.concatenate([[x[0]], knots, [x[-1]]]))
-    room = np.minimum(gaps[:-1], gaps[1:])
-    floor = np.maximum(np.minimum(0.1 * spacing, 0.02 * room), 1e-9)
-    widths = np.clip(widths, floor, widest * room)
-    prior_mean = np.log(np.maximum(room, 1e-9)) + PRIOR_LOG_WIDTH
-    weight = 1.0 / sigma
-    start = _coordinates(x, knots, widths, 0.5 * float(x[0] + x[-1]))[0]
-    start_design = _design(start, degrees, scales) * weight[:, None]
-    solved = np.linalg.lstsq(start_design, y * weight, rcond=None)[0]
-    coefficients = np.asarray(solved, dtype=np.float64)
-    p = coefficients.size
-    damping = 1e-3
-    huber = np.ones_like(y)
-
-    def evaluate(
-        c: FloatArray, kn: FloatArray, w: FloatArray
-    ) -> tuple[FloatArray, FloatArray, FloatArray, FloatArray]:
-        g, rise, broaden = _coordinates(x, kn, w, 0.5 * float(x[0] + x[-1]))
-        design = _design(g, degrees, scales)
-        return (y - design @ c) * weight, design, rise, broaden
-
-    def cost(residual: FloatArray, w: FloatArray) -> float:
-        prior = (np.log(w) - prior_mean) / PRIOR_LOG_WIDTH_SIGMA
-        return float(np.sum(huber * residual**2) + np.sum(prior**2))
-
-    residual, design, rise, broaden = evaluate(coefficients, knots, widths)
-    normal = np.eye(p + 2 * k)
-    robust = False
-    for _ in range(iterations):
-        if robust:
-            scale = max(1.0, 1.4826 * float(np.median(np.abs(residual))))
-            huber = np.minimum(1.0, HUBER * scale / np.maximum(np.abs(residual), 1e-12))
-        g, _, _ = _coordinates(x, knots, widths, 0.5 * float(x[0] + x[-1]))
-        slopes = _slopes(g, degrees, scales, coefficients)
-        jacobian, _ = _jacobian(design, slopes, rise, broaden)
-        jacobian *= weight[:, None]
-        weighted = jacobian * huber[:, None]
-        normal = weighted.T @ jacobian
-        right = weighted.T @ residual
-        normal[p + k :, p + k :] += np.eye(k) / PRIOR_LOG_WIDTH_SIGMA**2
-        right[p + k :] -= (np.log(widths) - prior_mean) / PRIOR_LOG_WIDTH_SIGMA**2
-        now = cost(residual, widths)
-        accepted = False
-        # unit diagonal: the parameters differ by many orders of magnitude
-        unit = 1.0 / np.sqrt(np.maximum(np.diag(normal), 1e-300))
-        scaled = normal * unit[:, None] * unit
-        for _ in range(6):
-            trust = scaled + (damping + 1e-10) * np.eye(scaled.shape[0])
-            step = unit * np.linalg.solve(trust, unit * right)
-            new_knots = knots + np.clip(step[p : p + k], -0.3 * room, 0.3 * room)
-            new_widths = np.clip(
-                widths * np.exp(np.clip(step[p + k :], -1.0, 1.0)), floor, widest * room
-            )
-            edges = np.concatenate([[x[0]], new_knots, [x[-1]]])
-            if np.all(np.diff(edges) > 0.02 * np.minimum(gaps, 1.0)):
-                trial = coefficients + step[:p]
-                r, d, ri, br = evaluate(trial, new_knots, new_widths)
-                if cost(r, new_widths) <= now:
-                    accepted = True
-                    break
-            damping *= 8.0
-        if not accepted:
-            if robust:
-                break
-            robust, damping = True, 1e-3
-            continue
-        gain = now - cost(r, new_widths)
-        coefficients, knots, widths = trial, new_knots, new_widths
-        residual, design, rise, broaden = r, d, ri, br
-        damping = max(damping * 0.2, 1e-9)
-        if gain < CONVERGED * max(1.0, now / x.size):
-            if robust:
-                break
-            robust = True
-    rss = float(np.sum(huber * residual**2))
-    dof = max(x.size - p - 2 * k, 1)
-    inflation = _inflation(residual, huber, dof)
-    unit = 1.0 / np.sqrt(np.maximum(np.diag(normal), 1e-300))
-    inverse = np.linalg.pinv(normal * unit[:, None] * unit, rcond=1e-10, hermitian=True)
-    covariance = inverse * unit[:, None] * unit * inflation
-    model = KneeModel(
-        knots,
-        widths,
-        degrees,
-        scales,
-        coefficients,
-        covariance,
-        rss,
-        dof,
-        inflation,
-        float(x[0]),
-        float(x[-1]),
-        1.0 / PRIOR_LOG_WIDTH_SIGMA**2,
-    )
-    return model
-
-
-def _inflation(residual: FloatArray, huber: FloatArray, dof: int) -> float:
-    """Factor on the covariance: reduced χ² (never below 1) times the gain of correlated residuals."""
-    r = residual * np.sqrt(huber)
-    return max(float(r @ r) / dof, 1.0) * correlation_gain(r)

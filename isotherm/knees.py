@@ -9,8 +9,10 @@ from numpy.typing import NDArray
 
 from isotherm.condense import DENSE, Nodes
 from isotherm.dips import with_dips
-from isotherm.knee_model import INDIFFERENT, WIDEST, KneeModel, choose_degrees, fit_knees
-from isotherm.knee_search import Candidate, search
+from isotherm.knee_evidence import Candidate
+from isotherm.knee_fit import INDIFFERENT, WIDEST, choose_degrees, fit_knees
+from isotherm.knee_model import KneeModel
+from isotherm.knee_search import search
 from isotherm.knee_uncertainty import with_model_doubt
 from isotherm.sparse import sparse_candidates, sparse_degrees
 

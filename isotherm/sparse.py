@@ -15,7 +15,8 @@ from typing import Final
 import numpy as np
 from numpy.typing import NDArray
 
-from isotherm.knee_search import Candidate, best_subset
+from isotherm.knee_evidence import Candidate
+from isotherm.partition import best_subset
 
 __all__ = ["Piece", "pieces_of", "sparse_candidates", "sparse_degrees"]
 
