@@ -8,6 +8,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
+from isotherm.errors import UpstrokeError
 from transfer.evidence_fit import LineFit, fit_line, hinge_column
 
 __all__ = ["Bend", "find_bend"]
@@ -122,18 +123,21 @@ def _bend(
     places: list[int],
     falls: FloatArray,
     p_value: float,
-) -> Bend:
+) -> Bend | None:
     best = int(np.argmax(falls))
     near = [k for k, fall in zip(places, falls, strict=True) if falls[best] - fall <= _NOT_WORSE]
     scale = 1.0 if line.noise_scale is None else line.noise_scale**2
-    fit = fit_line(
-        x,
-        y,
-        cov_y * scale,
-        cov_x,
-        free_intercept=line.free_intercept,
-        hinge=float(reached[places[best]]),
-    )
+    try:
+        fit = fit_line(
+            x,
+            y,
+            cov_y * scale,
+            cov_x,
+            free_intercept=line.free_intercept,
+            hinge=float(reached[places[best]]),
+        )
+    except UpstrokeError:  # values so wild that no hinged line goes through them
+        return None
     return Bend(places[best], (min(near), max(near)), p_value, fit)
 
 

@@ -116,6 +116,12 @@ def _capacitance(
                 where=point.where,
                 remedy="give it above zero",
             )
+        if (point.value.u or 0.0) >= point.value.value:
+            raise UpstrokeError(
+                "the u of a capacitance is as large as its value",
+                where=point.where,
+                remedy="leave it out; its inverse says nothing",
+            )
         return point.value
     if isinstance(point.records[0].curve, Impedance):
         found = [capacitance_of_impedance(record, point.where) for record in point.records]

@@ -258,12 +258,12 @@ class _Problem:
         parameters = start
         for _ in range(_TURNS):
             slope = _local_slope(self.x, parameters, self.free_intercept, self.hinge)
-            weight = _inverse(self.cov_y + slope[:, None] * self.cov_x * slope[None, :])
             residuals = self.y - self.design @ parameters
             # where the true layers most likely lie, given line and point (York's adjusted points)
-            shift = self.cov_x @ (slope * (weight @ residuals)) if adjust else 0.0
-            at = _design(self.x + shift, self.free_intercept, self.hinge)
             try:
+                weight = _inverse(self.cov_y + slope[:, None] * self.cov_x * slope[None, :])
+                shift = self.cov_x @ (slope * (weight @ residuals)) if adjust else 0.0
+                at = _design(self.x + shift, self.free_intercept, self.hinge)
                 step = np.linalg.solve(at.T @ weight @ self.design, at.T @ weight @ residuals)
                 spread = np.sqrt(np.abs(np.diag(np.linalg.inv(at.T @ weight @ at))))
             except np.linalg.LinAlgError:

@@ -123,7 +123,7 @@ def implied_input(reading: Reading, line: KindLine, ledger: LedgerView) -> dict[
     ratio = line.ratio
     if ratio is None and line.line is not None:
         ratio = line.line.slope / line.expected_increment
-    if ratio is None or ratio <= 0:
+    if ratio is None or ratio <= max(line.u_ratio_values, 0.0):  # not told from zero
         return {}
     value = reading.inputs[name].value * ratio ** (1.0 / power)
     row = line.ledger_row - (1.0 / ledger.total.value if line.counts_layers else 0.0)

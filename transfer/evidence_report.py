@@ -175,7 +175,9 @@ def _scatter(line: KindLine) -> str:
     inner = weight - weight @ design @ np.linalg.solve(
         design.T @ weight @ design, design.T @ weight
     )
-    falls = (weight @ fit.residuals) ** 2 / np.maximum(np.diag(inner), 1e-300)
+    own = np.diag(inner)
+    testable = own > 1e-9 * np.diag(weight)  # a point that the line must pass through tells nothing
+    falls = np.where(testable, (weight @ fit.residuals) ** 2, 0.0) / np.where(testable, own, 1.0)
     worst = int(np.argmax(falls))
     from scipy.special import gammaincc
 

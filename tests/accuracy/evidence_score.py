@@ -112,11 +112,16 @@ def simulate(rng: np.random.Generator, fault: str) -> Sample:
         value = base + value
         relative = rng.uniform(0.02, 0.15) if kind != "bragg_spacing" else 0.005
         u = np.full(len(chosen), relative * abs(rise[kind]))
+        if kind == "interfacial_capacitance":  # bridges and potentiostats are good to so much of C
+            u = rng.uniform(0.005, 0.03) * np.abs(value)
         spread = u * (rng.uniform(5.0, 8.0) if kind == bad and fault == "scatter" else 1.0)
         value = value + rng.normal(0.0, spread)
         if kind == bad and fault == "outlier":
             at = int(rng.integers(len(chosen)))
-            value[at] += rng.choice((-1, 1)) * rng.uniform(8.0, 20.0) * u[at]
+            shift = rng.choice((-1, 1)) * rng.uniform(8.0, 20.0) * u[at]
+            # an inverse capacitance cannot be pushed to zero or below
+            turned = kind == "interfacial_capacitance" and value[at] + shift < 0.5 * value[at]
+            value[at] += abs(shift) if turned else shift
         for layers, v, s in zip(chosen, value, u, strict=True):
             rows.append(_row(kind, int(layers), float(v), float(s), electrode_text, roughness_text,
                              absorptivity_text, permittivity_text))  # fmt: skip

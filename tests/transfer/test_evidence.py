@@ -310,3 +310,36 @@ def test_figure_draws_the_result(tmp_path):
     bent = next(a for a, k in zip(axes, result.kinds, strict=False) if k.bend is not None)
     assert any("bends after stroke" in t.get_text() for t in bent.texts)
     assert figure_bytes(figure, "svg") == figure_bytes(draw_evidence(result), "svg")
+
+
+WILD = {
+    "one value in another unit": THICKNESS.replace("26.2", "1e5"),
+    "values that differ by 30 decades": THICKNESS.replace("6.2,0.2", "1e-9,1e-12").replace(
+        "26.2", "1e12"
+    ),
+    "value far below its u": "kind,layers,value,u,unit\nabsorbance,8,1e-300,0.001,1\n",
+    "two values at one number of layers": "kind,layers,value,u,unit\nxray_thickness,4,1e12,0.1,nm\n"
+    "xray_thickness,4,10,0.1,nm\n",
+    "blank only": "kind,layers,value,u,unit\nxray_thickness,0,1,0.1,nm\n",
+    "u of a capacitance as large as it": "kind,layers,value,u,unit\n"
+    "interfacial_capacitance,0,2,0.1,µF/cm^2\ninterfacial_capacitance,4,0.1,4,µF/cm^2\n",
+    "falling thickness": "kind,layers,value,u,unit\n"
+    + "".join(f"xray_thickness,{n},{40 - n},0.1,nm\n" for n in (2, 4, 8)),
+    "scan rate next to nothing": "kind,layers,file,scan_rate\nelectroactive_coverage,2,a.csv,1e-300 V/s\n",
+}
+
+
+@pytest.mark.parametrize("case", WILD)
+def test_wild_values_end_in_a_line_or_in_finite_numbers(tmp_path, case):
+    (tmp_path / "a.csv").write_text("potential (V),current (A)\n0,1\n1,1\n0,1\n", encoding="utf-8")
+    message, result = "", None
+    try:
+        result = result_of(tmp_path, WILD[case])
+    except UpstrokeError as error:
+        message = str(error)
+    if result is None:
+        assert "e.csv" in message
+        assert "\n" not in message
+    else:
+        json.dumps(result.to_json(), allow_nan=False)
+        draw_evidence(result)
