@@ -213,12 +213,12 @@ def whole_block(lines: Sequence[str], block: Block) -> Block:
     """
     first = block.first
     taken = 0
+    seen: dict[str, int] = {}
+    for number, line in enumerate(lines[:first] if block.earlier else ()):
+        seen.setdefault(line.strip(), number)
     for start, last in block.earlier:
-        gap = [line for line in lines[last + 1 : first] if line.strip()]
-        above = {line.strip() for line in lines[:start]}
-        if any(
-            line.strip() not in above and _heads(line, block.layout, block.columns) for line in gap
-        ):
+        gap = [line.strip() for line in lines[last + 1 : first] if line.strip()]
+        if any(seen[line] >= start and _heads(line, block.layout, block.columns) for line in gap):
             break
         first, taken = start, taken + 1
     return replace(block, first=first, earlier=block.earlier[taken:])

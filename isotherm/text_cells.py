@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import math
 import re
+from functools import lru_cache
 from typing import Final
 
 __all__ = ["MISSING", "cell_kind", "to_number"]
@@ -70,6 +71,7 @@ def to_number(cell: str, decimal: str) -> float | None:
     return None
 
 
+@lru_cache(maxsize=4096)  # several layouts look at the same cells
 def cell_kind(cell: str, decimal: str) -> str:
     """Tell a stripped cell's kind: N number (infinite too), E missing, C clock or date, T text."""
     number = to_number(cell, decimal)

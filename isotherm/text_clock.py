@@ -2,8 +2,10 @@
 
 from __future__ import annotations
 
+import datetime
 import re
 from collections.abc import Sequence
+from dataclasses import dataclass
 from typing import Final
 
 import numpy as np
@@ -13,6 +15,7 @@ from isotherm.errors import UpstrokeError
 
 __all__ = ["clock_seconds"]
 
+_Date = tuple[str, str, str]
 _DAY: Final = 86400.0  # s
 # A recorder's clock that falls by more than half a day has passed midnight; less is a row out of order.
 _MIDNIGHT: Final = _DAY / 2
@@ -47,38 +50,72 @@ def clock_seconds(cells: Sequence[str], *, where: str, form: str = "") -> NDArra
     UpstrokeError
         When the order of day and month, or of hours and minutes, cannot be told.
     """
-    matches = [_PARTS.fullmatch(cell.strip()) if cell else None for cell in cells]
-    groups = [m.groups() if m is not None else None for m in matches]
-    used = [g for g in groups if g is not None and (g[0] is not None or g[3] is not None)]
-    out = np.full(len(cells), np.nan)
-    if not used:
-        return out
-    dates = {(g[0], g[1], g[2]): 0.0 for g in used if g[0] is not None}
-    dates = _days(dates, where)
-    short = sum(g[3] is not None and g[5] is None for g in used)
-    if short and short < len(used):
+    count = len(cells)
+    hours, minutes, seconds = (np.full(count, np.nan) for _ in range(3))
+    shift = np.zeros(count)  # s, of the half of the day and the time zone
+    day = np.zeros(count, dtype=np.int64)
+    dates: dict[_Date, int] = {}
+    found = _Found()
+    for row, cell in enumerate(cells):
+        match = _PARTS.fullmatch(cell.strip()) if cell else None
+        if match is None or (match[1] is None and match[4] is None):
+            continue
+        if match[1] is not None:
+            date = (match[1], match[2], match[3])
+            day[row] = dates.setdefault(date, len(dates))
+        hours[row], minutes[row] = float(match[4] or 0), float(match[5] or 0)
+        seconds[row] = float((match[6] or match[7] or "0").replace(",", "."))
+        found.note(match)
+        if match[8] is not None:
+            noon = 12.0 if match[8] in "Pp" else 0.0
+            shift[row] = 3600.0 * (noon - (12.0 if hours[row] == 12.0 else 0.0))
+        if match[9] is not None:
+            zone = 3600.0 * abs(float(match[9])) + 60.0 * float(match[10] or 0)
+            shift[row] += zone if match[9].startswith("-") else -zone
+    if not found.times and not dates:
+        return np.full(count, np.nan)
+    if found.short and found.short < found.times:
         raise UpstrokeError(
             "some times have seconds and some have not", where=where, remedy="export the seconds"
         )
-    minutes_first = _minutes_first(used, form.casefold(), where) if short else False
-    for row, g in enumerate(groups):
-        if g is None or (g[0] is None and g[3] is None):
-            continue
-        out[row] = dates.get((g[0], g[1], g[2]), 0.0) * _DAY + _of_day(g, minutes_first)
-    if not dates:
-        _unroll(out)
+    if found.short and _minutes_first(found, hours, bool(dates), form.casefold(), where):
+        out = 60.0 * hours + minutes + seconds
+    else:
+        out = 3600.0 * hours + 60.0 * minutes + seconds
+    out += shift
+    if dates:
+        return np.asarray(out + _DAY * _days(list(dates), where)[day])
+    _unroll(out)
     return out
 
 
-def _minutes_first(used: Sequence[tuple[str | None, ...]], form: str, where: str) -> bool:
+@dataclass
+class _Found:
+    """What the cells have shown: times in all, times of two parts, decimals of two parts, halves of a day."""
+
+    times: int = 0
+    short: int = 0
+    decimals: bool = False
+    halves: bool = False
+
+    def note(self, match: re.Match[str]) -> None:
+        self.times += match[4] is not None
+        self.short += match[4] is not None and match[6] is None
+        self.decimals = self.decimals or match[7] is not None
+        self.halves = self.halves or match[8] is not None
+
+
+def _minutes_first(
+    found: _Found, first: NDArray[np.float64], dated: bool, form: str, where: str
+) -> bool:
     """Whether 12:30 is minutes and seconds."""
-    if any(g[6] is not None for g in used):
+    if found.decimals:
         return True  # 01:30.5: only seconds have decimals
     if form in ("mm:ss", "m:ss", "m:s", "min:s"):
         return True
-    if form in ("hh:mm", "h:mm", "h:m") or any(g[0] is not None or g[7] is not None for g in used):
+    if form in ("hh:mm", "h:mm", "h:m") or dated or found.halves:
         return False
-    if any(int(g[3] or 0) > 23 for g in used):
+    if np.nanmax(first) > 23.0:
         return True
     raise UpstrokeError(
         "times may be hours and minutes or minutes and seconds",
@@ -87,56 +124,32 @@ def _minutes_first(used: Sequence[tuple[str | None, ...]], form: str, where: str
     )
 
 
-def _of_day(g: tuple[str | None, ...], minutes_first: bool) -> float:
-    first, second = float(g[3] or 0), float(g[4] or 0)
-    if minutes_first and g[5] is None:
-        return 60.0 * first + second + float((g[6] or "0").replace(",", "."))
-    if g[7] is not None:
-        first = first % 12 + (12 if g[7] in "Pp" else 0)
-    seconds = 3600.0 * first + 60.0 * second + float((g[5] or "0").replace(",", "."))
-    if g[8] is not None:
-        sign = -1.0 if g[8].startswith("-") else 1.0
-        seconds -= sign * (3600.0 * abs(float(g[8])) + 60.0 * float(g[9] or 0))
-    return seconds
-
-
-def _days(
-    dates: dict[tuple[str | None, str | None, str | None], float], where: str
-) -> dict[tuple[str | None, str | None, str | None], float]:
+def _days(dates: Sequence[_Date], where: str) -> NDArray[np.float64]:
     """Number the days of the dates met, from the first; day and month are told apart by their values."""
-    if not dates:
-        return {}
-    found: list[dict[tuple[str | None, str | None, str | None], float]] = []
+    found: list[NDArray[np.float64]] = []
     for order in ("ymd", "dmy", "mdy"):
-        days = {}
-        for date in dates:
-            number = _ordinal(date, order)
-            if number is None:
-                break
-            days[date] = number
-        else:
-            start = min(days.values())
-            found.append({date: number - start for date, number in days.items()})
+        days = [_ordinal(date, order) for date in dates]
+        known = [one for one in days if one is not None]
+        if len(known) == len(days):
+            found.append(np.array(known) - min(known))
     if not found:
         raise UpstrokeError("a date that is none", where=where, remedy="write dates as 2031-05-06")
-    if any(other != found[0] for other in found[1:]):
-        # a run lasts days, not months: the reading with the shorter span, unless they tie
-        spans = [max(one.values()) for one in found]
-        if spans.count(min(spans)) > 1:
-            raise UpstrokeError(
-                "day and month cannot be told apart",
-                where=where,
-                remedy="write dates as 2031-05-06",
-            )
-        return found[spans.index(min(spans))]
-    return found[0]
+    # a run lasts days, not months: the reading with the shorter span
+    spans = [float(one.max()) for one in found]
+    shortest = found[spans.index(min(spans))]
+    if any(
+        span == min(spans) and np.any(one != shortest)
+        for span, one in zip(spans, found, strict=True)
+    ):
+        raise UpstrokeError(
+            "day and month cannot be told apart", where=where, remedy="write dates as 2031-05-06"
+        )
+    return shortest
 
 
-def _ordinal(date: tuple[str | None, str | None, str | None], order: str) -> float | None:
-    import datetime
-
+def _ordinal(date: _Date, order: str) -> float | None:
     parts = dict(zip(order, date, strict=True))
-    year, month, day = (parts[key] or "" for key in "ymd")
+    year, month, day = (parts[key] for key in "ymd")
     if len(year) not in (2, 4) or len(month) > 2 or len(day) > 2:
         return None
     number = int(year) + (2000 if len(year) == 2 else 0)

@@ -93,7 +93,15 @@ def row_kinds(line: str, layout: Layout) -> list[str] | None:
     cells = layout.split(line)
     if not 2 <= len(cells) <= _MOST_CELLS:
         return None
-    kinds = [cell_kind(cell, layout.decimal) for cell in cells]
+    kinds = []
+    texts = len(cells) // 2  # more cells of text than of anything else are no row
+    for cell in cells:
+        kind = cell_kind(cell, layout.decimal)
+        if kind == "T":
+            texts -= 1
+            if texts < 0:
+                return None
+        kinds.append(kind)
     return kinds if "N" in kinds else None
 
 

@@ -1,0 +1,157 @@
+"""Try the reader on random and mutated inputs and report anything that is neither a result nor a refusal.
+
+    python tests/fuzz_reader.py --inputs 1000000 --seed 1
+    python tests/fuzz_reader.py --minutes 60
+
+Each input is read as an export, as a trace and as a run sheet. With `--coverage` (where the package atheris
+is installed) inputs are chosen by the code they reach; without it they are random mutations of valid files.
+What is found is written beside the report, one file per finding, to become a test.
+"""
+
+from __future__ import annotations
+
+import argparse
+import collections
+import os
+import random
+import sys
+import tempfile
+import time
+import traceback
+import warnings
+from collections.abc import Callable
+from pathlib import Path
+
+sys.path[:0] = [
+    str(Path(__file__).resolve().parent / "support"),
+    str(Path(__file__).resolve().parent.parent),
+]
+
+from hostile_inputs import mutated, piled, seed_inputs  # noqa: E402
+
+from isotherm.errors import UpstrokeError  # noqa: E402
+from isotherm.sheet_read import parse_sheet  # noqa: E402
+from isotherm.table import read_table  # noqa: E402
+from isotherm.trace_read import read_trace  # noqa: E402
+
+_SHEET = parse_sheet(
+    '[film]\nmolar_mass = "300 g/mol"\nconcentration = "1 mg/mL"\nvolume = "50 µL"\n'
+    '[subphase]\ntemperature = "20 degC"\n[trough]\nwidth = "75 mm"\nlargest_area = "240 cm^2"\n'
+)
+_SLOW = 2.0  # s of processor time for one small input
+
+
+def _try(data: bytes, path: Path, outcomes: collections.Counter[str]) -> str:
+    """Read one input in every way; the traceback of what should not be, or ""."""
+    path.write_bytes(data)
+    readings: tuple[tuple[str, Callable[[], object]], ...] = (
+        ("table", lambda: read_table(path)),
+        ("trace", lambda: read_trace(path, _SHEET)),
+        ("sheet", lambda: parse_sheet(data.decode("utf-8", "replace"))),
+    )
+    for name, read in readings:
+        begin = time.process_time()
+        try:
+            read()
+            outcomes[f"{name} read"] += 1
+        except UpstrokeError as error:
+            outcomes[f"{name} refused"] += 1
+            if "\n" in str(error) or not str(error).strip():
+                return f"{name}: a refusal of several lines: {str(error)!r}"
+        except Exception:
+            return f"{name}: {traceback.format_exc()}"
+        if time.process_time() - begin > _SLOW:
+            return f"{name}: took {time.process_time() - begin:.1f} s"
+    return ""
+
+
+def _worker(
+    seed: int, inputs: int, seconds: float, folder: Path
+) -> tuple[int, dict[str, int], int]:
+    """Try `inputs` inputs or for `seconds`, whichever ends first."""
+    warnings.simplefilter("error")
+    rng = random.Random(seed)
+    seeds = seed_inputs()
+    outcomes: collections.Counter[str] = collections.Counter()
+    found = 0
+    end = time.monotonic() + seconds
+    with tempfile.TemporaryDirectory(
+        dir="/dev/shm" if os.path.isdir("/dev/shm") else None
+    ) as place:
+        path = Path(place) / "input"
+        for done in range(inputs):
+            if time.monotonic() > end:
+                return done, dict(outcomes), found
+            data = piled(rng) if rng.random() < 0.25 else mutated(rng, seeds)
+            problem = _try(data, path, outcomes)
+            if problem:
+                found += 1
+                name = folder / f"finding-{seed}-{done}"
+                name.with_suffix(".bin").write_bytes(data)
+                name.with_suffix(".txt").write_text(problem, encoding="utf-8")
+                if found >= 50:
+                    return done + 1, dict(outcomes), found
+    return inputs, dict(outcomes), found
+
+
+def _by_coverage(folder: Path) -> None:
+    """Hand the reader to atheris, which picks inputs by the code they reach."""
+    import atheris
+
+    path = Path(tempfile.mkdtemp()) / "input"
+    outcomes: collections.Counter[str] = collections.Counter()
+
+    def one(data: bytes) -> None:
+        problem = _try(data, path, outcomes)
+        if problem:
+            (folder / f"finding-{abs(hash(data))}.bin").write_bytes(data)
+            raise RuntimeError(problem)
+
+    atheris.instrument_all()
+    atheris.Setup([sys.argv[0], f"-artifact_prefix={folder}/"], one)
+    atheris.Fuzz()
+
+
+def main() -> int:
+    """Run from the command line; exit 1 when anything was found."""
+    parser = argparse.ArgumentParser(description=__doc__)
+    parser.add_argument("--inputs", type=int, default=20_000)
+    parser.add_argument("--minutes", type=float, default=1e9)
+    parser.add_argument("--seed", type=int, default=1)
+    parser.add_argument("--jobs", type=int, default=1)
+    parser.add_argument(
+        "--findings", type=Path, default=Path(tempfile.gettempdir()) / "reader-findings"
+    )
+    parser.add_argument("--coverage", action="store_true")
+    options = parser.parse_args()
+    options.findings.mkdir(parents=True, exist_ok=True)
+    if options.coverage:
+        _by_coverage(options.findings)
+        return 0
+    begin = time.monotonic()
+    share = -(-options.inputs // options.jobs)
+    tasks = [
+        (options.seed * 1000 + job, share, options.minutes * 60.0, options.findings)
+        for job in range(options.jobs)
+    ]
+    if options.jobs == 1:
+        results = [_worker(*tasks[0])]
+    else:
+        from concurrent.futures import ProcessPoolExecutor
+
+        with ProcessPoolExecutor(options.jobs) as pool:
+            results = list(pool.map(_worker, *zip(*tasks, strict=True)))
+    tried = sum(result[0] for result in results)
+    found = sum(result[2] for result in results)
+    outcomes: collections.Counter[str] = collections.Counter()
+    for result in results:
+        outcomes.update(result[1])
+    print(f"{tried} inputs in {time.monotonic() - begin:.0f} s, each read three ways")
+    for name, count in sorted(outcomes.items()):
+        print(f"  {name:14s} {count}")
+    print(f"findings: {found}" + (f", in {options.findings}" if found else ""))
+    return 1 if found else 0
+
+
+if __name__ == "__main__":
+    sys.exit(main())
