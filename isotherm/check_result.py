@@ -1,1 +1,208 @@
-"""stub"""
+"""What a check before spreading found, as frozen data that reads and writes its JSON form."""
+
+from __future__ import annotations
+
+import json
+import math
+from dataclasses import dataclass, field
+from pathlib import Path
+from typing import Any
+
+import numpy as np
+from numpy.typing import NDArray
+
+from isotherm.errors import UpstrokeError
+from isotherm.quantity import Quantity
+from isotherm.source import Source
+
+__all__ = ["CheckCurve", "CheckItem", "CheckResult", "load_check", "verdict_of"]
+
+FloatArray = NDArray[np.float64]
+
+_SCHEMA = "upstroke.check/1"
+
+
+def verdict_of(quantity: Quantity, limit: float) -> str:
+    """Judge |value| against a limit with its expanded uncertainty U = 2 u.
+
+    "pass" when |value| + U is within the limit, "fail" when |value| - U is beyond it, else "undecided"
+    (guard bands as in JCGM 106:2012, sec. 8.3). Without u only the value counts, and "pass" is not given.
+    """
+    size = abs(quantity.value)
+    if quantity.u is None:
+        return "fail" if size > limit else "undecided"
+    if size + 2.0 * quantity.u <= limit:
+        return "pass"
+    return "fail" if size - 2.0 * quantity.u > limit else "undecided"
+
+
+@dataclass(frozen=True)
+class CheckItem:
+    """One thing checked.
+
+    name : what.  value : found.  limit : largest |value| allowed, unit of the value; None: nothing to pass.
+    limit_from : "run sheet" | "common practice" | "".  verdict : "pass" | "fail" | "undecided" | "".
+    note : where or how, one sentence.  record : path of the record, or "run sheet".
+    """
+
+    name: str
+    value: Quantity
+    limit: float | None
+    limit_from: str
+    verdict: str
+    note: str = ""
+    record: str = ""
+
+    def to_json(self) -> dict[str, Any]:
+        """Return the JSON form."""
+        return {
+            "name": self.name,
+            "value": self.value.to_json(),
+            "limit": self.limit,
+            "limit_from": self.limit_from,
+            "verdict": self.verdict,
+            "note": self.note,
+            "record": self.record,
+        }
+
+
+@dataclass(frozen=True)
+class CheckCurve:
+    """One record in compact form, for the figure.
+
+    time : (m,) s from its start (row number where no time was recorded).  area : (m,) `area_unit`, or None.
+    pressure, fitted : (m,) mN/m.  hinge : area at which the pressure starts to rise, or None.
+    """
+
+    record: str
+    time: FloatArray
+    area: FloatArray | None
+    area_unit: str
+    pressure: FloatArray
+    fitted: FloatArray
+    hinge: Quantity | None = None
+    timed: bool = True
+
+
+@dataclass(frozen=True)
+class CheckResult:
+    """Everything checked before spreading.
+
+    zero_offset : pressure the clean surface reads, mN/m.  drift_rate : mN/m/h.  Both None where not found.
+    path : file the result was loaded from, "" for a fresh one.
+    """
+
+    items: tuple[CheckItem, ...]
+    zero_offset: Quantity | None = None
+    drift_rate: Quantity | None = None
+    sources: tuple[Source, ...] = ()
+    curves: tuple[CheckCurve, ...] = ()
+    title: str = ""
+    warnings: tuple[str, ...] = field(default=())
+    path: str = ""
+
+    @property
+    def verdict(self) -> str:
+        """Worst verdict of all items: "fail", else "undecided", else "pass"."""
+        found = {item.verdict for item in self.items}
+        return next((v for v in ("fail", "undecided", "pass") if v in found), "undecided")
+
+    def to_json(self) -> dict[str, Any]:
+        """Return the JSON form, schema upstroke.check/1."""
+        return {
+            "schema": _SCHEMA,
+            "title": self.title,
+            "sources": [source.to_json() for source in self.sources],
+            "verdict": self.verdict,
+            "items": [item.to_json() for item in self.items],
+            "zero_offset": self.zero_offset.to_json() if self.zero_offset else None,
+            "drift_rate": self.drift_rate.to_json() if self.drift_rate else None,
+            "warnings": list(self.warnings),
+        }
+
+
+def _quantity(given: Any, key: str, unit: str, where: str) -> Quantity | None:
+    """Quantity from its JSON form; None stays None."""
+    if given is None:
+        return None
+    try:
+        value, u = given["value"], given.get("u")
+        numbers = [float(value)] + ([float(u)] if u is not None else [])
+    except (KeyError, TypeError, ValueError, AttributeError):
+        numbers = [math.nan]
+        value, u = None, None
+    good = all(math.isfinite(n) for n in numbers) and (u is None or float(u) >= 0)
+    if not good or given.get("unit") != unit:
+        raise UpstrokeError(
+            f"'{key}' is not a quantity in {unit}",
+            where=where,
+            remedy="give the file that `upstroke check --json` wrote",
+        )
+    return Quantity(
+        float(value),
+        None if u is None else float(u),
+        unit,
+        given.get("u_random"),
+        given.get("u_systematic"),
+    )
+
+
+def load_check(path: str | Path) -> CheckResult:
+    """Read the JSON that a check wrote, for another analysis to use.
+
+    Parameters
+    ----------
+    path : str or Path
+        File with schema upstroke.check/1.
+
+    Returns
+    -------
+    CheckResult
+        Items, zero and drift; the records' curves are not kept in the file.
+
+    Raises
+    ------
+    UpstrokeError
+        When the file cannot be read or is not such a result.
+    """
+    where = str(path)
+    try:
+        text = Path(path).read_text(encoding="utf-8")
+    except (OSError, UnicodeDecodeError) as error:
+        reason = error.strerror if isinstance(error, OSError) and error.strerror else "not text"
+        raise UpstrokeError(
+            f"cannot read the check: {reason}", where=where, remedy="check the path"
+        ) from None
+    try:
+        data = json.loads(text)
+    except (ValueError, RecursionError):
+        data = None
+    if not isinstance(data, dict) or data.get("schema") != _SCHEMA:
+        raise UpstrokeError(
+            "not the result of a check",
+            where=where,
+            remedy="give the file that `upstroke check --json` wrote",
+        )
+    items = []
+    for number, given in enumerate(data.get("items") or [], start=1):
+        unit = given["value"].get("unit", "1") if isinstance(given.get("value"), dict) else "1"
+        value = _quantity(given.get("value"), f"items[{number}].value", unit, where)
+        items.append(
+            CheckItem(
+                name=str(given.get("name", "")),
+                value=value if value is not None else Quantity(math.nan, None, unit),
+                limit=given.get("limit"),
+                limit_from=str(given.get("limit_from", "")),
+                verdict=str(given.get("verdict", "")),
+                note=str(given.get("note", "")),
+                record=str(given.get("record", "")),
+            )
+        )
+    return CheckResult(
+        items=tuple(items),
+        zero_offset=_quantity(data.get("zero_offset"), "zero_offset", "mN/m", where),
+        drift_rate=_quantity(data.get("drift_rate"), "drift_rate", "mN/m/h", where),
+        title=str(data.get("title", "")),
+        warnings=tuple(str(w) for w in data.get("warnings") or []),
+        path=where,
+    )

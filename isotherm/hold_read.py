@@ -14,12 +14,15 @@ from isotherm.hold_segments import Stretch, find_stretches
 from isotherm.sheet import RunSheet
 from isotherm.source import Source
 from isotherm.table import Table, read_table
+from isotherm.trace_area import trough_area
+from isotherm.trace_order import time_order
 from isotherm.water import surface_tension
 
 __all__ = ["HoldRecord", "hold_record", "read_hold", "surface_pressure"]
 
 FloatArray = NDArray[np.float64]
 
+_NEEDS = ("time", "area|molecular_area|barrier_position", "pressure|tension")
 _FEWEST_ROWS = 60  # a dozen blocks of a few rows: fewer cannot tell the laws apart
 
 
@@ -88,22 +91,13 @@ def surface_pressure(table: Table, sheet: RunSheet) -> tuple[FloatArray, tuple[s
     return clean - tension, (note,)
 
 
-def _area(table: Table, sheet: RunSheet) -> tuple[FloatArray, str]:
-    """Area column and its unit; a barrier position becomes an area where the sheet gives the width."""
+def _area(table: Table, sheet: RunSheet, warnings: list[str]) -> tuple[FloatArray, str]:
+    """Area column and its unit: trough area where there is one, else area per molecule."""
     if "area" in table.values:
         return table.values["area"], "cm^2"
     if "molecular_area" in table.values:
         return table.values["molecular_area"], "nm^2"
-    if "barrier_position" in table.values and sheet.trough.width is not None:
-        position = table.values["barrier_position"]
-        gap = position if position.ndim == 1 else np.abs(position[:, 0] - position[:, 1])
-        return gap * sheet.trough.width.value / 100.0, "cm^2"  # mm x mm -> cm^2
-    raise UpstrokeError(
-        "no column of area",
-        where=table.source.path,
-        remedy='name it in the sheet\'s [[columns]] (role = "area"), or give [trough] width where the '
-        "record has barrier positions",
-    )
+    return trough_area(table, sheet.trough, warnings), "cm^2"
 
 
 def hold_record(table: Table, sheet: RunSheet) -> HoldRecord:
@@ -126,25 +120,31 @@ def hold_record(table: Table, sheet: RunSheet) -> HoldRecord:
         When a column is missing, or the record holds nothing.
     """
     where = table.source.path
-    if "time" not in table.values:
-        raise UpstrokeError(
-            "film stability needs a column of time",
-            where=where,
-            remedy='name it in the sheet\'s [[columns]] (role = "time")',
-        )
+    for wanted in _NEEDS:
+        if not any(role in table.values for role in wanted.split("|")):
+            raise UpstrokeError(
+                f"no column of {wanted.replace('|', ' or ').replace('_', ' ')}",
+                where=where,
+                remedy=f'name it in the sheet\'s [[columns]] (role = "{wanted.split("|")[0]}")',
+            )
+    warnings = list(table.warnings)
     pressure, notes = surface_pressure(table, sheet)
-    area, unit = _area(table, sheet)
+    area, unit = _area(table, sheet, warnings)
     time = table.values["time"]
-    warnings = [*table.warnings, *notes]
+    warnings += notes
     kept = np.isfinite(time) & np.isfinite(area) & np.isfinite(pressure)
     if not kept.all():
         warnings.append(f"{int((~kept).sum())} rows with a missing cell left out")
         time, area, pressure = time[kept], area[kept], pressure[kept]
-    if time.size and np.any(np.diff(time) <= 0):
-        order = np.argsort(time, kind="stable")
-        time, area, pressure = time[order], area[order], pressure[order]
-        fresh = np.concatenate([[True], np.diff(time) > 0])
-        warnings.append("time runs back or stands still; rows sorted, repeated times left out")
+    sorting = time_order(time)
+    if sorting.warning:
+        warnings.append(sorting.warning)
+    if sorting.order is not None:
+        area, pressure = area[sorting.order], pressure[sorting.order]
+    time = sorting.time
+    fresh = np.concatenate([[True], np.diff(time) > 0]) if time.size else np.ones(0, dtype=bool)
+    if not fresh.all():
+        warnings.append(f"{int((~fresh).sum())} rows whose time repeats the row before left out")
         time, area, pressure = time[fresh], area[fresh], pressure[fresh]
     if time.size < _FEWEST_ROWS:
         raise UpstrokeError(
@@ -184,4 +184,4 @@ def read_hold(path: str | Path, sheet: RunSheet | None = None) -> HoldRecord:
         When the file cannot be read, a column is missing, or it holds nothing.
     """
     known = sheet if sheet is not None else RunSheet()
-    return hold_record(read_table(path, known, needs=("time", "pressure")), known)
+    return hold_record(read_table(path, known, needs=_NEEDS), known)

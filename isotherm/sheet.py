@@ -7,6 +7,7 @@ from dataclasses import dataclass, field
 from isotherm.quantity import Quantity
 
 __all__ = [
+    "Check",
     "ColumnHint",
     "Component",
     "Dipping",
@@ -152,6 +153,30 @@ class Target:
 
 
 @dataclass(frozen=True)
+class Check:
+    """What is known and allowed before spreading. None: common practice, or the check is left out.
+
+    pressure_rise, drift_per_hour, zero, tension_tolerance : largest allowed, mN/m. force : pull on the
+    plate, mN; perimeter : wetted, mm; contact_angle : degrees. low_*, high_* : probe's reading and the
+    known value at two calibration points, mN/m. gain_tolerance, linearity_tolerance : largest allowed, 1.
+    """
+
+    pressure_rise: Quantity | None = None
+    zero: Quantity | None = None
+    drift_per_hour: Quantity | None = None
+    tension_tolerance: Quantity | None = None
+    force: Quantity | None = None
+    perimeter: Quantity | None = None
+    contact_angle: Quantity | None = None
+    low_reading: Quantity | None = None
+    low_true: Quantity | None = None
+    high_reading: Quantity | None = None
+    high_true: Quantity | None = None
+    gain_tolerance: Quantity | None = None
+    linearity_tolerance: Quantity | None = None
+
+
+@dataclass(frozen=True)
 class ColumnHint:
     """The user's word on one column of the export: by header or by index (first column is 1)."""
 
@@ -175,3 +200,4 @@ class RunSheet:
     target: Target = field(default_factory=Target)
     columns: tuple[ColumnHint, ...] = ()
     path: str = ""
+    check: Check = field(default_factory=Check)

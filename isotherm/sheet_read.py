@@ -12,6 +12,7 @@ from typing import Any, Final
 from isotherm.errors import UpstrokeError
 from isotherm.quantity import Quantity
 from isotherm.sheet import (
+    Check,
     ColumnHint,
     Component,
     Dipping,
@@ -94,6 +95,7 @@ def parse_sheet(text: str, path: str = "") -> RunSheet:
         target=Target(**values.get("target", {})),
         columns=_columns(values.get("columns", ()), place),
         path=path,
+        check=Check(**values.get("check", {})),
     )
 
 

@@ -71,6 +71,14 @@ def _positive(
     )
 
 
+def _allowed(name: str, meaning: str, example: str) -> Key:
+    return _positive(name, "pressure", f"largest allowed, {meaning}", example, high=100.0)
+
+
+def _reading(name: str, meaning: str, example: str) -> Key:
+    return Key(name, "quantity", meaning, f'"{example}"', "pressure", -1000.0, 1000.0)
+
+
 def _text(name: str, meaning: str, example: str, *, required: bool = False) -> Key:
     return Key(name, "text", meaning, f'"{example}"', required=required)
 
@@ -401,6 +409,31 @@ SECTIONS: Final[tuple[Section, ...]] = (
             ),
             Key("renewals", "integer", "how often the film may be renewed", "0", low=0, high=1e6),
         ),
+    ),
+    Section(
+        "check",
+        "Before a film is spread: what is allowed, and what was read on plate and probe.",
+        (
+            _allowed("pressure_rise", "of the bare surface as it is closed", "0.2 mN/m"),
+            _allowed("zero", "reading of the clean surface", "1 mN/m"),
+            _allowed("drift_per_hour", "of the probe in one hour", "0.5 mN/m"),
+            _allowed("tension_tolerance", "clean subphase against pure water", "0.5 mN/m"),
+            _positive("force", "mN", "pull of the clean subphase on the plate", "2.93 ± 0.01 mN"),
+            _positive("perimeter", "length", "wetted, of the plate", "40.2 ± 0.1 mm", high=1e5),
+            Key("contact_angle", "quantity", "degrees", '"0 ± 3"', "fraction", 0.0, 89.9),
+            _reading("low_reading", "probe at a first known point", "0.02 mN/m"),
+            _reading("low_true", "what it should read there", "0 mN/m"),
+            _reading("high_reading", "probe at a second known point", "72.4 ± 0.1 mN/m"),
+            _reading("high_true", "what it should read there", "72.7 ± 0.1 mN/m"),
+            _positive("gain_tolerance", "fraction", "of the probe's scale", "1 %", high=1.0),
+            _positive(
+                "linearity_tolerance",
+                "fraction",
+                "area against barriers, of its range",
+                "0.5 %",
+                high=1.0,
+            ),
+        ),  # fmt: skip
     ),
     Section(
         "columns",

@@ -210,7 +210,7 @@ def test_every_key_fills_a_field_and_every_field_has_a_key() -> None:
         "trough": sheet_types.Trough, "substrate": sheet_types.Substrate,
         "substrate.profile": sheet_types.ProfilePoint, "dipping": sheet_types.Dipping,
         "stack": sheet_types.Stack, "stack.film": sheet_types.StackFilm, "target": sheet_types.Target,
-        "columns": sheet_types.ColumnHint,
+        "check": sheet_types.Check, "columns": sheet_types.ColumnHint,
     }  # fmt: skip
     # made from the other keys, or the name of a child table
     derived = {"components", "accept_given", "films", "profile"}
