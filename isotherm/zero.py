@@ -89,7 +89,8 @@ def find_zero(nodes: Nodes, end: float | None, film_from: float | None = None) -
         (abs(slope) if trending else min(u_slope, LARGEST_TREND / length)) * rest / np.sqrt(3.0)
     )
     unseen = min(unseen, LARGEST_TREND)
-    if abs(trend) > max(LARGEST_TREND, SIGMAS * u_trend):
+    film = trending and _bends(row - centre, residual, w, scale)
+    if film or abs(trend) > max(LARGEST_TREND, SIGMAS * u_trend):
         return Zero(
             none,
             (
@@ -113,3 +114,26 @@ def find_zero(nodes: Nodes, end: float | None, film_from: float | None = None) -
         (),
         float(nodes.count[inside].sum()),
     )
+
+
+def _bends(t: FloatArray, residual: FloatArray, w: FloatArray, scale: float) -> bool:
+    """Whether a trend steepens: a probe drifts in a straight line, a gas resists ever more.
+
+    Parameters
+    ----------
+    t : (m,) rows from their weighted mean. residual : (m,) about the straight line, mN/m. w : weights.
+    scale : the line's reduced χ².
+    """
+    if t.size < 6:
+        return False
+    bend = t**2
+    basis = np.stack([np.ones_like(t), t], axis=1)
+    projection = np.linalg.solve(basis.T @ (w[:, None] * basis), basis.T @ (w * bend))
+    bend = bend - basis @ projection
+    size = float((w * bend**2).sum())
+    if size <= 0:
+        return False
+    curve = float((w * bend * residual).sum()) / size
+    left = residual - curve * bend
+    scale = max(1.0, min(scale, float((w * left**2).sum()) / max(t.size - 3, 1)))
+    return curve > SIGMAS * float(np.sqrt(scale / size))
