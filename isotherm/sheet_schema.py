@@ -433,7 +433,7 @@ SECTIONS: Final[tuple[Section, ...]] = (
                 "0.5 %",
                 high=1.0,
             ),
-        ),  # fmt: skip
+        ),
     ),
     Section(
         "columns",
