@@ -70,6 +70,7 @@ def analyse_log(
         log.area,
         log.pressure,
         target=target,
+        tolerance=sheet.dipping.tolerance.value if sheet.dipping.tolerance is not None else 0.0,
         moves=tuple((m.first, m.last) for m in motion.moves),
     )
     if not held.holds:

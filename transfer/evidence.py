@@ -175,13 +175,7 @@ def _bend_together(
     lines: Sequence[KindLine], crooked: Sequence[str], level: float
 ) -> tuple[str, ...]:
     """Kinds that bend after the same layers while most kinds do: the ledger then is what is wrong."""
-    bent = [
-        line
-        for line in lines
-        if line.reading.label in crooked
-        and line.bend is not None
-        and line.bend.p_value < level / 2.0
-    ]
+    bent = [line for line in lines if line.reading.label in crooked and line.bends(level / 2.0)]
     able = [line for line in lines if line.bend is not None]
     if len(bent) < 2 or 2 * len(bent) <= len(able):
         return ()

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import math
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 
 import numpy as np
 from numpy.typing import NDArray
@@ -47,6 +47,10 @@ class KindLine:
         Relative change of the layers implied per relative change of an input.
     counts_layers : bool
         False for a kind that tests an input (Bragg spacing).
+    last_index : int
+        Strokes made before the last measurement.
+    worst, worst_fall : int, float
+        The point whose absence would lower χ² most, and by how much.
     """
 
     reading: Reading
@@ -62,6 +66,14 @@ class KindLine:
     powers: dict[str, float] = field(default_factory=dict)
     counts_layers: bool = True
     last_index: int = 0
+    worst: int = 0
+    worst_fall: float = 0.0
+
+    def bends(self, below: float) -> bool:
+        """Whether the line bends: likelier than chance allows, and no single point explains it better."""
+        if self.bend is None or self.line is None or not self.bend.p_value < below:
+            return False
+        return self.line.chi_square - self.bend.fit.chi_square >= self.worst_fall
 
     def shape_p(self) -> float:
         """Smallest probability of the tests of shape (bend, scatter), each taken twice."""
@@ -113,12 +125,25 @@ def fit_reading(reading: Reading, ledger: LedgerView, *, bend_below: float) -> K
             f"{reading.label}: {error.what}", where=reading.where[0], remedy=error.remedy
         ) from None
     bend = find_bend(x, reading.y, cov_y, cov_x, line, cumulative)
-    followed = bend.fit if bend is not None and bend.p_value < bend_below else line
+    worst, worst_fall = _worst_point(line, x)
+    draft = KindLine(
+        reading=reading,
+        x=x,
+        u_x=np.sqrt(np.diag(cov_x)),
+        line=line,
+        bend=bend,
+        lack_of_fit=lack_of_fit(line),
+        expected_increment=expected,
+        ratio=None,
+        u_ratio_values=math.nan,
+        ledger_row=np.zeros(len(ledger.added)),
+        worst=worst,
+        worst_fall=worst_fall,
+    )
+    followed = bend.fit if bend is not None and draft.bends(bend_below) else line
     last = int(np.max(reading.index))
     reach = float(cumulative[last])
-    ratio = None
-    u_values = math.nan
-    ledger_row = np.zeros(len(ledger.added))
+    ratio, u_values, ledger_row = draft.ratio, draft.u_ratio_values, draft.ledger_row
     if expected is not None and reach > 0:
         lever = followed.rise_row(reach) @ followed.operator
         rise = float(followed.rise_row(reach) @ followed.parameters)
@@ -130,20 +155,27 @@ def fit_reading(reading: Reading, ledger: LedgerView, *, bend_below: float) -> K
         relative = followed.local_slope * reach / rise if rise else np.ones(len(x))
         total = ledger.total.value
         ledger_row = 1.0 / total - (lever * relative) @ rows / reach
-    return KindLine(
-        reading=reading,
-        x=x,
-        u_x=np.sqrt(np.diag(cov_x)),
-        line=line,
-        bend=bend,
-        lack_of_fit=lack_of_fit(line),
-        expected_increment=expected,
+    return replace(
+        draft,
         ratio=None if reading.unknown else ratio,
         u_ratio_values=u_values,
         ledger_row=ledger_row,
         powers=_powers(reading, ledger, last) if expected is not None else {},
         last_index=last,
     )
+
+
+def _worst_point(line: LineFit, x: FloatArray) -> tuple[int, float]:
+    """Index of the point whose absence would lower χ² most, and the fall (0 where none can)."""
+    design, weight = line.design(x), line.weight
+    inner = weight - weight @ design @ np.linalg.solve(
+        design.T @ weight @ design, design.T @ weight
+    )
+    own = np.diag(inner)
+    testable = own > 1e-9 * np.diag(weight)  # a point the line must pass through tells nothing
+    falls = np.where(testable, (weight @ line.residuals) ** 2, 0.0) / np.where(testable, own, 1.0)
+    worst = int(np.argmax(falls))
+    return worst, float(falls[worst])
 
 
 def _spacing(reading: Reading, ledger: LedgerView) -> KindLine:

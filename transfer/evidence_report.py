@@ -98,7 +98,7 @@ def kind_result(
 
 def _bend(line: KindLine, ledger: LedgerView, below: float) -> BendResult | None:
     found = line.bend
-    if found is None or not found.p_value < below:
+    if found is None or not line.bends(below):
         return None
     fit = found.fit
     first = fit.slope_index
@@ -170,21 +170,14 @@ def _scatter(line: KindLine) -> str:
     fit = line.line
     if fit is None:
         return "its values scatter more than their u allows"
-    design = fit.design(line.x)
-    weight = fit.weight
-    inner = weight - weight @ design @ np.linalg.solve(
-        design.T @ weight @ design, design.T @ weight
-    )
-    own = np.diag(inner)
-    testable = own > 1e-9 * np.diag(weight)  # a point that the line must pass through tells nothing
-    falls = np.where(testable, (weight @ fit.residuals) ** 2, 0.0) / np.where(testable, own, 1.0)
-    worst = int(np.argmax(falls))
     from scipy.special import gammaincc
 
     if fit.dof > 1:
-        rest = float(gammaincc((fit.dof - 1) / 2.0, max(fit.chi_square - falls[worst], 0.0) / 2.0))
+        rest = float(
+            gammaincc((fit.dof - 1) / 2.0, max(fit.chi_square - line.worst_fall, 0.0) / 2.0)
+        )
         if rest > 0.05:
-            return f"the value at {line.x[worst]:.3g} layers lies off its line"
+            return f"the value at {line.x[line.worst]:.3g} layers lies off its line"
     return "its values scatter about the line more than their u allows"
 
 

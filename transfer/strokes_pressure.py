@@ -13,13 +13,17 @@ __all__ = ["Hold", "Interruption", "Pressure", "find_holds"]
 FloatArray = NDArray[np.float64]
 
 # Narrowest band around the set point that counts as held, mN/m. A controller in order keeps within a few
-# tenths (practice); the correction through the film's modulus is linear only near the set point.
-_BAND = 1.0
+# tenths (practice), and set points are changed by more than that.
+_BAND = 0.5
+# The sheet's tolerance widens it: what the user allows is held.
+_BAND_TOLERANCE = 1.5
 # Scatter of the held pressure may widen it.
 _BAND_SCATTER = 5.0
-# A dip that comes back (the controller lagging behind a fast stroke) does not end the hold, up to this
-# part of the pressure; deeper ones are a lost film.
+# A dip that comes with a move (the controller lagging behind a fast stroke) does not end the hold, up to
+# this part of the pressure; deeper ones, or ones that last while the dipper rests, are a lost film.
 _DIP_PART = 0.2
+_SETTLING_SECONDS = 20.0
+_REST_OFF_SECONDS = 20.0
 # A plateau is one that keeps this many seconds and rows and this part of the log.
 _PLATEAU_SECONDS = 20.0
 _PLATEAU_ROWS = 5
@@ -35,7 +39,7 @@ _GLITCH_ROWS = 2
 # A hold begins and ends where the pressure is within this part of the band: on a ramp, that is near its end.
 _EDGE = 0.5
 # Between its first and last third a ramp through the band climbs by 4/3 of the band (2/3 of its width).
-_CLIMB = 0.9
+_CLIMB = 1.1
 
 
 @dataclass(frozen=True)
@@ -76,6 +80,7 @@ def find_holds(
     pressure: FloatArray,
     *,
     target: float | None,
+    tolerance: float = 0.0,
     moves: tuple[tuple[int, int], ...] = (),
 ) -> Pressure:
     """Find the stretches in which the film was held at a set point.
@@ -85,6 +90,8 @@ def find_holds(
     time, area, pressure : (n,) s, cm^2, mN/m.
     target : float or None
         The sheet's dipping pressure, mN/m; tried first as a set point.
+    tolerance : float
+        What the sheet allows about it, mN/m.
     moves : tuple of (first row, last row)
         Where the dipper moved: a second set point counts only when something was dipped at it.
 
@@ -95,13 +102,13 @@ def find_holds(
     interval = float(np.median(np.diff(time)))
     need = max(_PLATEAU_ROWS, int(_PLATEAU_SECONDS / interval))
     smooth = _median3(pressure)
-    center = _mode(smooth, 2.0 * _BAND)
-    if target is not None and np.mean(np.abs(smooth - target) <= _BAND) > 0.2:
+    center = _mode(smooth, 4.0 * _BAND)
+    if target is not None and np.mean(np.abs(smooth - target) <= 2.0 * _BAND) > 0.2:
         center = target
-    near = smooth[np.abs(smooth - center) <= 3.0 * _BAND]
+    near = smooth[np.abs(smooth - center) <= 6.0 * _BAND]
     middle = float(np.median(near)) if near.size else center
     scatter = 1.4826 * float(np.median(np.abs(near - middle))) if near.size else 0.0
-    band = max(_BAND, _BAND_SCATTER * scatter)
+    band = max(_BAND, _BAND_SCATTER * scatter, _BAND_TOLERANCE * tolerance)
 
     label = np.full(time.size, -1, dtype=np.intp)
     free = np.ones(time.size, dtype=bool)
@@ -124,24 +131,24 @@ def find_holds(
         free &= ~inside
         settings.append(at)
     label = _bridge_glitches(label)
+    stretches = _stretches(time, label, smooth, area, settings, moves, band)
+    main = [first for first, _, which in stretches if which == 0]
     holds = [
         (first, last, which)
-        for first, last, which in _stretches(label, smooth, area, band)
+        for first, last, which in stretches
         if which == 0
         or (
             settings[which] > _SECOND_PART * settings[0]
             and any(a >= first and b <= last for a, b in moves)
+            # a set point left and come back to was changed for something else than dipping
+            and not (main and min(main) < first < max(main))
         )
     ]
-    kept = np.zeros(time.size, dtype=bool)
-    for first, last, _ in holds:
-        kept[first : last + 1] = True
-    label[~kept] = -1
     steady = np.zeros(time.size, dtype=bool)
     out: list[Hold] = []
-    for first, last, _ in holds:
+    for first, last, which in holds:
         rows = slice(first, last + 1)
-        inside = label[rows] >= 0
+        inside = label[rows] == which
         value = float(np.median(pressure[rows][inside]))
         spread = 1.4826 * float(np.median(np.abs(smooth[rows][inside] - value)))
         limit = max(_EDGE * band, 4.0 * spread)
@@ -152,7 +159,7 @@ def find_holds(
         trim = 3 if last - first > 20 else 0
         first += trim if first > 0 else 0
         last -= trim if last < time.size - 1 else 0
-        steady[first : last + 1] = label[first : last + 1] >= 0
+        steady[first : last + 1] = label[first : last + 1] == which
         out.append(Hold(first, last, value, spread))
     return Pressure(tuple(out), _interruptions(out, area, smooth, band), steady, band)
 
@@ -191,28 +198,60 @@ def _bridge_glitches(label: NDArray[np.intp]) -> NDArray[np.intp]:
     return out
 
 
+def _still(time: FloatArray, moves: tuple[tuple[int, int], ...]) -> NDArray[np.bool_]:
+    """Rows at which the dipper rests and the controller has had time to settle."""
+    moving = np.zeros(time.size + 1)
+    for first, last in moves:
+        until = int(np.searchsorted(time, time[last] + _SETTLING_SECONDS))
+        moving[first] += 1.0
+        moving[until] -= 1.0
+    return np.asarray(np.cumsum(moving)[:-1] <= 0.0)
+
+
 def _stretches(
-    label: NDArray[np.intp], pressure: FloatArray, area: FloatArray, band: float
+    time: FloatArray,
+    label: NDArray[np.intp],
+    pressure: FloatArray,
+    area: FloatArray,
+    settings: list[float],
+    moves: tuple[tuple[int, int], ...],
+    band: float,
 ) -> list[tuple[int, int, int]]:
-    """Join held runs at one set point across shallow dips; (first row, last row, set point)."""
-    change = np.flatnonzero(np.diff(label) != 0) + 1
-    starts = np.concatenate([[0], change])
-    ends = np.concatenate([change, [label.size]]) - 1
+    """Join held runs at one set point across dips of moves; (first row, last row, set point)."""
+    still = _still(time, moves)
+    seconds = np.diff(time, prepend=time[0])
     joined: list[tuple[int, int, int]] = []
-    for a, b in zip(starts.tolist(), ends.tolist(), strict=True):
-        which = int(label[a])
-        if which < 0:
-            continue
-        if joined and joined[-1][2] == which:
-            first, last, _ = joined[-1]
-            dip = float(np.max(np.abs(pressure[last : a + 1] - pressure[last])))
-            level = float(np.median(pressure[max(first, last - 20) : last + 1]))
-            grown = float(np.max(area[last : a + 1])) > area[last] * (1.0 + _RENEWED_PART)
-            if dip <= max(2.0 * band, _DIP_PART * level) and not grown:
-                joined[-1] = (first, b, which)
-                continue
-        joined.append((a, b, which))
-    return joined
+    for which, setting in enumerate(settings):
+        # seconds, summed from the start, that the pressure was off this set point while the dipper rested
+        off = np.cumsum(seconds * still * (np.abs(pressure - setting) > band))
+        mine: list[tuple[int, int, int]] = []
+        for a, b in _true_runs(label == which):
+            if any(first <= a and b <= last for first, last, _ in joined):
+                continue  # the level of a dip of another set point
+            if mine:
+                first, last, _ = mine[-1]
+                dip = float(np.max(np.abs(pressure[last : a + 1] - setting)))
+                later = float(np.median(area[a : min(a + 9, b + 1)]))
+                grown = later > area[last] * (1.0 + _RENEWED_PART) or bool(
+                    np.max(area[last : a + 1]) > area[last] * (1.0 + 5.0 * _RENEWED_PART)
+                )
+                resting = float(off[a] - off[last]) > _REST_OFF_SECONDS
+                shallow = dip <= max(2.0 * band, _DIP_PART * setting)
+                if shallow and not grown and not resting:
+                    mine[-1] = (first, b, which)
+                    continue
+            mine.append((a, b, which))
+        joined.extend(mine)
+    return sorted(joined)
+
+
+def _level_elsewhere(pressure: FloatArray, setting: float, band: float) -> bool:
+    """Whether most of an interruption was spent at one other pressure."""
+    off = pressure[np.abs(pressure - setting) > band]
+    if off.size < _PLATEAU_ROWS:
+        return False
+    spread = 1.4826 * float(np.median(np.abs(off - np.median(off))))
+    return spread < 0.5 * band
 
 
 def _interruptions(
@@ -232,7 +271,7 @@ def _interruptions(
         same = abs(after.pressure - before.pressure) <= band
         if (same and larger) or (opened and emptied):
             kind = "renewal"
-        elif not same:
+        elif not same or _level_elsewhere(pressure[rows], before.pressure, band):
             kind = "set-point change"
         else:
             kind = "lost control"
