@@ -123,10 +123,14 @@ def duration_text(seconds: float) -> str:
 
 
 def plain_number(value: float | None, digits: int = 3) -> str:
-    """Write a number that carries no uncertainty of its own, with few digits."""
+    """Write a number that carries no uncertainty of its own, with few digits and no exponent."""
     if value is None or not math.isfinite(value):
         return MISSING
-    return f"{value:.{digits}g}"
+    if value == 0 or not 1e-6 <= abs(value) < 1e7:
+        return f"{value:.{digits}g}"
+    places = max(0, digits - 1 - math.floor(math.log10(abs(value))))
+    text = f"{value:.{places}f}"
+    return text.rstrip("0").rstrip(".") if "." in text else text
 
 
 def _part(u: float | None) -> str:

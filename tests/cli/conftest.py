@@ -18,3 +18,9 @@ def acid() -> IsothermResult:
 def acid_cycle() -> IsothermResult:
     """A compression and the expansion after it."""
     return result(compression(), expansion())
+
+
+@pytest.fixture(autouse=True)
+def _faults_show(monkeypatch: pytest.MonkeyPatch) -> None:
+    """Let faults out with their traceback, so that a failing test says where."""
+    monkeypatch.setenv("UPSTROKE_DEBUG", "1")

@@ -79,7 +79,8 @@ def test_a_run_without_potential_is_refused(
     tmp_path: Path, capsys: pytest.CaptureFixture[str]
 ) -> None:
     path = tmp_path / "run.csv"
-    rows = [f"{0.4 - 0.0002 * n:.4f},{0.05 * n:.3f}" for n in range(800)]
+    rng = np.random.default_rng(2)
+    rows = [f"{0.4 - 0.0002 * n:.4f},{0.05 * n + rng.normal(0, 0.03):.3f}" for n in range(800)]
     path.write_text("Area (nm^2),Pressure (mN/m)\n" + "\n".join(rows) + "\n")
     assert run(["potential", str(path)]) == 1
     text = capsys.readouterr().err

@@ -290,3 +290,15 @@ def test_a_folder_gives_its_exports_by_name_the_same_at_any_number_of_jobs(
 def test_an_empty_folder_is_refused(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
     assert run(["isotherm", str(tmp_path)]) == 1
     assert "holds no export" in capsys.readouterr().err
+
+
+def test_a_trace_without_any_noise_is_analysed(
+    tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    path = tmp_path / "smooth.csv"
+    rows = [f"{0.4 - 0.0002 * n:.4f},{0.05 * n:.3f}" for n in range(800)]
+    path.write_text("Area (nm^2),Pressure (mN/m)\n" + "\n".join(rows) + "\n")
+    assert run(["isotherm", str(path), "--json", "-"]) == 0
+    (branch,) = json.loads(capsys.readouterr().out)["branches"]
+    assert branch["transitions"] == []
+    assert branch["collapse"] is None
