@@ -5,6 +5,8 @@ from __future__ import annotations
 import re
 from pathlib import Path
 
+from command_reference import PLACE, reference
+
 from cli.main import COMMANDS
 
 ROOT = Path(__file__).resolve().parents[2]
@@ -40,3 +42,7 @@ def test_every_file_it_names_exists() -> None:
             assert (ROOT / name).exists(), name
     for name in re.findall(r"demo/[\w.-]+\.\w+", README):
         assert (ROOT / name).exists(), name
+
+
+def test_the_reference_is_what_the_commands_say() -> None:
+    assert PLACE.read_text(encoding="utf-8") == reference(), "renew it as its second line says"
