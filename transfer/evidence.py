@@ -12,6 +12,7 @@ from isotherm.quantity import Quantity
 from isotherm.result import IsothermResult
 from isotherm.sheet import RunSheet
 from transfer.evidence_capacitance import capacitance_reading
+from transfer.evidence_common_bend import bend_together
 from transfer.evidence_coverage import coverage_reading
 from transfer.evidence_from_result import ledger_from_result
 from transfer.evidence_implied import (
@@ -123,7 +124,7 @@ def assess(evidence: EvidenceSet, ledger: LedgerView) -> EvidenceResult:
         if member is not None:
             members[line.reading.label] = member
     crooked = [line.reading.label for line in lines if line.shape_p() < level]
-    common = _bend_together(lines, crooked, level)
+    common = bend_together(lines, crooked, level)
     straight = [m for name, m in members.items() if name not in crooked or name in common]
     counted = [m for m in straight if m.counts]
     anchor = ledger_member(ledger)
@@ -169,19 +170,6 @@ def assess(evidence: EvidenceSet, ledger: LedgerView) -> EvidenceResult:
         raw_files=evidence.raw_files,
         warnings=tuple(dict.fromkeys(warnings)),
     )
-
-
-def _bend_together(
-    lines: Sequence[KindLine], crooked: Sequence[str], level: float
-) -> tuple[str, ...]:
-    """Kinds that bend after the same layers while most kinds do: the ledger then is what is wrong."""
-    bent = [line for line in lines if line.reading.label in crooked and line.bends(level / 2.0)]
-    able = [line for line in lines if line.bend is not None]
-    if len(bent) < 2 or 2 * len(bent) <= len(able):
-        return ()
-    low = max(line.bend.index_range[0] for line in bent if line.bend is not None)
-    high = min(line.bend.index_range[1] for line in bent if line.bend is not None)
-    return tuple(line.reading.label for line in bent) if low <= high else ()
 
 
 def _agreeing(tested: Sequence[Member], joint: Joint) -> list[Member]:

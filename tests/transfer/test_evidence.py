@@ -196,6 +196,21 @@ def test_a_wrong_ledger_is_named_not_the_evidence(tmp_path):
     assert result.joint.layers.value == pytest.approx(20.0, rel=0.01)
 
 
+def test_a_bend_in_most_kinds_is_the_ledgers(tmp_path):
+    # nothing went over after layer 10, whatever the log says
+    view = ledger(u=0.003)
+    rise = 2.5
+    text = "kind,layers,value,u,unit,crystal_frequency,faces,overtone\n"
+    for n in (0, 3, 6, 9, 12, 15, 18, 20):
+        on = min(n, 10)
+        text += f"xray_thickness,{n},{rise * on},0.2,nm,,,\n"
+        text += f"resonator_frequency,{n},{expected_rise()['frequency'] * on},2,Hz,5 MHz,2,1\n"
+    result = result_of(tmp_path, text, view)
+    assert result.joint.disagrees == ("transfer ratios",)
+    assert "Most kinds bend" in result.joint.statement
+    assert result.joint.layers.value == pytest.approx(10.0, abs=0.3)
+
+
 def test_one_kind_alone_cannot_tell_who_is_wrong(tmp_path):
     result = result_of(tmp_path, THICKNESS, ledger(ratio=1.25))
     assert not result.joint.agree
