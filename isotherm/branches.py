@@ -22,6 +22,9 @@ SMALLEST_REVERSAL: Final = 0.02  # 1
 REVERSAL_SIGMAS: Final = 8.0  # 1
 BLOCKS: Final = 1024  # turning points are searched on block means, then placed on rows
 # The barrier stands still where it covers less than this share of its usual step.
+CLEAR_SIGMAS: Final = (
+    17.0  # travel between two readings, in σ of one, at which standing still shows
+)
 PAUSE_SPEED: Final = 0.08  # 1
 # MAD of a normal distribution is 0.6745 standard deviations.
 MAD_TO_SIGMA: Final = 1.0 / 0.6745  # 1
@@ -185,13 +188,16 @@ def _moving_rows(area: FloatArray, first: int, last: int, noise: float) -> tuple
         begin, end = 0, stretch.size - 1
     rows = np.arange(first + begin, first + end + 1)
     n = rows.size
-    width = max(5, n // 200)
+    # wide enough for the usual travel to stand clear of the reading's scatter
+    step = abs(float(stretch[end] - stretch[begin])) / max(n - 1, 1)
+    clear = int(np.ceil(CLEAR_SIGMAS * noise / step)) if step > 0 else n
+    width = max(5, n // 200, clear)
     if n < 10 * width:
         return rows, 0
     moving = stretch[begin : end + 1]
     covered = np.abs(moving[width:] - moving[:-width])
     usual = float(np.median(covered))
-    if usual < 6.0 * np.sqrt(2.0) * noise:
+    if usual < 0.5 * CLEAR_SIGMAS * noise:
         return rows, 0
     slow = covered < PAUSE_SPEED * usual
     if not slow.any():

@@ -34,6 +34,7 @@ class Nodes:
     x : -ln(A / nm^2), so that dΠ/dx is the compression modulus. area nm^2, pressure mN/m (as recorded).
     count : rows in each node. sigma : standard uncertainty of the mean pressure, mN/m.
     noise : scatter of one row, mN/m. first : (m,) index of each node's first row among the branch's rows.
+    stop : x of the smallest area of the branch.
     """
 
     x: FloatArray
@@ -43,6 +44,7 @@ class Nodes:
     sigma: FloatArray
     noise: float
     first: NDArray[np.int64]
+    stop: float
 
 
 def row_noise(area: FloatArray, pressure: FloatArray) -> float:
@@ -160,7 +162,16 @@ def condense(area: FloatArray, pressure: FloatArray, noise: float, nodes: int = 
     crossed = 1.0 + np.abs(np.gradient(mean_pressure)) / step if step > 0 else 1.0
     rounding = step / np.sqrt(12.0) / np.sqrt(crossed) if step > 2.0 * noise else 0.0
     sigma = np.sqrt(noise**2 / counts + np.square(rounding))
-    return Nodes(-np.log(mean_area), mean_area, mean_pressure, counts, sigma, noise, starts)
+    return Nodes(
+        -np.log(mean_area),
+        mean_area,
+        mean_pressure,
+        counts,
+        sigma,
+        noise,
+        starts,
+        -float(np.log(area.min())),
+    )
 
 
 def _even_length_starts(

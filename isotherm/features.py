@@ -186,9 +186,16 @@ def modulus_max(view: BranchView) -> MaxModulus | None:
 
 
 def highest_pressure(view: BranchView) -> Quantity:
-    """The largest smoothed pressure of the branch."""
-    i = int(np.argmax(view.local.pressure))
-    return view.pressure(float(view.local.pressure[i]), float(view.local.u_pressure[i]))
+    """The largest smoothed pressure of the branch, its very end included."""
+    local, nodes = view.local, view.nodes
+    i = int(np.argmax(local.pressure))
+    value, u = float(local.pressure[i]), float(local.u_pressure[i])
+    if i == nodes.x.size - 1 and math.isfinite(float(local.u_modulus[i])):
+        # a trace that stops while rising is highest at its last row, half a node further on
+        rest = max(nodes.stop - float(nodes.x[i]), 0.0)
+        value += max(float(local.modulus[i]), 0.0) * rest
+        u = math.hypot(u, float(local.u_modulus[i]) * rest)
+    return view.pressure(value, u)
 
 
 def area_at(view: BranchView, pressure: float) -> AreaAt:
