@@ -15,7 +15,7 @@ PLACE = ROOT / "cli" / "reference.md"
 HEAD = """\
 # Commands
 
-Made from the commands' own help by `python tests/support/command_reference.py`; a test fails when it is stale.
+Made from the commands' own help by `python tests/support/command_reference.py`; a test fails when stale.
 """
 
 
