@@ -3,8 +3,8 @@
 Four descriptions are fitted by generalised least squares with correlated noise (`hold_noise`): level;
 level and drift; level and rise; level, drift and rise. The rise starts at a hinge area and grows linearly
 as the surface shrinks, as swept-up contamination does once it is packed enough to show; the hinge is
-searched on a grid. Values are averaged over hinge, noise and descriptions by their weights (as for holds:
-AICc, Burnham & Anderson 2002), so a rise that is not there does not add its noise.
+searched on a grid. The zero is averaged over hinge, noise and descriptions by their weights (as for holds:
+AICc, Burnham & Anderson 2002); rise and drift come from the fullest description.
 """
 
 from __future__ import annotations
@@ -104,9 +104,7 @@ def _solve(
     )
 
 
-def _mixed(
-    parts: list[tuple[float, _Described, FloatArray]], unit: str
-) -> Quantity:
+def _mixed(parts: list[tuple[float, _Described, FloatArray]], unit: str) -> Quantity:
     """Mean and u of a linear function (p,) of each description's parameters, over all nodes."""
     weight, value, variance = [], [], []
     for share, one, by in parts:
@@ -118,7 +116,9 @@ def _mixed(
     return Quantity(mean, float(np.sqrt(w @ ((v - mean) ** 2 + s))), unit)
 
 
-def fit_bare(time: FloatArray, area: FloatArray | None, pressure: FloatArray, *, timed: bool) -> BareFit:
+def fit_bare(
+    time: FloatArray, area: FloatArray | None, pressure: FloatArray, *, timed: bool
+) -> BareFit:
     """Fit zero, drift and rise to a condensed record of a bare subphase.
 
     Parameters
@@ -172,24 +172,26 @@ def fit_bare(time: FloatArray, area: FloatArray | None, pressure: FloatArray, *,
         return _mixed([(share[k], described[k], np.array(v)) for k, v in by.items()], unit)
 
     span = float(hours[-1])
-    zero_by = {"level": [1.0], "drift": [1.0, 0.0], "rise": [1.0, 0.0], "drift and rise": [1.0, 0.0, 0.0]}
+    zero_by = {
+        "level": [1.0],
+        "drift": [1.0, 0.0],
+        "rise": [1.0, 0.0],
+        "drift and rise": [1.0, 0.0, 0.0],
+    }
     zero = averaged({k: v for k, v in zero_by.items() if k in described}, "mN/m")
     rise = None
     if area is not None:
-        # what time and area did together counts as rise where the two cannot be told apart
+        # The fullest description says it without leaning towards none: against a limit, a rise too small
+        # to be seen must keep its u. What time and area did together counts as rise where they cannot be
+        # told apart.
         drifted = 0.0 if separable else span
-        rise_by = {
-            "level": [0.0],
-            "drift": [0.0, drifted],
-            "rise": [0.0, 1.0],
-            "drift and rise": [0.0, drifted, 1.0],
-        }
-        rise = averaged({k: v for k, v in rise_by.items() if k in described}, "mN/m")
+        by = np.array([0.0, drifted, 1.0] if timed else [0.0, 1.0])
+        rise = _mixed([(1.0, described["drift and rise" if timed else "rise"], by)], "mN/m")
     drift = None
     if timed and separable:
         name = "drift" if area is None else "drift and rise"
-        by = np.array([0.0, 1.0] if area is None else [0.0, 1.0, 0.0])
-        drift = _mixed([(1.0, described[name], by)], "mN/m/h")
+        slope = np.array([0.0, 1.0] if area is None else [0.0, 1.0, 0.0])
+        drift = _mixed([(1.0, described[name], slope)], "mN/m/h")
     best = min(score, key=lambda name: score[name])
     hinge = None
     rising = share.get("rise", 0.0) + share.get("drift and rise", 0.0)
@@ -206,7 +208,9 @@ def fit_bare(time: FloatArray, area: FloatArray | None, pressure: FloatArray, *,
 _SUPPORTED = 0.95
 
 
-def _fitted(chosen: _Described, name: str, hours: FloatArray, area: FloatArray | None) -> FloatArray:
+def _fitted(
+    chosen: _Described, name: str, hours: FloatArray, area: FloatArray | None
+) -> FloatArray:
     """Pressure of the likeliest description, averaged over its nodes, (m,)."""
     values = chosen.weight[:, None] * chosen.beta
     out = np.full(hours.size, float(values[:, 0].sum()))

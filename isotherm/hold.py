@@ -186,7 +186,7 @@ def analyse_hold(
     planned = planned_time if planned_time is not None else planned_dipping_time(known_sheet)
     known = systematic(known_sheet, check)
     warnings = [*record.warnings, *known.warnings]
-    holds = []
+    holds: list[Hold] = []
     for stretch in record.stretches:
         if stretch.stop - stretch.start < _FEWEST_BLOCKS:
             warnings.append(

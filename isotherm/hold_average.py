@@ -46,7 +46,10 @@ def law_weights(fits: tuple[LawFit, ...]) -> FloatArray:
 
 
 def node_moments(
-    fit: LawFit, value: FloatArray, by_level: FloatArray | float = 0.0, by_drop: FloatArray | float = 0.0
+    fit: LawFit,
+    value: FloatArray,
+    by_level: FloatArray | float = 0.0,
+    by_drop: FloatArray | float = 0.0,
 ) -> Moments:
     """Mean and u of a value known at every node.
 

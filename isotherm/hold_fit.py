@@ -187,7 +187,5 @@ def fit_laws(blocks: Blocks) -> tuple[LawFit, ...]:
     # One number of independent blocks for all laws, that of the likeliest: a law that misses the trend
     # sees it as slow noise, and its own count would say more of the misfit than of the data.
     effective = min(fits, key=lambda fit: fit.aicc).effective
-    scored = [
-        replace(fit, aicc=aicc(fit.deviance, fit.parameters, effective)) for fit in fits
-    ]
+    scored = [replace(fit, aicc=aicc(fit.deviance, fit.parameters, effective)) for fit in fits]
     return tuple(sorted(scored, key=lambda fit: fit.aicc))

@@ -5,6 +5,7 @@ from __future__ import annotations
 from typing import Final
 
 import numpy as np
+from numpy.typing import NDArray
 
 from isotherm.hold_average import law_loss, law_weights, node_moments
 from isotherm.hold_fit import LawFit
@@ -13,6 +14,8 @@ from isotherm.hold_result import LawResult
 from isotherm.quantity import Quantity
 
 __all__ = ["choose_law", "law_results"]
+
+FloatArray = NDArray[np.float64]
 
 # A simpler law within this much of the least AICc is as well supported (Burnham & Anderson 2002, sec. 2.6:
 # "substantial support" up to 2), so its further parameters say nothing (Arnold, J. Wildl. Manage. 2010, 74,
@@ -38,8 +41,10 @@ def choose_law(fits: tuple[LawFit, ...]) -> LawFit:
 def _parameters(fit: LawFit, unit: str) -> dict[str, Quantity]:
     """Parameters of one law: most likely value, u from the nodes."""
 
-    def one(value: np.ndarray, by_level: object, by_drop: object, name: str) -> Quantity:  # type: ignore[type-arg]
-        moments = node_moments(fit, value, by_level, by_drop)  # type: ignore[arg-type]
+    def one(
+        value: FloatArray, by_level: FloatArray | float, by_drop: FloatArray | float, name: str
+    ) -> Quantity:
+        moments = node_moments(fit, value, by_level, by_drop)
         return Quantity(float(value[fit.best]), moments.u, name)
 
     part = fit.drop / fit.level

@@ -81,7 +81,9 @@ def nucleation_type(exponent: float) -> str:
     return _TYPES[min(_TYPES, key=lambda x: abs(x - exponent))]
 
 
-def growth(name: str, time: FloatArray, time_constant: FloatArray, exponent: FloatArray) -> FloatArray:
+def growth(
+    name: str, time: FloatArray, time_constant: FloatArray, exponent: FloatArray
+) -> FloatArray:
     """Growing part g(t) of a law.
 
     Parameters
@@ -102,11 +104,11 @@ def growth(name: str, time: FloatArray, time_constant: FloatArray, exponent: Flo
     """
     t = np.maximum(np.asarray(time, dtype=float), 0.0)[:, None]
     if name == "constant":
-        return np.zeros_like(t)
+        return np.asarray(np.zeros_like(t))
     if name == "desorption":
-        return np.sqrt(t)
+        return np.asarray(np.sqrt(t))
     if name == "dissolution":
-        return t.copy()
+        return np.asarray(t.copy())
     if name == "relaxation":
         return np.asarray(-np.expm1(-t / time_constant))
     return np.asarray(-np.expm1(-LN2 * (t / time_constant) ** exponent))
@@ -118,12 +120,12 @@ def growth_rate(
     """Time derivative of `growth` (per second times its unit), same parameters and shape."""
     t = np.asarray(time, dtype=float)[:, None]
     if name == "constant":
-        return np.zeros_like(t)
+        return np.asarray(np.zeros_like(t))
     if name == "desorption":
         with np.errstate(divide="ignore"):
             return np.asarray(0.5 / np.sqrt(t))
     if name == "dissolution":
-        return np.ones_like(t)
+        return np.asarray(np.ones_like(t))
     if name == "relaxation":
         return np.asarray(np.exp(-t / time_constant) / time_constant)
     scaled = t / time_constant

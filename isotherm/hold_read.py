@@ -71,7 +71,7 @@ def surface_pressure(table: Table, sheet: RunSheet) -> tuple[FloatArray, tuple[s
         raise UpstrokeError(
             "no column of surface pressure or tension",
             where=where,
-            remedy="name it in the sheet's [[columns]] (role = \"pressure\")",
+            remedy='name it in the sheet\'s [[columns]] (role = "pressure")',
         )
     tension = table.values["tension"]
     if sheet.subphase.tension is not None:

@@ -137,7 +137,7 @@ class Hold:
         return Quantity.combine(loss.value, "1", u_random=loss.u, u_systematic=systematic)
 
     def _rate_change(self, seconds: float) -> float:
-        """How much faster film goes when settled than after `seconds`, 1/s: what a shift of the start costs."""
+        """Change of rate from when it settled to `seconds`, 1/s: what a shift of the start costs."""
         settled = max(self.settling_s, self.arrival_u, float(self.blocks.time[0]))
         if seconds <= settled:
             return 0.0

@@ -172,7 +172,9 @@ def _trim_travel(data: _Condensed, first: int, last: int, travel: float) -> tupl
     return first, last
 
 
-def _far_block(blocks: FloatArray, target: float, found: tuple[int, int], floor: int, reach: float) -> int:
+def _far_block(
+    blocks: FloatArray, target: float, found: tuple[int, int], floor: int, reach: float
+) -> int:
     """Last block before the hold that is still on its way to the set point; -1 where there is none."""
     before = np.flatnonzero(np.abs(blocks[floor : found[0] + 1] - target) > reach)
     return floor + int(before[-1]) if before.size else -1
@@ -275,7 +277,8 @@ def _merged(data: _Condensed, taken: list[tuple[int, int]]) -> list[tuple[int, i
             first, last = joined[-1]
             gap = float(data.time[a] - data.time[last])
             same = all(
-                abs(float(np.median(x[a : a + _FEWEST_BLOCKS]) - np.median(x[last - 7 : last + 1]))) < band
+                abs(float(np.median(x[a : a + _FEWEST_BLOCKS]) - np.median(x[last - 7 : last + 1])))
+                < band
                 for x, band in ((data.pressure, data.pressure_band), (data.area, data.area_band))
             )
             if same and gap < _GAP_PART * float(data.time[b] - data.time[first]):

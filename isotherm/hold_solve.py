@@ -128,9 +128,7 @@ def solve_nodes(
         covariance = np.stack([few * variance / s11, zero, zero], axis=-1)
         weight = -0.5 * (log_det + np.log(s11) + (n - 1) * np.log(rss))
         deviance = n * np.log(rss / n) + log_det
-        return Nodes(
-            tau, exponent, which, mean + 1.0, zero, deviance, weight, covariance, variance
-        )
+        return Nodes(tau, exponent, which, mean + 1.0, zero, deviance, weight, covariance, variance)
     g = _block_growth(law, hold.blocks, tau, exponent)
     size = np.maximum(np.abs(g).max(axis=0), _TINY)
     g = g / size  # the g of desorption and dissolution are not of order one
@@ -157,7 +155,9 @@ def solve_nodes(
     rss = np.maximum(rss - 2 * level * s1y + 2 * drop * sgy - 2 * level * drop * s1g, _TINY)
     variance = rss / max(n - law.parameters, 1)
     spread_of = few * variance / det
-    covariance = np.stack([spread_of * sgg, spread_of * s1g / size, spread_of * s11 / size**2], axis=-1)
+    covariance = np.stack(
+        [spread_of * sgg, spread_of * s1g / size, spread_of * s11 / size**2], axis=-1
+    )
     # the information of independent noise is divided out: g's own scale must not favour a shape
     information = np.log(det / n**2) - np.log(np.where(usable, spread, 1.0))
     weight = -0.5 * (log_det + information + (n - 2) * np.log(rss))

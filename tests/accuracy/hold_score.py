@@ -68,13 +68,18 @@ def score_one(seed: int) -> Score | None:
 def summary(scores: list[Score | None]) -> str:
     """Table of what matters, per law and together."""
     done = [s for s in scores if s is not None]
-    lines = [f"{len(done)} of {len(scores)} analysed", f"{'law':<13}{'right':>7}{'med':>8}{'<10 %':>8}{'+-2u':>8}"]
+    lines = [
+        f"{len(done)} of {len(scores)} analysed",
+        f"{'law':<13}{'right':>7}{'med':>8}{'<10 %':>8}{'+-2u':>8}",
+    ]
     for law in (*LAWS, "all"):
         some = [s for s in done if law in (s.law, "all")]
         lossy = [abs(s.loss / s.truth - 1.0) for s in some if s.truth > 0]
         right = np.mean([s.chosen == s.law for s in some])
         inside = np.mean([abs(s.loss - s.truth) <= 2.0 * s.u for s in some])
-        median = f"{np.median(lossy):8.3f}{np.mean(np.array(lossy) < 0.1):8.2f}" if lossy else " " * 16
+        median = (
+            f"{np.median(lossy):8.3f}{np.mean(np.array(lossy) < 0.1):8.2f}" if lossy else " " * 16
+        )
         lines.append(f"{law:<13}{right:7.2f}{median}{inside:8.2f}")
     kinds = np.mean([s.kind == s.kind_found for s in done])
     lines.append(f"kind of hold right: {kinds:.3f}")
@@ -86,7 +91,9 @@ def main() -> None:
     parser.add_argument("--holds", type=int, default=100)
     parser.add_argument("--seed", type=int, default=0)
     parser.add_argument("--jobs", type=int, default=1)
-    parser.add_argument("--misses", action="store_true", help="list wrong laws and losses off by > 3 u")
+    parser.add_argument(
+        "--misses", action="store_true", help="list wrong laws and losses off by > 3 u"
+    )
     options = parser.parse_args()
     seeds = range(options.seed, options.seed + options.holds)
     if options.jobs > 1:

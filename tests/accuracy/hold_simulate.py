@@ -110,14 +110,24 @@ def simulate_hold(rng: np.random.Generator, law: str, kind: str = "isobaric") ->
         tau_settle = rng.uniform(2.0, 15.0)  # the barrier slows to its stop
         area = area0 + 0.002 * area0 * np.exp(-t / tau_settle) * (amplitude != 0.0)
         area += 0.003 * rng.normal(size=n)
-        pressure = set_pressure * level * (1.0 - 0.005 * np.exp(-t / tau_settle) * (amplitude != 0.0))
+        pressure = (
+            set_pressure * level * (1.0 - 0.005 * np.exp(-t / tau_settle) * (amplitude != 0.0))
+        )
         pressure += rng.uniform(0.01, 0.06) * rng.normal(size=n)
         pressure += rng.uniform(0.005, 0.04) * _correlated(rng, n, dt, jitter_tau)
         pressure += set_pressure * rng.uniform(0.5e-4, 8e-4) * _correlated(rng, n, dt, wander_tau)
         area = np.round(area, 2)
         pressure = np.round(pressure, 3)
     return SimulatedHold(
-        kind, law, t, area, pressure, truth_4h, 5.0 * tau_settle * (amplitude != 0.0), parameters, level
+        kind,
+        law,
+        t,
+        area,
+        pressure,
+        truth_4h,
+        5.0 * tau_settle * (amplitude != 0.0),
+        parameters,
+        level,
     )
 
 
@@ -148,7 +158,10 @@ def simulate_record(rng: np.random.Generator, holds: list[tuple[str, str]]) -> S
     t0 = rng.uniform(0.0, 900.0)
     now, area_now = t0, scale * rng.uniform(1.3, 2.0)
     waiting = np.arange(0.0, t0, dt)
-    times, areas = [waiting], [np.full(waiting.size, area_now) + 0.01 * rng.normal(size=waiting.size)]
+    times, areas = (
+        [waiting],
+        [np.full(waiting.size, area_now) + 0.01 * rng.normal(size=waiting.size)],
+    )
     pressures = [0.03 * rng.normal(size=waiting.size)]
     starts, stops, used = [], [], []
     for hold, target in zip(made, targets, strict=True):
@@ -158,7 +171,8 @@ def simulate_record(rng: np.random.Generator, holds: list[tuple[str, str]]) -> S
         times.append(now + ramp)
         areas.append(moving + 0.01 * rng.normal(size=ramp.size))
         pressures.append(
-            np.interp(moving / scale, _FILM_AREA, _FILM_PRESSURE) + 0.03 * rng.normal(size=ramp.size)
+            np.interp(moving / scale, _FILM_AREA, _FILM_PRESSURE)
+            + 0.03 * rng.normal(size=ramp.size)
         )
         now += ramp.size * dt
         step = float(hold.time[1] - hold.time[0])
