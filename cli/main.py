@@ -51,6 +51,7 @@ _register(
 )
 _register(
     "A film on a substrate",
+    target="Dipping pressure, what binds it, and the film budget.",
     transfer="Transfer ratio of every stroke, deposition type, layers.",
 )
 _register(

@@ -104,8 +104,8 @@ def _answer(result: TargetResult, width: int) -> str:
             else f"is excluded by: {', '.join(asked.breaks) or 'no rule that can be named'}"
         )
         said = f"The sheet's {asked.pressure:g} mN/m {verdict}."
-        if asked.strokes_possible is not None:
-            said += f" Strokes one filling serves there: {asked.strokes_possible}."
+        if asked.budget is not None:
+            said += f" Strokes one filling serves there: {asked.budget.strokes_possible}."
         lines.append(paragraph(said, width))
     return "\n".join(lines)
 
