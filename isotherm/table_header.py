@@ -15,6 +15,7 @@ from isotherm.units import is_unit
 __all__ = ["Header", "HeaderCell", "find_header", "parse_cell", "split_header", "whole_block"]
 
 _LINES_ABOVE: Final = 12  # text lines looked at above the rows
+_NAME_LINES: Final = 4  # of them, lines that may hold the names
 _COMMENT_SIGNS: Final = "#%!*/'>"
 _BRACKETS: Final = re.compile(r"[(\[{<]([^()\[\]{}<>]{0,40})[)\]}>]")
 _CLOCK_FORMAT: Final = re.compile(
@@ -138,11 +139,11 @@ def _bare_ways(text: str) -> Iterator[tuple[str, str]]:
 
 def split_header(line: str, layout: Layout, columns: int) -> list[str] | None:
     """Cut a text line into exactly `columns` cells, or None when it does not go."""
-    line = line.strip()
-    if layout.delimiter != "\t":
-        line = line.strip("\ufeff")
-    stripped = line.lstrip(_COMMENT_SIGNS + (";" if layout.delimiter != ";" else "")).strip()
-    for text in dict.fromkeys((line, stripped)):
+    blanks = " " if layout.delimiter == "\t" else None  # an empty first cell is a cell
+    line = line.strip(blanks)
+    signs = _COMMENT_SIGNS + (";" if layout.delimiter != ";" else "")
+    bare = line.lstrip(signs).strip(blanks)
+    for text in dict.fromkeys((bare, line)):
         for cells in _cuttings(text, layout):
             while len(cells) > columns and not cells[-1]:
                 cells = cells[:-1]
@@ -159,6 +160,8 @@ def _cuttings(text: str, layout: Layout) -> list[list[str]]:
     """Every sensible way to cut a header line, best first."""
     if layout.delimiter != " ":
         ways = [layout.split(text)]
+        if len(ways[0]) > 1:
+            return ways
         ways += [Layout(d, ".").split(text) for d in "\t;,|" if d != layout.delimiter and d in text]
         if len(text.split("  ")) > 1:
             ways.append([cell.strip() for cell in re.split(r" {2,}|\t", text)])
@@ -269,24 +272,26 @@ def find_header(lines: Sequence[str], block: Block) -> Header:
 
 def _choose(above: list[tuple[int, list[str]]]) -> Header:
     """Take names and units from candidate lines, nearest to the rows first."""
-    units: list[str] | None = None
-    names: tuple[int, list[HeaderCell]] | None = None
-    for place, (number, cells) in enumerate(above):
-        if units is None and _is_unit_line(cells):
-            units = cells
-            continue
+    places = range(len(above))
+    at = next((place for place in places if _is_unit_line(above[place][1])), None)
+    units = None if at is None else above[at][1]
+    # names stand just above their units, seldom just below
+    nearest = [place for place in places if place != at]
+    if at is not None:
+        nearest.sort(key=lambda place: (place != at + 1, place))
+    best: Header | None = None
+    for place in nearest[:_NAME_LINES]:
+        number, cells = above[place]
         parsed = [parse_cell(cell) for cell in cells]
-        better = names is not None and place < 4 and _known(parsed) > max(1, _known(names[1]))
-        if names is None or better:
-            names = (number, parsed)
-    if names is None:
-        if units is None:
-            return Header(())
-        return Header(tuple(_with_unit(HeaderCell(c, ""), c) for c in units), above[0][0])
-    cells_out = names[1]
-    if units is not None:
-        cells_out = [_with_unit(cell, unit) for cell, unit in zip(cells_out, units, strict=True)]
-    return Header(tuple(cells_out), names[0])
+        if units is not None:
+            parsed = [_with_unit(cell, unit) for cell, unit in zip(parsed, units, strict=True)]
+        if best is None or _known(parsed) > max(1, _known(best.cells)):
+            best = Header(tuple(parsed), number)
+    if best is not None:
+        return best
+    if units is None or at is None:
+        return Header(())
+    return Header(tuple(_with_unit(HeaderCell(c, ""), c) for c in units), above[at][0])
 
 
 def _known(cells: Sequence[HeaderCell]) -> int:

@@ -79,13 +79,12 @@ def clock_seconds(cells: Sequence[str], *, where: str, form: str = "") -> NDArra
             "some times have seconds and some have not", where=where, remedy="export the seconds"
         )
     if found.short and _minutes_first(found, hours, bool(dates), form.casefold(), where):
-        out = 60.0 * hours + minutes + seconds
-    else:
-        out = 3600.0 * hours + 60.0 * minutes + seconds
-    out += shift
+        hours, minutes, seconds = np.zeros(count), hours, minutes + seconds
+    out: NDArray[np.float64] = 3600.0 * hours + 60.0 * minutes + seconds + shift
     if dates:
-        return np.asarray(out + _DAY * _days(list(dates), where)[day])
-    _unroll(out)
+        out += _DAY * _days(list(dates), where)[day]
+    else:
+        _unroll(out)
     return out
 
 

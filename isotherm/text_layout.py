@@ -97,6 +97,8 @@ def row_kinds(line: str, layout: Layout) -> list[str] | None:
     texts = len(cells) // 2  # more cells of text than of anything else are no row
     for cell in cells:
         kind = cell_kind(cell, layout.decimal)
+        if kind == "N" and layout.delimiter == "," and " " in cell:
+            kind = "T"  # "0,06 235,5" is two numbers with decimal commas, no thousands
         if kind == "T":
             texts -= 1
             if texts < 0:

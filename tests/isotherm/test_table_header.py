@@ -91,7 +91,8 @@ def test_name_unit_and_role(text: str, role: str, unit: str | None) -> None:
     "text",
     [
         "Barrier speed (mm/min)", "Target pressure (mN/m)", "Pressure setpoint (mN/m)", "Relative area (%)",
-        "Pressure std (mN/m)", "Pressure (kPa)", "Room temperature (°C)", "Index", "A", "t", "Compression modulus (mN/m)",
+        "Pressure std (mN/m)", "Pressure (kPa)", "Room temperature (°C)", "Index", "A", "t",
+        "Compression modulus (mN/m)",
         "Δγ (mN/m)", "Area change (cm²)", "Humidity (%)", "Cycle", "Sollwert Druck (mN/m)", "",
     ],
 )  # fmt: skip
@@ -120,7 +121,8 @@ def test_any_text_is_a_header_cell(text: str) -> None:
 
 @pytest.mark.parametrize(
     "text",
-    ["(" * 50_000, "/" * 50_000, "_" * 50_000, " " * 50_000 + "x", "a_" * 25_000, "A (" * 20_000, "in " * 20_000,
+    ["(" * 50_000, "/" * 50_000, "_" * 50_000, " " * 50_000 + "x", "a_" * 25_000,
+     "A (" * 20_000, "in " * 20_000,
      "²" * 50_000, "mN/" * 20_000, "'" * 50_000, "[(" * 25_000 + ")]" * 25_000],
 )  # fmt: skip
 def test_hostile_headers_take_no_time(text: str) -> None:

@@ -1,4 +1,4 @@
-"""Whatever bytes come in, the outcome is a table, a trace, or a refusal in one line, soon and in little memory."""
+"""Whatever bytes come in, the outcome is a result or a refusal in one line, soon and in little memory."""
 
 from __future__ import annotations
 
@@ -96,7 +96,9 @@ _LARGE = {
     "utf-16": ("Area (cm^2),Pressure (mN/m)\n" + "1.5,2.5\n" * 200_000).encode("utf-16"),
     "lone carriage returns": b"Area (cm^2),Pressure (mN/m)\r" + b"1.5,2.5\r" * 300_000,
     "nulls after a text head": b"Area (cm^2),Pressure (mN/m)\n" + b"1.5,2.5\n" * 10_000 + b"\0" * 2_000_000,
-    "invalid utf-8 after the head": b"Area (cm^2),Pressure (mN/m)\n" + b"1.5,2.5\n" * 30_000 + b"\xff" * 2_000_000,
+    "invalid utf-8 after the head": b"Area (cm^2),Pressure (mN/m)\n"
+    + b"1.5,2.5\n" * 30_000
+    + b"\xff" * 2_000_000,
 }  # fmt: skip
 
 

@@ -8,13 +8,15 @@ from collections.abc import Sequence
 __all__ = ["mutated", "piled", "seed_inputs"]
 
 _PIECES: tuple[bytes, ...] = (
-    b"Time (s)", b"Area (cm^2)", b"Pressure (mN/m)", b"Mma (A^2)", b"APL in \xc3\x85\xc2\xb2", b"T", b"t", b"(", b"[",
-    b"\xb5", b"\xff\xfe", b"\xef\xbb\xbf", b"\x00", b"\r", b"\n", b"\r\n", b"\n\n", b",", b";", b"\t", b" ", b"  ", b"|",
-    b"1", b"2.5", b"-3,5", b"1e5", b"1e999", b"-1e-400", b"nan", b"inf", b"-inf", b"1_000", b"0x1f", b"1.234,5",
-    b"1,234.5", b"9" * 60, b'"', b"'", b'""', b"#", b"=cmd|' /C calc'!A0", b"09:15:00", b"2031-05-06", b"99:99:99",
-    b"31/02/2031 10:00", b"12:00 PM", b"\xc2\xa0", b"\xe2\x88\x92", b"\xe2\x80\xa8", b"\x1a", b"\x85", b"...", b"-", b"n/a",
-    b"PK\x03\x04", b"xl/", b"\xd0\xcf\x11\xe0", b"(furlong)", b"mN/m", b"/", b"_", b"^", b"e", b"D", b"+", b"\xf0\x9f\xa7\xaa",
-    b"[film]", b"volume = ", b"[[columns]]", b"role", b"index = 1e400",
+    b"Time (s)", b"Area (cm^2)", b"Pressure (mN/m)", b"Mma (A^2)", b"APL in \xc3\x85\xc2\xb2",
+    b"T", b"t", b"(", b"[", b"\xb5", b"\xff\xfe", b"\xef\xbb\xbf", b"\x00", b"\r", b"\n", b"\r\n",
+    b"\n\n", b",", b";", b"\t", b" ", b"  ", b"|", b"1", b"2.5", b"-3,5", b"1e5", b"1e999",
+    b"-1e-400", b"nan", b"inf", b"-inf", b"1_000", b"0x1f", b"1.234,5", b"1,234.5", b"9", b'"',
+    b"'", b'""', b"#", b"=cmd|' /C calc'!A0", b"09:15:00", b"2031-05-06", b"99:99:99",
+    b"31/02/2031 10:00", b"12:00 PM", b"\xc2\xa0", b"\xe2\x88\x92", b"\xe2\x80\xa8", b"\x1a",
+    b"\x85", b"...", b"-", b"n/a", b"PK\x03\x04", b"xl/", b"\xd0\xcf\x11\xe0", b"(furlong)",
+    b"mN/m", b"/", b"_", b"^", b"e", b"D", b"+", b"\xf0\x9f\xa7\xaa", b"[film]", b"volume = ",
+    b"[[columns]]", b"role", b"index = 1e400",
 )  # fmt: skip
 
 

@@ -1,0 +1,25 @@
+"""One run in many random dresses reads as the same run."""
+
+from __future__ import annotations
+
+import random
+from pathlib import Path
+
+import numpy as np
+import pytest
+from dressed_export import dressed_export
+
+from isotherm.table import read_table
+
+
+@pytest.mark.parametrize("batch", range(10))
+def test_any_dress_reads_as_the_run(batch: int, tmp_path: Path) -> None:
+    path = tmp_path / "export"
+    for seed in range(batch * 60, batch * 60 + 60):
+        dressed = dressed_export(random.Random(seed))
+        path.write_bytes(dressed.data)
+        table = read_table(path)
+        assert set(table.values) == set(dressed.roles), dressed.said
+        for role, values in table.values.items():
+            expected = getattr(dressed.run, role)
+            np.testing.assert_allclose(values, expected, rtol=1e-6, atol=1e-6, err_msg=dressed.said)
