@@ -89,7 +89,7 @@ def kind_result(
         p_value=p_value,
         consistent=reason == "",
         reason=reason,
-        implied=implied_input(reading, line, ledger),
+        implied={} if bend is not None else implied_input(reading, line, ledger),
         details=reading.details,
         drawn=drawn,
         expected=expected,
