@@ -276,7 +276,8 @@ def test_any_text_is_a_sheet_or_refused(text: str) -> None:
 
 _LINES = st.sampled_from(
     [
-        "[film]", "[[film.component]]", "[stack]", "[[stack.film]]", "[[columns]]", "[substrate]", "title = 3",
+        "[film]", "[[film.component]]", "[stack]", "[[stack.film]]", "[[columns]]", "[substrate]",
+        "title = 3",
         'name = "a"', 'volume = "1 µL"', 'volume = "1 ± µL"', "mole_fraction = 0.5", "mole_fraction = 1e400",
         "layers = 3", "layers = -3", 'role = "time"', "index = 99999999999999999999", 'shape = "rod"',
         "accept = [1, 2]", "accept = [[]]", "component = 3", "film = {}", "profile = [1]", "columns = [3]",

@@ -56,7 +56,8 @@ def test_the_sheet_overrules_header_and_unit(tmp_path: Path) -> None:
         tmp_path,
         "Time (s),Area (cm^2),Pressure (mN/m)",
         _TPA,
-        '[[columns]]\nrole = "tension"\nindex = 3\nunit = "N/m"\n[[columns]]\nrole = "time"\nindex = 1\nunit = "min"',
+        '[[columns]]\nrole = "tension"\nindex = 3\nunit = "N/m"\n'
+        '[[columns]]\nrole = "time"\nindex = 1\nunit = "min"',
     )
     assert "pressure" not in table.values
     assert table.values["tension"] == pytest.approx(_RUN.pressure * 1000.0)
@@ -181,8 +182,8 @@ def test_a_column_without_readings_stands_back(tmp_path: Path) -> None:
 
 def test_free_text_must_match_the_columns(tmp_path: Path) -> None:
     path = tmp_path / "figure.csv"
-    rows = "\n".join(f"{a!r},{p!r}" for a, p in zip((_RUN.molecular_area * 100).tolist(), _RUN.pressure.tolist(),
-                                                    strict=True))  # fmt: skip
+    pairs = np.column_stack([_RUN.molecular_area * 100, _RUN.pressure]).tolist()
+    rows = "\n".join(f"{area!r},{pressure!r}" for area, pressure in pairs)
     path.write_text(
         f"# area per molecule (Å²), surface pressure (mN/m), taken at 20 °C\n{rows}\n",
         encoding="utf-8",
