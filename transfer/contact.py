@@ -9,6 +9,7 @@ from numpy.typing import NDArray
 
 from isotherm.quantity import Quantity
 from isotherm.sheet import RunSheet
+from transfer.contact_search import ContactSearch, chi_squared, search_contact
 from transfer.geometry import Geometry
 from transfer.ratio_curves import RemovalCurve
 
@@ -16,12 +17,9 @@ __all__ = ["Contact", "find_contact", "immersion"]
 
 FloatArray = NDArray[np.float64]
 
-_GRID = 150
 # Moves that took clearly more film than noise carry the search; more of them than this add nothing.
 _MOST_MOVES = 16
 _CLEAR = 8.0
-# A move that fits badly at a reading (late start, failed part) may weigh against it by this much, no more.
-_CAP = 60.0
 # Difference of chi-squared, scaled to the best fit, at which the data decide the sign: odds beyond 1e4.
 _DECIDED = 20.0
 
@@ -40,17 +38,6 @@ class Contact:
     found: Quantity | None = None
     always_wet: bool = False
     warnings: tuple[str, ...] = ()
-
-
-@dataclass(frozen=True)
-class _Search:
-    """Best reading for one sign: score (scaled chi-squared), its u, and whether it lies inside."""
-
-    at: float
-    u: float
-    score: float
-    outside: bool
-    drop: float  # how much worse the fit is with the edge always in water
 
 
 def immersion(contact: Contact, reading: FloatArray) -> FloatArray:
@@ -84,18 +71,10 @@ def find_contact(
     clear = [c for c in curves if c.total > _CLEAR * c.u_total and c.reading.size >= 4]
     clear.sort(key=lambda c: -c.total / c.u_total)
     clear = clear[:_MOST_MOVES]
-    searches: dict[str, _Search] = {}
+    searches: dict[str, ContactSearch] = {}
     if clear:
-        both = ("depth", "height")
-        tables = {
-            r: _first_pass(clear, geometry, r, travel) for r in both if said_reads in (None, r)
-        }
-        # how badly the best of all readings fits each move is the measure of its misfit at the others
-        points = np.asarray([c.reading.size + 1 for c in clear])
-        least = np.min([table.min(axis=1) for table in tables.values()], axis=0)
-        scale = np.maximum(least / points, 1.0)
-        for reads in tables:
-            searches[reads] = _search(clear, geometry, reads, travel, least, scale)
+        signs = (said_reads,) if said_reads in ("depth", "height") else ("depth", "height")
+        searches = search_contact(clear, geometry, travel, signs)
     reads, reads_from, warnings = _sign(
         said_reads, said_at, searches, clear, geometry, sheet, travel
     )
@@ -139,102 +118,10 @@ def find_contact(
     return Contact(reads, reads_from, quantity, "data", quantity, warnings=tuple(warnings))
 
 
-def _chi_squared(
-    curve: RemovalCurve, geometry: Geometry, reads: str, grid: FloatArray
-) -> FloatArray:
-    """Chi-squared of one move for each contact reading, its ratio fitted at each."""
-    sign = 1.0 if reads == "depth" else -1.0
-    x = np.concatenate([[curve.start], curve.reading, [curve.end]])
-    y = np.concatenate([[0.0], curve.removed, [curve.total]])
-    end_variance = curve.u_total**2
-    weight = 1.0 / np.concatenate([[end_variance], curve.variance, [end_variance]])
-    wet = geometry.coated(sign * (x[None, :] - grid[:, None]))
-    crossed = np.abs(wet - wet[:, :1])
-    xx = (weight * crossed**2).sum(axis=1)
-    xy = (weight * crossed * y).sum(axis=1)
-    yy = float((weight * y**2).sum())
-    return np.asarray(yy - np.where(xx > 0, xy**2 / np.maximum(xx, 1e-300), 0.0))
-
-
-def _grid(reads: str, travel: tuple[float, float]) -> FloatArray:
-    """Contact readings to try: first a place well beyond the air end (edge always in water)."""
-    low, high = travel
-    span = high - low
-    beyond = low - 0.2 * span if reads == "depth" else high + 0.2 * span
-    inside = np.linspace(low - 0.02 * span, high + 0.02 * span, _GRID + 1)
-    return np.concatenate([[beyond], inside])
-
-
-def _first_pass(
-    curves: list[RemovalCurve], geometry: Geometry, reads: str, travel: tuple[float, float]
-) -> FloatArray:
-    """Chi-squared of every move (rows) at every reading of the grid (columns)."""
-    grid = _grid(reads, travel)
-    return np.stack([_chi_squared(c, geometry, reads, grid) for c in curves])
-
-
-def _search(
-    curves: list[RemovalCurve],
-    geometry: Geometry,
-    reads: str,
-    travel: tuple[float, float],
-    least: FloatArray,
-    scale: FloatArray,
-) -> _Search:
-    """Best contact reading for one sign, over the travel and one place beyond its air end."""
-    low, high = travel
-    span = high - low
-    step = span / _GRID
-    grid = _grid(reads, travel)
-    score = np.zeros(grid.size)
-    best = 0
-    for _ in range(3):
-        table = np.stack([_chi_squared(c, geometry, reads, grid) for c in curves])
-        scaled = (table - least[:, None]) / scale[:, None]
-        score = np.minimum(scaled, _CAP).sum(axis=0)
-        best = int(np.argmin(score))
-        if best == 0:
-            break
-        step = step / 12.0
-        # the place beyond stays first, to be compared with
-        grid = np.concatenate([grid[:1], grid[best] + step * np.arange(-16, 17)])
-    at = float(grid[best])
-    drop = float(score[0] - score[best])
-    past = at < low - 0.015 * span if reads == "depth" else at > high + 0.015 * span
-    return _Search(
-        at=at,
-        u=_width(curves, geometry, reads, at, span),
-        score=float(score[best]),
-        outside=bool(best == 0 or drop < 4.0 or past),
-        drop=drop,
-    )
-
-
-def _width(
-    curves: list[RemovalCurve], geometry: Geometry, reads: str, at: float, span: float
-) -> float:
-    """Standard uncertainty of the contact: curvature of chi-squared, and scatter between strokes."""
-    reach = 0.1 * span
-    grid = at + np.linspace(-reach, reach, 401)
-    table = np.stack([_chi_squared(c, geometry, reads, grid) for c in curves])
-    points = np.asarray([c.reading.size + 1 for c in curves])
-    scale = np.maximum(table.min(axis=1) / points, 1.0)
-    scaled = np.minimum((table - table.min(axis=1, keepdims=True)) / scale[:, None], _CAP)
-    pooled = scaled.sum(axis=0) - scaled.sum(axis=0).min()
-    inside = grid[pooled <= 1.0]
-    curvature = 0.5 * float(inside.max() - inside.min()) if inside.size else reach
-    curvature = max(curvature, float(grid[1] - grid[0]) * 0.5)
-    own = grid[table.argmin(axis=1)]
-    if len(curves) < 3:
-        return curvature
-    spread = 1.4826 * float(np.median(np.abs(own - np.median(own)))) / np.sqrt(len(curves))
-    return float(max(curvature, spread))
-
-
 def _sign(
     said: str | None,
     said_at: Quantity | None,
-    searches: dict[str, _Search],
+    searches: dict[str, ContactSearch],
     clear: list[RemovalCurve],
     geometry: Geometry,
     sheet: RunSheet,
@@ -294,7 +181,7 @@ def _score_at(curves: list[RemovalCurve], geometry: Geometry, reads: str, at: fl
     other = "height" if reads == "depth" else "depth"
     total = 0.0
     for curve in curves:
-        mine = float(_chi_squared(curve, geometry, reads, grid)[0])
-        best = min(mine, float(_chi_squared(curve, geometry, other, grid)[0]))
+        mine = float(chi_squared(curve, geometry, reads, grid)[0])
+        best = min(mine, float(chi_squared(curve, geometry, other, grid)[0]))
         total += min(mine / max(best / (curve.reading.size + 1), 1.0), 1e6)
     return total

@@ -79,5 +79,6 @@ def spacing_reading(series: EvidenceSeries, ledger: LedgerView) -> Reading:
         implies=name,
         values=[Quantity(v.value / count, (v.u or 0.0) / count, "nm") for v in values],
         details={"layers_per_period": count},
+        notes=[f"{series.label}: a spacing counts no layers; it tests the layer thickness"],
         zero_is_natural=True,
     )

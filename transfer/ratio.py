@@ -113,7 +113,8 @@ def transfer_ratios(
     safe = np.where(coated > 0, coated, np.nan)
     ratio = removed / safe
     scale = 1.0 / safe
-    dwell = (by_mean * fit.mean_variance) @ by_mean.T
+    known = np.where(np.isfinite(fit.mean_variance), fit.mean_variance, 0.0)
+    dwell = (by_mean * known) @ by_mean.T
     film = by_film @ fit.covariance @ by_film.T
     outer = np.outer(scale, scale)
     level = np.diag((ratio * u_level * scale) ** 2)

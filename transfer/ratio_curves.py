@@ -23,7 +23,7 @@ class RemovalCurve:
     """Film gone since the dwell before, at the set point and with creep taken out.
 
     reading : (b,) mm. removed : (b,) cm^2. variance : (b,) cm^4, independent part. time : (b,) s.
-    total : cm^2 between the two dwells, u_total its standard uncertainty (cm^2).
+    time_start, time_end : s. total : cm^2 between the two dwells, u_total its standard uncertainty (cm^2).
     """
 
     move: int
@@ -37,6 +37,8 @@ class RemovalCurve:
     time: FloatArray
     total: float
     u_total: float
+    time_start: float
+    time_end: float
 
 
 def removal_curve(
@@ -89,4 +91,18 @@ def removal_curve(
     left = float(film_area(nodes, fit, after, middle)[0])
     total = scale - left
     u_total = scale * float(np.sqrt(fit.mean_variance[before] + fit.mean_variance[after]))
-    return RemovalCurve(move, before, after, start, end, x, removed, variance, t, total, u_total)
+    return RemovalCurve(
+        move=move,
+        before=before,
+        after=after,
+        start=start,
+        end=end,
+        reading=x,
+        removed=removed,
+        variance=variance,
+        time=t,
+        total=total,
+        u_total=u_total,
+        time_start=way.start,
+        time_end=way.end,
+    )

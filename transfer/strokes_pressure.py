@@ -21,8 +21,8 @@ _BAND_TOLERANCE = 1.5
 _BAND_SCATTER = 5.0
 # A dip that comes with a move (the controller lagging behind a fast stroke) does not end the hold, up to
 # this part of the pressure; deeper ones, or ones that last while the dipper rests, are a lost film.
-_DIP_PART = 0.2
-_SETTLING_SECONDS = 20.0
+_DIP_PART = 0.5
+_SETTLING_SECONDS = 60.0
 _REST_OFF_SECONDS = 20.0
 # A plateau is one that keeps this many seconds and rows and this part of the log.
 _PLATEAU_SECONDS = 20.0

@@ -18,8 +18,10 @@ __all__ = ["Change", "Relaxation", "relaxations"]
 FloatArray = NDArray[np.float64]
 
 _STEPS = 2000
-# The record and the lift-off are facts, not wishes.
+# The record and the lift-off are facts, not wishes; guards can be given up, but collapsed or mixed film is
+# not dipped in.
 _FIXED = ("record", "lift-off")
+_GUARDS = ("collapse margin", "coexistence")
 
 
 @dataclass(frozen=True)
@@ -86,7 +88,7 @@ def relaxations(inputs: TargetInputs, choice: Choice) -> tuple[Relaxation, ...]:
     Returns
     -------
     tuple of Relaxation
-        Empty when a window is open.
+        Empty when a window is open, or when none would open short of dipping in collapsed or mixed film.
     """
     if choice.windows:
         return ()
@@ -103,10 +105,19 @@ def relaxations(inputs: TargetInputs, choice: Choice) -> tuple[Relaxation, ...]:
     # an end found by halving may sit a rounding error outside
     short = np.where(np.isfinite(slack), np.maximum(-slack, 0.0), np.inf)
     short[short < 1e-9] = 0.0
+    sane = np.ones(grid.size, dtype=np.bool_)
+    for j, rule in enumerate(rules):
+        if rule.name in _FIXED:
+            sane &= short[j] == 0.0
+        elif rule.name in _GUARDS:
+            sane &= (short[j] == 0.0) | (short[j] < rule.demand)
+    if not sane.any():
+        return ()
+    short, grid = short[:, sane], grid[sane]
     single = []
     for j, rule in enumerate(rules):
         others = (np.delete(short, j, axis=0) == 0.0).all(axis=0)
-        if rule.name in _FIXED or not others.any():
+        if not others.any():
             continue
         at = np.flatnonzero(others)[int(np.argmin(short[j, others]))]
         change, pressure = _change(rule, float(short[j, at])), float(grid[at])
@@ -130,10 +141,7 @@ def _together(
     rules: tuple[Rule, ...], short: FloatArray, grid: FloatArray
 ) -> tuple[Relaxation, ...]:
     demand = np.array([max(rule.demand, 1e-12) for rule in rules])
-    fixed = np.array([rule.name in _FIXED for rule in rules])
-    possible = (short[fixed] == 0.0).all(axis=0)
-    if not possible.any():
-        return ()
+    possible = np.ones(grid.size, dtype=np.bool_)
     relative = short / demand[:, None]
     # rules that can only be dropped do not say where to dip
     finite = np.where(np.isfinite(relative), relative, 0.0)
