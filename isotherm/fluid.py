@@ -83,7 +83,7 @@ def analyse_fluid(trace: Trace, result: IsothermResult) -> FluidResult:
     whole = _fit(points, thermal, result)
     lower = None if whole.holds else _lower_part(points, thermal, result)
     warnings = []
-    if branch.zero_offset.u is None:
+    if branch.zero_offset.u_random is None:
         warnings.append("the zero of pressure was not confirmed: it goes straight into Π_coh")
     if not result.area_relative_u:
         warnings.append("no uncertainty of the area scale: u of ω lacks that part")

@@ -14,7 +14,7 @@ from isotherm.mixture_areas import Composition
 from isotherm.mixture_result import CompositionPressure, SurfacePhaseRule
 from isotherm.quantity import Quantity
 from isotherm.result import Branch, IsothermResult
-from isotherm.series import format_p, random_part
+from isotherm.series import format_p
 
 __all__ = ["surface_phase_rule"]
 
@@ -44,9 +44,7 @@ def _points(
         for i in composition.runs:
             quantity = _pressure(results[i].headline, kind)
             if quantity is not None:
-                zero = results[i].headline.zero_offset.u or 0.0
-                u = math.hypot(random_part(quantity), results[i].pressure_u or 0.0, zero)
-                here.append((quantity, u))
+                here.append((quantity, quantity.u or 0.0))
         found.append(here)
         if len(here) > 1:
             values = np.array([q.value for q, _ in here])

@@ -87,7 +87,7 @@ def analyse_temperature(
         raise UpstrokeError(
             "all runs have one temperature", remedy="give runs at two temperatures or more"
         )
-    line = _pressure_line(runs, results, warnings)
+    line = _pressure_line(runs, warnings)
     tension, tension_from = _tension_slope(runs, sheets, warnings)
     widths = _widths(runs, results, sheets)
     area_line = (
@@ -190,9 +190,7 @@ def _difference(onset: Quantity, end: Quantity, relative: float) -> Quantity:
     )
 
 
-def _pressure_line(
-    runs: Sequence[TemperatureRun], results: Sequence[IsothermResult], warnings: list[str]
-) -> StraightLine | None:
+def _pressure_line(runs: Sequence[TemperatureRun], warnings: list[str]) -> StraightLine | None:
     """Π_t against T through the runs that have a coexistence."""
     places = [i for i, r in enumerate(runs) if r.pressure is not None]
     without = [runs[i].name for i in range(len(runs)) if i not in places]
@@ -203,16 +201,8 @@ def _pressure_line(
         warnings.append("fewer than two temperatures show a coexistence: no slope, no heat")
         return None
     found = [q for i in places if (q := runs[i].pressure) is not None]
-    u = np.array(
-        [
-            math.sqrt(
-                random_part(q) ** 2
-                + (results[i].pressure_u or 0.0) ** 2
-                + (results[i].headline.zero_offset.u or 0.0) ** 2
-            )
-            for i, q in zip(places, found, strict=True)
-        ]
-    )
+    # each run has its own zero and its own placing of the probe: all of u is between runs
+    u = np.array([q.u or 0.0 for q in found])
     u_kelvin = np.array([runs[i].kelvin.u or 0.0 for i in places])
     line = fit_straight_line(kelvin, np.array([q.value for q in found]), u, u_kelvin)
     if len(places) == 2:
