@@ -7,7 +7,7 @@ from typing import Final
 
 from isotherm.sheet_schema import Key
 
-__all__ = ["ELECTRODE", "KINDS", "POINT_KEYS", "Kind"]
+__all__ = ["COMMON", "ELECTRODE", "KINDS", "POINT_KEYS", "Kind"]
 
 
 @dataclass(frozen=True)
@@ -56,7 +56,7 @@ def _whole(name: str, meaning: str, example: int, high: int) -> Key:
     return Key(name, "integer", meaning, str(example), low=1, high=high)
 
 
-_COMMON: Final = (
+COMMON: Final = (
     Key("label", "text", "what to call this series", '"crystal B"'),
     Key("film", "text", "which of alternating films it sees; all when left out", '"spacer"'),
     Key("intercept", "choice", "value of the bare substrate: fitted, or zero", '"free"',
@@ -160,7 +160,7 @@ _LIST: Final = (
 
 KINDS: Final[dict[str, Kind]] = {
     kind.name: Kind(
-        kind.name, kind.meaning, kind.units, (*_COMMON, *kind.keys), kind.files, kind.lowest
+        kind.name, kind.meaning, kind.units, (*COMMON, *kind.keys), kind.files, kind.lowest
     )
     for kind in _LIST
 }
