@@ -26,6 +26,7 @@ __all__ = [
 
 FloatArray = NDArray[np.float64]
 
+CORNER_SHARE: Final = 0.15  # standard uncertainty of a knee's pressure, of the corner cut off
 LIFT_OFF_SIGMAS: Final = 3.0  # a gradual lift-off: pressure above zero by this many σ of one row
 
 
@@ -34,11 +35,15 @@ def knee_point(view: BranchView, knee: int) -> Point:
     model = view.model
     index = model.coefficients.size + knee
     u_x = math.sqrt(max(float(model.covariance[index, index]), 0.0))
+    if model.knot_doubt is not None:
+        u_x = math.hypot(u_x, float(model.knot_doubt[knee]))
     value, gradient = model.knee_pressure(knee)
     variance = float(gradient @ model.covariance @ gradient)
+    # the corner that a rounding cuts off is about |step| × width high; so much of it is convention
+    corner = CORNER_SHARE * abs(model.slope_step(knee)[0]) * float(model.widths[knee])
     return Point(
         view.area(float(model.knots[knee]), u_x),
-        view.pressure(value, math.sqrt(max(variance, 0.0))),
+        view.pressure(value, math.hypot(math.sqrt(max(variance, 0.0)), corner)),
     )
 
 

@@ -37,7 +37,8 @@ class KneeModel:
     coefficients : constant first, then the polynomials in order, mN/m.
     covariance : (p + 2K, p + 2K) of coefficients, knots, ln widths, scaled to the residuals.
     rss : weighted sum of squares; dof : n - parameters; inflation : factor put on the covariance.
-    start, stop : first and last x of the fit.
+    start, stop : first and last x of the fit. prior_precision : of the ln widths.
+    knot_doubt : (K,) standard uncertainty of each knee's x beyond the covariance, as a convention.
     """
 
     knots: FloatArray
@@ -52,6 +53,7 @@ class KneeModel:
     start: float
     stop: float
     prior_precision: float = 0.0
+    knot_doubt: FloatArray | None = None
 
     def pressure(self, x: FloatArray) -> FloatArray:
         """Fitted pressure at (n,) x, mN/m."""

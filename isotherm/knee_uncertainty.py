@@ -22,7 +22,7 @@ FloatArray = NDArray[np.float64]
 
 SHAPE_SIGMA: Final = 0.5  # of the mixture between softplus (0) and the other roundings (about ±1)
 # of the next polynomial term, as a share of the pressure that the stretch covers
-DEGREE_SIGMA: Final = 0.05
+DEGREE_SIGMA: Final = 0.1
 # A rounded knee's place is a convention: extended how far, from where? Our choice, a standard uncertainty
 # of this share of the rounding's width, on its area alone (the pressure there carries its own).
 WIDTH_SHARE: Final = 0.15
@@ -49,9 +49,12 @@ def with_model_doubt(
     shapes = (
         terms.jump * model.widths[:, None] * _other_shape(terms.z) if k else np.empty((0, x.size))
     )
-    extra = [
-        (terms.g[j] / model.scales[j]) ** (degree + 1) for j, degree in enumerate(model.degrees)
-    ]
+    lengths = np.diff(np.concatenate([[model.start], model.knots, [model.stop]]))
+    extra = []
+    for j, degree in enumerate(model.degrees):
+        along = terms.g[j] / max(float(lengths[j]), 1e-12)
+        # zero at both ends of the stretch: it bends the branch and leaves its meeting points alone
+        extra.append(along ** (degree + 1) - along**degree)
     cover = [max(float(np.ptp(terms.parts[j])), 1e-6) for j in range(k + 1)]
     jacobian = np.concatenate([terms.jacobian, shapes.T, np.stack(extra, axis=1)], axis=1)
     jacobian *= root[:, None]
@@ -67,11 +70,10 @@ def with_model_doubt(
     gain = correlation_gain(scaled * np.sqrt(huber))
     n = p + 2 * k
     covariance = inverse[:n, :n] * gain
-    index = np.arange(p, p + k)
-    covariance[index, index] += np.square(WIDTH_SHARE * model.widths)
     return replace(
         model,
         covariance=covariance,
+        knot_doubt=WIDTH_SHARE * model.widths,
         inflation=gain,
     )
 
