@@ -12,6 +12,7 @@ from isotherm.sheet import RunSheet, Stack, StackFilm
 from transfer.evidence_from_result import ledger_from_result
 from transfer.evidence_ledger import FilmInputs, LedgerView
 from transfer.expected import expected_build, expected_design
+from transfer.expected_figure import draw_along
 from transfer.expected_stack import design_films, expected_stack
 from transfer.result import Deposition, ProfileWindow
 
@@ -187,3 +188,13 @@ def test_design_follows_type_and_first_stroke():
     assert order("Y", "down") == ("b", "a")
     assert order("X", "down") == ("b",)
     assert order("Z", "up") == ("a",)
+
+
+def test_figure_along_the_substrate_draws_the_columns():
+    result = transfer_result([stroke(1, "down", 1.0), stroke(2, "up", 0.9, deep=15.0)])
+    along = expected_stack(result, SHEET).along
+    figure = draw_along(along, designed_layers=4)
+    for axis, column in zip(figure.axes, (along.layers, along.thickness, along.mass), strict=True):
+        drawn = axis.get_lines()[0]
+        np.testing.assert_allclose(drawn.get_xdata(), column)
+        np.testing.assert_allclose(drawn.get_ydata(), along.height)
