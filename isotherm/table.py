@@ -5,7 +5,6 @@ from __future__ import annotations
 from collections.abc import Sequence
 from dataclasses import dataclass, field
 from pathlib import Path
-from typing import Final
 
 import numpy as np
 from numpy.typing import NDArray
@@ -13,13 +12,9 @@ from numpy.typing import NDArray
 from isotherm.errors import UpstrokeError
 from isotherm.sheet import RunSheet
 from isotherm.source import ColumnSource, Source
-from isotherm.table_header import (
-    Header,
-    HeaderCell,
-    find_header,
-    split_header,
-    whole_block,
-)
+from isotherm.table_cell import HeaderCell
+from isotherm.table_header import Header, find_header
+from isotherm.table_report import gaps_report, lines_report
 from isotherm.table_roles import (
     Assigned,
     assign_roles,
@@ -28,17 +23,15 @@ from isotherm.table_roles import (
     wanted_roles,
 )
 from isotherm.table_units import column_conversion
-from isotherm.text_bytes import decode, digest, is_workbook, read_bytes
+from isotherm.text_bytes import digest, is_workbook, read_bytes
 from isotherm.text_clock import clock_seconds
-from isotherm.text_layout import Block, find_block
+from isotherm.text_find import TextRows, find_rows
 from isotherm.text_numbers import read_numbers
 from isotherm.text_rows import Numbers
 
 __all__ = ["Table", "read_table"]
 
 FloatArray = NDArray[np.float64]
-
-_HEAD: Final = 1 << 16  # bytes looked at first to find the rows; more when they begin later
 
 
 @dataclass(frozen=True)
@@ -55,17 +48,6 @@ class Table:
     values: dict[str, FloatArray]
     lines: NDArray[np.int64]
     warnings: tuple[str, ...] = field(default=())
-
-
-@dataclass(frozen=True)
-class _Text:
-    """The export in an encoding that keeps ASCII, with the lines up to its rows."""
-
-    data: bytes
-    encoding: str
-    lines: tuple[str, ...]
-    block: Block
-    start: int
 
 
 def read_table(
@@ -103,7 +85,7 @@ def read_table(
         data = workbook_text(data, where)
     if not data[:4096].strip() and not data.strip():
         raise UpstrokeError("the file is empty", where=where, remedy="export the run again")
-    text = _find_rows(data, where)
+    text = find_rows(data, where)
     hints = sheet.columns if sheet is not None else ()
     header = _header(text, warnings)
     if text.block.earlier:
@@ -120,61 +102,14 @@ def read_table(
     numbers = read_numbers(
         text.data, text.start, text.block.first + 1, text.block, numeric, clocks, text.encoding
     )
-    _check_repeats(numbers, header, text, where, warnings)
+    lines_report(numbers, header, text, where, warnings)
     values, columns = _convert(numbers, taken, needs, where, warnings)
-    _report_gaps(numbers, taken, values, warnings)
+    gaps_report(numbers, taken, values, warnings)
     rows = len(numbers.lines)
     return Table(Source(where, sha256(), rows, columns), values, numbers.lines, tuple(warnings))
 
 
-def _find_rows(data: bytes, where: str) -> _Text:
-    """Decode, and find where the rows begin and how they are laid out."""
-    decoded = decode(data[: 4 * _HEAD], where=where, whole=len(data) <= 4 * _HEAD)
-    encoding = decoded.encoding
-    if encoding.startswith(("utf-16", "utf-32")):
-        data = decode(data, where=where).text.encode("utf-8", "replace")
-        encoding = "utf-8"
-    elif data.startswith(b"\xef\xbb\xbf"):
-        data = data[3:]
-    size = _HEAD
-    while True:
-        complete = size >= len(data)
-        head = data if complete else data[:size]
-        raw = head.splitlines(keepends=True)
-        if not complete and raw and not raw[-1].endswith((b"\n", b"\r")):
-            raw.pop()
-        lines = tuple(line.decode(encoding, "replace").rstrip("\r\n") for line in raw)
-        block = find_block(lines, complete=complete)
-        if block is not None:
-            block = whole_block(lines, block)
-            start = sum(len(line) for line in raw[: block.first])
-            return _Text(data, encoding, lines, block, start)
-        if complete:
-            raise _no_rows(lines, where)
-        size *= 8
-
-
-def _no_rows(lines: Sequence[str], where: str) -> UpstrokeError:
-    from isotherm.text_cells import cell_kind
-
-    filled = [line.strip(" \t;,|") for line in lines[:2000] if line.strip()]
-    single = sum(cell_kind(line, mark) == "N" for line in filled for mark in ".,") > 0
-    if single and sum(
-        cell_kind(line, ".") == "N" or cell_kind(line, ",") == "N" for line in filled
-    ) >= max(1, len(filled) // 2):
-        return UpstrokeError(
-            "one column of numbers only",
-            where=where,
-            remedy="an export needs at least two, such as area and pressure",
-        )
-    return UpstrokeError(
-        f"no rows of numbers in its {len(lines)} lines",
-        where=where,
-        remedy="export the readings as text, one row per reading",
-    )
-
-
-def _header(text: _Text, warnings: list[str]) -> Header:
+def _header(text: TextRows, warnings: list[str]) -> Header:
     """Header of the block, or what the free text above says of headerless columns."""
     block = text.block
     header = find_header(text.lines, block)
@@ -199,7 +134,7 @@ def _header(text: _Text, warnings: list[str]) -> Header:
 
 
 def _check_needs(
-    needs: Sequence[str], taken: Sequence[Assigned], header: Header, text: _Text, where: str
+    needs: Sequence[str], taken: Sequence[Assigned], header: Header, text: TextRows, where: str
 ) -> None:
     have = {one.role for one in taken}
     for need in needs:
@@ -208,7 +143,9 @@ def _check_needs(
             raise _missing_role(roles, header, text, where)
 
 
-def _missing_role(roles: Sequence[str], header: Header, text: _Text, where: str) -> UpstrokeError:
+def _missing_role(
+    roles: Sequence[str], header: Header, text: TextRows, where: str
+) -> UpstrokeError:
     cells = header.cells
     shown = ", ".join(describe(c, cell) for c, cell in enumerate(cells[:12]))
     names = " or ".join(role.replace("_", " ") for role in roles)
@@ -225,46 +162,8 @@ def _missing_role(roles: Sequence[str], header: Header, text: _Text, where: str)
     )
 
 
-def _nothing_known(header: Header, text: _Text, where: str) -> UpstrokeError:
+def _nothing_known(header: Header, text: TextRows, where: str) -> UpstrokeError:
     return _missing_role(("area", "molecular_area", "pressure"), header, text, where)
-
-
-def _check_repeats(
-    numbers: Numbers, header: Header, text: _Text, where: str, warnings: list[str]
-) -> None:
-    """Lines of text among the rows: the header again is fine, another header is not."""
-    if not numbers.skipped_count:
-        return
-    names = [cell.text for cell in header.cells]
-    above = {line.strip() for line in text.lines[: text.block.first]}
-    other = []
-    repeats = 0
-    for skipped in numbers.skipped:
-        if skipped.text in above:
-            repeats += 1
-            continue
-        cells = split_header(skipped.text, text.block.layout, text.block.columns)
-        if cells is not None and cells != names:
-            from isotherm.table_header import parse_cell
-
-            parsed = [parse_cell(cell) for cell in cells]
-            if sum(bool(cell.roles) for cell in parsed) >= 2:
-                raise UpstrokeError(
-                    f"the columns change to '{skipped.text[:60]}'",
-                    where=f"{where}, line {skipped.line}",
-                    remedy="give each part its own file",
-                )
-        other.append(skipped)
-    if repeats:
-        warnings.append(f"the header is repeated among the rows ({repeats} lines skipped)")
-    count = numbers.skipped_count - repeats
-    if count and other:
-        first = other[0]
-        lines = "1 line" if count == 1 else f"{count} lines"
-        warnings.append(
-            f"{lines} among or below the rows are no rows and were skipped; first, line "
-            f"{first.line}: '{first.text[:60]}'"
-        )
 
 
 def _convert(
@@ -311,36 +210,3 @@ def _convert(
         values[one.role] = converted
         columns[one.role] = ColumnSource(header, convert.text, one.column + 1)
     return values, columns
-
-
-def _report_gaps(
-    numbers: Numbers,
-    taken: Sequence[Assigned],
-    values: dict[str, FloatArray],
-    warnings: list[str],
-) -> None:
-    """Count missing, infinite and unreadable cells of each column."""
-    for one in taken:
-        if one.role not in values:
-            continue
-        column = numbers.columns.get(one.column)
-        if column is None:
-            column = values[one.role]
-        if np.isfinite(column).all():
-            continue
-        nan, infinite = np.isnan(column), np.isinf(column)
-        texts = numbers.unreadable.get(one.column)
-        named = describe(one.column, one.cell)
-        if texts is not None:
-            warnings.append(
-                f"column {named}: {texts.count} cells are text (first, line {texts.line}: '{texts.text}')"
-            )
-        missing = int(nan.sum()) - (texts.count if texts is not None else 0)
-        for count, mask, word in (
-            (missing, nan, "missing"),
-            (int(infinite.sum()), infinite, "infinite"),
-        ):
-            if count:
-                line = int(numbers.lines[int(np.argmax(mask))])
-                cells = "1 cell is" if count == 1 else f"{count} cells are"
-                warnings.append(f"column {named}: {cells} {word} (first, line {line})")

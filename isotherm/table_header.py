@@ -3,50 +3,20 @@
 from __future__ import annotations
 
 import re
-from collections.abc import Iterator, Sequence
+from collections.abc import Sequence
 from dataclasses import dataclass, replace
 from typing import Final
 
-from isotherm.table_words import plain_words, roles_of
+from isotherm.table_cell import HeaderCell, is_clock_format, parse_cell
 from isotherm.text_cells import MISSING, cell_kind
 from isotherm.text_layout import Block, Layout
 from isotherm.units import is_unit
 
-__all__ = ["Header", "HeaderCell", "find_header", "parse_cell", "split_header", "whole_block"]
+__all__ = ["Header", "find_header", "split_header", "whole_block"]
 
 _LINES_ABOVE: Final = 12  # text lines looked at above the rows
 _NAME_LINES: Final = 4  # of them, lines that may hold the names
 _COMMENT_SIGNS: Final = "#%!*/'>"
-_BRACKETS: Final = re.compile(r"[(\[{<]([^()\[\]{}<>]{0,40})[)\]}>]")
-_CLOCK_FORMAT: Final = re.compile(
-    r"[hHmMsSdDyYjJtT]{1,4}(?:[:.\-/ ][hHmMsSfFdDyYjJtT]{1,4})+", re.ASCII
-)
-# What stands in brackets beside a name without being a unit.
-_NOTE_WORDS: Final = (
-    "raw filtered smoothed corrected mean average avg left right front back rear top bottom measured "
-    "calculated calc absolute abs pi gamma a t p v x y sensor probe channel ch kanal links rechts "
-    "total actual ist signal optional plate paper side l r"
-)
-_NOTES: Final = frozenset(_NOTE_WORDS.split())
-
-
-@dataclass(frozen=True)
-class HeaderCell:
-    """What the header says of one column.
-
-    unknown : text in the place of a unit that is none. clock : form of a clock time, such as hh:mm:ss.
-    """
-
-    text: str
-    name: str
-    unit: str | None = None
-    unknown: str | None = None
-    clock: str = ""
-
-    @property
-    def roles(self) -> tuple[str, ...]:
-        """Roles the column may play by its name and unit."""
-        return roles_of(self.name, self.unit)
 
 
 @dataclass(frozen=True)
@@ -55,86 +25,6 @@ class Header:
 
     cells: tuple[HeaderCell, ...]
     line: int | None = None
-
-
-def parse_cell(text: str) -> HeaderCell:
-    """Tell name and unit apart in one header cell.
-
-    Units stand in brackets, after a slash, a comma, `in`, a colon or an underscore, or simply at the end.
-    """
-    text = " ".join(text.strip().strip("\"'").split())
-    plain = text[:200]
-    groups = list(_BRACKETS.finditer(plain))
-    outer = re.search(r"[(\[](.{1,40})[)\]]\s*$", plain)
-    for match in [*reversed(groups), *([outer] if outer else [])]:
-        inside = match.group(1).strip()
-        name = " ".join((plain[: match.start()] + " " + plain[match.end() :]).split())
-        if _is_clock_format(inside):
-            return HeaderCell(text, name, clock=inside)
-        # one letter in brackets after a name is as often its symbol: then the unit must suit the name
-        if is_unit(inside) and (len(inside) > 1 or _suits(name, inside)):
-            return HeaderCell(text, name.rstrip(" /,:;"), inside)
-    found = _bare_unit(plain)
-    if found is not None:
-        return HeaderCell(text, found[0].rstrip(" /,:;-_"), found[1])
-    unknown = None
-    if groups:
-        inside = groups[-1].group(1).strip()
-        words = plain_words(inside).split()
-        if inside and words and not _NOTES.intersection(words) and len(inside) <= 20:
-            unknown = inside
-    elif "/" in plain:
-        name, _, right = plain.partition("/")
-        right = right.strip()
-        if (
-            roles_of(name, None)
-            and 0 < len(right) <= 20
-            and not plain_words(right).startswith("molec")
-        ):
-            unknown = right
-    name = plain if unknown is None else plain.replace(unknown, " ").strip(" ()[]{}<>/")
-    return HeaderCell(text, name, unknown=unknown)
-
-
-def _is_clock_format(text: str) -> bool:
-    return ":" in text and _CLOCK_FORMAT.fullmatch(text) is not None
-
-
-def _suits(name: str, unit: str) -> bool:
-    return bool(roles_of(name, unit))
-
-
-def _bare_unit(text: str) -> tuple[str, str] | None:
-    """A unit without brackets; of several ways to cut, the first that gives a known column."""
-    ways = list(_bare_ways(text))
-    known = (way for way in ways if _suits(*way))
-    return next(known, ways[0] if ways else None)
-
-
-def _bare_ways(text: str) -> Iterator[tuple[str, str]]:
-    """The whole cell, or what follows a slash, comma, colon, `in`, the last blanks or underscores."""
-    if (len(text) > 1 or text == "s") and is_unit(text) and not roles_of(text, None):
-        yield "", text
-    for match in re.finditer(r"/", text):
-        name, right = text[: match.start()].strip(), text[match.end() :].strip()
-        if name and is_unit(right):
-            yield name, right
-    for sign in (", ", ",", " in ", ": ", ":", ";"):
-        name, found, right = text.rpartition(sign)
-        if found and name.strip() and is_unit(right):
-            yield name.strip(), right.strip()
-    words = text.split()
-    for count in (3, 2, 1):
-        name, right = " ".join(words[:-count]), " ".join(words[-count:])
-        if name and is_unit(right) and (len(right) > 1 or (right != "A" and _suits(name, right))):
-            yield name, right
-    parts = text.split("_")
-    for count in (3, 2, 1):
-        name = " ".join(parts[:-count])
-        for joiner in ("/", " ", ""):
-            right = joiner.join(parts[-count:])
-            if name and is_unit(right) and _suits(name, right):
-                yield name, right
 
 
 def split_header(line: str, layout: Layout, columns: int) -> list[str] | None:
@@ -201,7 +91,7 @@ def _join_units(cells: list[str]) -> list[str]:
 
 def _is_unit_cell(cell: str) -> bool:
     bare = cell.strip("()[]{}<> ")
-    return is_unit(bare) or _is_clock_format(bare)
+    return is_unit(bare) or is_clock_format(bare)
 
 
 def _is_unit_line(cells: Sequence[str]) -> bool:
@@ -245,6 +135,7 @@ def find_header(lines: Sequence[str], block: Block) -> Header:
     columns = block.columns
     while columns > 2 and block.kinds[columns - 1] == "E":
         columns -= 1  # trailing separators make cells that no header names
+    counted = columns > 2 and _counts_rows(lines, block)
     above: list[tuple[int, list[str]]] = []
     gap = False
     number = block.first
@@ -259,6 +150,9 @@ def find_header(lines: Sequence[str], block: Block) -> Header:
         cells = split_header(line, block.layout, block.columns) or split_header(
             line, block.layout, columns
         )
+        if cells is None and counted:
+            cells = split_header(line, block.layout, columns - 1)
+            cells = None if cells is None else ["", *cells]
         if cells is None or all(cell_kind(c, block.layout.decimal) in "NE" for c in cells):
             if above:
                 break
@@ -268,6 +162,18 @@ def find_header(lines: Sequence[str], block: Block) -> Header:
         gap = False
         above.append((number, cells + [""] * (block.columns - len(cells))))
     return _choose(above)
+
+
+def _counts_rows(lines: Sequence[str], block: Block) -> bool:
+    """Whether the first column numbers the rows, which statistics programs write without a header."""
+    firsts = []
+    for line in lines[block.first : block.first + 8]:
+        cells = block.layout.split(line)
+        if cells and line.strip():
+            firsts.append(cells[0].strip('"'))
+    return len(firsts) >= 2 and firsts in (
+        [str(number) for number in range(start, start + len(firsts))] for start in (0, 1)
+    )
 
 
 def _choose(above: list[tuple[int, list[str]]]) -> Header:
@@ -302,7 +208,7 @@ def _with_unit(cell: HeaderCell, unit: str) -> HeaderCell:
     bare = unit.strip("()[]{}<> ")
     if cell.unit is not None or not bare or bare.lower() in MISSING:
         return cell
-    if _is_clock_format(bare):
+    if is_clock_format(bare):
         return HeaderCell(cell.text, cell.name, clock=bare)
     name = cell.name
     if cell.unknown is not None:

@@ -10,7 +10,7 @@ from typing import Final
 from isotherm.errors import UpstrokeError
 from isotherm.sheet import ColumnHint
 from isotherm.sheet_schema import ROLES
-from isotherm.table_header import HeaderCell
+from isotherm.table_cell import HeaderCell
 from isotherm.table_words import ROLE_DIMENSION, roles_of
 from isotherm.units import dimension_fits, is_unit
 

@@ -7,7 +7,7 @@ import math
 import numpy as np
 
 from isotherm.text_cells import MISSING, to_number
-from isotherm.text_rows import MOST_SKIPPED_KEPT, Numbers, SkippedLine, Unreadable, Wanted
+from isotherm.text_rows import Numbers, SkippedLine, Unreadable, Wanted
 
 __all__ = ["read_lines", "read_regular"]
 
@@ -74,9 +74,7 @@ def read_lines(data: bytes, first_line: int, wanted: Wanted) -> Numbers:
         ]
         times = [cells[c] if c < count else "" for c in wanted.clocks]
         if not 2 <= count <= most or not _is_row(cells, values, times, wanted):
-            out.skipped_count += 1
-            if len(out.skipped) < MOST_SKIPPED_KEPT:
-                out.skipped.append(SkippedLine(number, line.strip()[:200]))
+            out.skip(SkippedLine(number, line.strip()[:200]))
             continue
         for place, value in enumerate(values):
             if value is None:

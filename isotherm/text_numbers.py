@@ -15,7 +15,7 @@ from isotherm.text_cells import to_number
 from isotherm.text_fast import read_fast
 from isotherm.text_layout import Block
 from isotherm.text_lines import read_lines, read_regular
-from isotherm.text_rows import MOST_SKIPPED_KEPT, Numbers, Wanted
+from isotherm.text_rows import Numbers, Wanted
 
 __all__ = ["read_numbers"]
 
@@ -164,8 +164,9 @@ def _joined(pieces: list[Numbers], wanted: Wanted) -> Numbers:
         np.concatenate([p.lines for p in pieces]),
     )
     for piece in pieces:
-        out.skipped += piece.skipped[: MOST_SKIPPED_KEPT - len(out.skipped)]
-        out.skipped_count += piece.skipped_count
+        for skipped in piece.skipped.values():
+            out.skip(skipped)
+        out.skipped_count += piece.skipped_count - sum(s.count for s in piece.skipped.values())
         for column, found in piece.unreadable.items():
             have = out.unreadable.get(column)
             out.unreadable[column] = found if have is None else have.and_more(found)

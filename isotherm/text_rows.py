@@ -11,9 +11,9 @@ from numpy.typing import NDArray
 
 from isotherm.text_layout import Block
 
-__all__ = ["MOST_SKIPPED_KEPT", "Numbers", "SkippedLine", "Unreadable", "Wanted"]
+__all__ = ["Numbers", "SkippedLine", "Unreadable", "Wanted"]
 
-MOST_SKIPPED_KEPT: Final = 50
+_MOST_TEXTS: Final = 50
 
 
 @dataclass(frozen=True)
@@ -41,10 +41,11 @@ class Wanted:
 
 @dataclass(frozen=True)
 class SkippedLine:
-    """A line among the rows that is no row: its number (from 1) and text."""
+    """Lines of one text among the rows that are no rows: number of the first (from 1), how many."""
 
     line: int
     text: str
+    count: int = 1
 
 
 @dataclass(frozen=True)
@@ -67,13 +68,22 @@ class Numbers:
     columns : column (0-based) -> (n,) array, NaN where a cell is missing.
     clocks : column -> n cells of text, "" where missing.
     lines : (n,) line number in the file, from 1.
-    skipped : lines that are no rows (the first of them), `skipped_count` of them in all.
+    skipped : text -> lines that are no rows (the first texts met), `skipped_count` lines in all.
     unreadable : column -> its cells that are text.
     """
 
     columns: dict[int, NDArray[np.float64]]
     clocks: dict[int, list[str]]
     lines: NDArray[np.int64]
-    skipped: list[SkippedLine] = field(default_factory=list)
+    skipped: dict[str, SkippedLine] = field(default_factory=dict)
     skipped_count: int = 0
     unreadable: dict[int, Unreadable] = field(default_factory=dict)
+
+    def skip(self, lines: SkippedLine) -> None:
+        """Note lines that are no rows."""
+        self.skipped_count += lines.count
+        have = self.skipped.get(lines.text)
+        if have is not None:
+            self.skipped[lines.text] = SkippedLine(have.line, have.text, have.count + lines.count)
+        elif len(self.skipped) < _MOST_TEXTS:
+            self.skipped[lines.text] = lines

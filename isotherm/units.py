@@ -72,14 +72,18 @@ def _normal(text: str) -> str:
     text = unicodedata.normalize("NFKC", text).strip().strip("[]{}<>'\"` ").strip()
     for old, new in _FOLDS:
         text = text.replace(old, new)
+    text = _SQUARE_BEFORE.sub(r"\1^2", text)
+    text = _SQUARE_AFTER.sub("^2", text)
     text = re.sub(r"\bper\b|\bpro\b|\bpar\b|\bpor\b", "/", text)
     text = re.sub(r"°\s?C\b|\bdeg\.? ?C\b|\bo ?C\b|\bGrad C\b", "degC", text)
     return text.strip()
 
 
+_SQUARE_BEFORE: Final = re.compile(r"\b(?:square|sq\.?) ?([^\W\d_]+)", re.IGNORECASE)
+_SQUARE_AFTER: Final = re.compile(r" ?\b(?:squared|sq\.?)(?!\w)", re.IGNORECASE)
 # (NFKC has already turned superscript digits into digits and the ångström and micro signs into letters.)
 _FOLDS: Final = (
-    ("−", "-"), ("–", "-"), ("—", "-"), ("⁄", "/"), ("∕", "/"), ("÷", "/"), ("**", "^"),
+    ("\\AA", "Å"), ("−", "-"), ("–", "-"), ("—", "-"), ("⁄", "/"), ("∕", "/"), ("÷", "/"), ("**", "^"),
     ("⋅", "·"), ("•", "·"),
     ("∙", "·"), ("×", "·"), ("*", "·"), ("μ", "u"), ("µ", "u"), ("{", ""), ("}", ""), ("$", ""), ("\\", ""),
     ("º", "°"), ("˚", "°"),

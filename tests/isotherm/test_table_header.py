@@ -8,7 +8,7 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
-from isotherm.table_header import parse_cell
+from isotherm.table_cell import parse_cell
 from isotherm.table_words import roles_of
 
 _CELLS = [

@@ -150,3 +150,13 @@ def test_underscores_are_no_digits(tmp_path: Path) -> None:
     rows[20] = "1_0.0,2_3,4_5"
     path.write_text("\n".join([_HEADER, *rows]), encoding="utf-8")
     assert len(read_table(path).lines) == 49
+
+
+@pytest.mark.parametrize("mark", [".", ","])
+def test_the_decimal_mark_may_come_late(mark: str, tmp_path: Path) -> None:
+    path = tmp_path / "run.csv"
+    rows = ["240;0"] * 60 + [f"{240 - i / 2:.1f};{i / 4:.2f}".replace(".", mark) for i in range(60)]
+    path.write_text("Area (cm^2);Pressure (mN/m)\n" + "\n".join(rows) + "\n", encoding="utf-8")
+    table = read_table(path)
+    assert len(table.lines) == 120
+    assert table.values["area"][-1] == 210.5

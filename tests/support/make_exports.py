@@ -211,6 +211,23 @@ def _texts() -> dict[str, bytes]:
         "Time (s)        Surface Pressure (mN/m)    Trough Area (cm^2)\n"
         + _rows([three[0], three[2], three[1]], "\t\t".replace("\t", "      "))
     )
+    files["rows_named.dat"] = '"Time (s)" "Area (cm^2)" "Pressure (mN/m)"\n' + "".join(
+        f'"{i}" {t} {a} {p}\n' for i, (t, a, p) in enumerate(zip(*three, strict=True), 1)
+    )
+    files["rows_counted.csv"] = "Time (s),Area (cm^2),Pressure (mN/m)\n" + _rows(
+        [list(range(40)), *three], ","
+    )
+    files["index_column.csv"] = ",Time (s),Area (cm^2),Pressure (mN/m)\n" + _rows(
+        [list(range(40)), *three], ","
+    )
+    files["latex.csv"] = "$t$ (s),$A$ (\\AA$^2$),$\\Pi$ (mN m$^{-1}$)\n" + _rows(
+        [three[0], *molecule], ","
+    )
+    files["dotted_names.csv"] = "Time.s,Area.cm2,Pressure.mN.m\n" + _rows(three, ",")
+    files["markup.csv"] = "Area (Å<sup>2</sup>),Pressure (mN/m)\n" + _rows(molecule, ",")
+    files["words_for_units.csv"] = (
+        "Area per molecule (square ångström),Pressure (mN per m)\n" + _rows(molecule, ",")
+    )
     out = {name: text.encode("utf-8") for name, text in files.items()}
     german = files["semicolon_comma.csv"]
     out["bom.csv"] = b"\xef\xbb\xbf" + german.encode("utf-8")
