@@ -61,10 +61,8 @@ def _answer(work: Callable[[Item], Result], item: Item) -> _Answer[Result]:
     except MemoryError:
         return _Answer(None, f"{item}: not enough memory; leave this file out")
     except Exception as error:  # one bad file must not end a thousand good ones
-        kind = type(error).__name__
-        return _Answer(
-            None, f"{item}: the analysis failed ({kind}: {error}); please report this file"
-        )
+        what = " ".join(f"{type(error).__name__}: {error}".split())
+        return _Answer(None, f"{item}: the analysis failed ({what}); please report this file")
 
 
 def _answers(work: Callable[[Item], Result], items: Sequence[Item]) -> list[_Answer[Result]]:

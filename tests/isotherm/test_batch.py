@@ -69,8 +69,8 @@ def test_missing_file_is_one_line(tmp_path: Path) -> None:
 
 
 def test_rows_are_the_same_at_any_number_of_jobs(tmp_path: Path) -> None:
-    files = [write_trace(tmp_path / f"{i}.csv", i) for i in range(6)]
-    files.insert(3, str(tmp_path / "absent.csv"))
+    files = [write_trace(tmp_path / f"{i}.csv", i) for i in range(3)]
+    files.insert(1, str(tmp_path / "absent.csv"))
     one, two = (
         [
             (o.number, o.item, o.result, o.error)

@@ -22,7 +22,7 @@ def fluid(trace: Trace) -> FluidResult:
 
 def test_parameters_of_a_volmer_film_are_found() -> None:
     inside, holds = [], []
-    for seed in range(16):
+    for seed in range(10):
         rng = np.random.default_rng(50 + seed)
         result = fluid(volmer_trace(rng, scale=1 + rng.normal(0, 0.01)))
         holds.append(result.whole.holds)
