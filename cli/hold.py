@@ -8,6 +8,7 @@ from typing import TYPE_CHECKING, Annotated, Any
 import typer
 
 from cli.options import (
+    CheckOption,
     ColumnOption,
     CsvOption,
     ForceOption,
@@ -38,6 +39,7 @@ def hold(
             help="Time the film is to last, such as '4 h'; else the sheet's dipping gives it.",
         ),
     ] = None,
+    check: CheckOption = None,
     column: ColumnOption = None,
     json: JsonOption = None,
     csv: CsvOption = None,
@@ -56,16 +58,23 @@ def hold(
     from cli.film import record_settings
     from cli.inputs import load_sheet, read_time
     from cli.outputs import OutputChoice, Renderers, plan_outputs
+    from cli.serialise import input_stamp
+    from isotherm.check_result import load_check
     from isotherm.hold import analyse_hold
     from isotherm.hold_read import read_hold
 
     seconds = None if planned is None else read_time(planned, option="--over")
-    plan = plan_outputs(
-        OutputChoice(json, csv, force=force), [*records, *([sheet] if sheet else [])]
-    )
+    inputs = [*records, *(path for path in (sheet, check) if path is not None)]
+    plan = plan_outputs(OutputChoice(json, csv, force=force), inputs)
     run_sheet = load_sheet(sheet, column)
-    results = [analyse_hold(read_hold(path, run_sheet), run_sheet, seconds) for path in records]
-    settings = record_settings("hold", sheet, column, over_s=seconds)
+    before = None if check is None else load_check(check)
+    results = [
+        analyse_hold(read_hold(path, run_sheet), run_sheet, seconds, check=before)
+        for path in records
+    ]
+    settings = record_settings(
+        "hold", sheet, column, over_s=seconds, check=None if check is None else input_stamp(check)
+    )
     plan.deliver(
         Renderers(
             text=lambda: _text(results),

@@ -43,6 +43,7 @@ def _register(section: str, **summaries: str) -> None:
 _register(
     "A film on water",
     sheet="Write a commented run sheet to fill in.",
+    check="Clean surface, steady probe, true barriers, before a film.",
     isotherm="Areas, phases, transitions, collapse and modulus of a compression.",
     hold="Film stability: loss over time, and by which law.",
     fluid="Co-area and cohesion of the fluid branch, gaseous limit.",
@@ -56,6 +57,7 @@ _register(
 )
 _register(
     "Series of runs",
+    batch="One row a run for folders of isotherms.",
     replicates="Mean curve, spread of every feature, outlying runs.",
     mixture="Excess area and Gibbs energy of mixtures, miscibility.",
     temperature="Slope and heat of the transition, critical point, trends.",

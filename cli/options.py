@@ -9,6 +9,7 @@ import typer
 
 __all__ = [
     "AtOption",
+    "CheckOption",
     "ColumnOption",
     "CommonSheetOption",
     "CsvOption",
@@ -82,6 +83,14 @@ ColumnOption = Annotated[
         "--column",
         metavar="ROLE=WHICH[:UNIT]",
         help="Say what a column holds, by number (from 1) or header: --column area=2:cm^2. Repeat.",
+    ),
+]
+CheckOption = Annotated[
+    Path | None,
+    typer.Option(
+        "--check",
+        metavar="JSON",
+        help="What upstroke check --json wrote: zero and drift of the probe.",
     ),
 ]
 KeepGoingOption = Annotated[

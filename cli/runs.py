@@ -37,6 +37,9 @@ class Run:
     columns: tuple[str, ...] = ()
     at: tuple[float, ...] = (10.0, 20.0, 30.0, 40.0)
 
+    def __str__(self) -> str:
+        return str(self.trace)
+
 
 def find_runs(
     traces: Sequence[Path],

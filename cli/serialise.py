@@ -100,7 +100,7 @@ def _library_version(name: str) -> str | None:
 def with_provenance(payload: dict[str, Any], settings: dict[str, Any]) -> dict[str, Any]:
     """Return `payload` with the command's settings and the versions that made it, both at the top.
 
-    Settings the analysis recorded itself are kept; `settings` adds to them.
+    Settings the analysis recorded itself are kept, after those of the command, which go first.
     """
     versions: dict[str, str | None] = {
         "upstroke": __version__,
@@ -108,7 +108,8 @@ def with_provenance(payload: dict[str, Any], settings: dict[str, Any]) -> dict[s
     }
     versions.update({name: _library_version(name) for name in NUMERIC_LIBRARIES})
     own = payload.get("settings")
-    merged = {**settings, **(own if isinstance(own, dict) else {})}
+    merged = {**(own if isinstance(own, dict) else {}), **settings}
+    merged = {**{key: merged[key] for key in settings}, **merged}
     out: dict[str, Any] = {}
     for key, value in payload.items():
         if key != "settings":

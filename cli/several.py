@@ -3,17 +3,17 @@
 from __future__ import annotations
 
 import sys
-from collections.abc import Callable, Iterable, Iterator, Sequence
-from contextlib import AbstractContextManager, nullcontext
+from collections.abc import Callable, Iterator, Sequence
+from contextlib import contextmanager
 from dataclasses import dataclass
-from typing import Any, Generic, TypeVar
+from typing import Generic, TypeVar
 
 import typer
 
 from cli.terminal import complain
 from isotherm.errors import UpstrokeError
 
-__all__ = ["Outcomes", "run_each"]
+__all__ = ["Outcomes", "progress", "run_each"]
 
 Item = TypeVar("Item")
 Result = TypeVar("Result")
@@ -61,60 +61,44 @@ def run_each(
     UpstrokeError
         An item is bad and `keep_going` is false, or every item is.
     """
+    if jobs == 1 and not keep_going:
+        # nothing is caught on the way: a fault of the program shows as one
+        with progress(len(items)) as step:
+            found = []
+            for item in items:
+                found.append(work(item))
+                step()
+        return Outcomes(list(items), found, 0)
+    from isotherm.batch import run_batch
+
     done: list[Item] = []
     results: list[Result] = []
     failed = 0
-    with _progress(len(items)) as bar:
-        for item, outcome in zip(items, _outcomes(items, work, jobs), strict=True):
-            if isinstance(outcome, UpstrokeError):
-                if not keep_going:
-                    raise outcome
-                complain(str(outcome))
+    with progress(len(items)) as step:
+        for outcome in run_batch(items, work, jobs=jobs):
+            if outcome.result is not None:
+                done.append(outcome.item)
+                results.append(outcome.result)
+            elif keep_going:
+                complain(outcome.error or "failed")
                 failed += 1
             else:
-                done.append(item)
-                results.append(outcome)
-            if bar is not None:
-                bar.update(1)
+                raise UpstrokeError(outcome.error or "failed")
+            step()
     if not results:
         raise UpstrokeError("none of the files could be analysed", remedy="see the lines above")
     return Outcomes(done, results, failed)
 
 
-@dataclass(frozen=True)
-class _Caught(Generic[Item, Result]):
-    """Work that returns a refusal instead of raising it; it pickles when `work` does."""
-
-    work: Callable[[Item], Result]
-
-    def __call__(self, item: Item) -> Result | UpstrokeError:
-        try:
-            return self.work(item)
-        except UpstrokeError as error:
-            return error
-
-
-def _outcomes(
-    items: Sequence[Item], work: Callable[[Item], Result], jobs: int
-) -> Iterator[Result | UpstrokeError]:
-    caught: Callable[[Item], Result | UpstrokeError] = _Caught(work)
-    if jobs <= 1 or len(items) < 2:
-        yield from map(caught, items)
-        return
-    from concurrent.futures import ProcessPoolExecutor
-
-    with ProcessPoolExecutor(min(jobs, len(items))) as pool:
-        try:
-            # a few items at a time: enough to hide the cost of sending, few enough to share out
-            chunk = max(1, min(16, len(items) // (4 * jobs)))
-            yield from pool.map(caught, items, chunksize=chunk)
-        finally:
-            pool.shutdown(wait=False, cancel_futures=True)
-
-
-def _progress(length: int) -> AbstractContextManager[Any]:
+@contextmanager
+def progress(length: int) -> Iterator[Callable[[], None]]:
+    """Show a bar on standard error where a person watches; yields what to call after each item."""
     if length < BAR_FROM or not sys.stderr.isatty():
-        return nullcontext()
-    steps: Iterable[int] = range(length)
-    bar: AbstractContextManager[Any] = typer.progressbar(steps, label="runs", file=sys.stderr)
-    return bar
+        yield lambda: None
+        return
+    with typer.progressbar(range(length), label="runs", file=sys.stderr) as bar:
+
+        def step() -> None:
+            bar.update(1)
+
+        yield step

@@ -8,6 +8,7 @@ from typing import Annotated
 import typer
 
 from cli.options import (
+    CheckOption,
     ColumnOption,
     CsvOption,
     FigureOption,
@@ -30,6 +31,7 @@ def target(
         list[Path] | None,
         typer.Option("--hold", metavar="RECORD", help="Record of the film held. Repeat."),
     ] = None,
+    check: CheckOption = None,
     column: ColumnOption = None,
     json: JsonOption = None,
     csv: CsvOption = None,
@@ -52,7 +54,7 @@ def target(
     from cli.serialise import input_stamp
     from cli.single import deliver_one
 
-    inputs = [trace, sheet, *(holds or [])]
+    inputs = [trace, sheet, *(holds or []), *([check] if check else [])]
     plan = plan_outputs(OutputChoice(json, csv, figure, force=force), inputs)
 
     from dataclasses import replace
@@ -60,6 +62,7 @@ def target(
     from cli.target_csv import plan_rows
     from cli.target_text import target_text
     from isotherm.analysis import analyse
+    from isotherm.check_result import load_check
     from isotherm.hold import analyse_hold
     from isotherm.hold_read import read_hold
     from isotherm.trace_read import read_trace
@@ -69,8 +72,12 @@ def target(
     run_sheet = load_sheet(sheet, column)
     # what the sheet says of columns is about the isotherm
     hold_sheet = replace(run_sheet, columns=())
-    held = tuple(analyse_hold(read_hold(path, hold_sheet), hold_sheet) for path in holds or [])
-    result = choose_target(analyse(read_trace(trace, run_sheet)), run_sheet, holds=held)
+    before = None if check is None else load_check(check)
+    held = tuple(
+        analyse_hold(read_hold(path, hold_sheet), hold_sheet, check=before) for path in holds or []
+    )
+    found = analyse(read_trace(trace, run_sheet))
+    result = choose_target(found, run_sheet, holds=held, check=before)
     deliver_one(
         plan,
         result.to_json(),
