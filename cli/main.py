@@ -46,6 +46,7 @@ _register(
     check="Clean surface, steady probe, true barriers, before a film.",
     isotherm="Areas, phases, transitions, collapse and modulus of a compression.",
     hold="Film stability: loss over time, and by which law.",
+    cycles="Work, hysteresis and area shift from cycle to cycle.",
     fluid="Co-area and cohesion of the fluid branch, gaseous limit.",
     oscillation="Storage and loss modulus per frequency, linearity.",
     potential="Effective dipole moment against area, onset of potential.",
