@@ -69,7 +69,7 @@ def _fit_settled(time: FloatArray, level: FloatArray, settling: float) -> _Fitte
         kept = time >= settling
         blocks = block_means(time[kept], level[kept], _BLOCKS)
         fits = fit_laws(blocks)
-        chosen = choose_law(fits)
+        chosen = choose_law(fits, float(time[-1]))
         residual = level[kept] - level_curve(chosen, time[kept])
         more = settling + settled_after(time[kept] - settling, residual)
         if not settling < more <= longest:
@@ -197,7 +197,7 @@ def analyse_hold(
         holds.append(_one(record, stretch, len(holds) + 1, planned, known))
     settings = {
         "laws": [law.name for law in holds[0].fits] if holds else [],
-        "choice": "simplest law within 2 of the least AICc",
+        "choice": "simplest law within 2 of the least AICc; constant where the loss is within U",
         "check": check.path if check is not None else None,
     }
     return HoldResult(

@@ -11,7 +11,7 @@ from isotherm.hold_average import law_loss, law_weights, node_moments
 from isotherm.hold_fit import LawFit
 from isotherm.hold_models import nucleation_type
 from isotherm.hold_result import LawResult
-from isotherm.quantity import Quantity
+from isotherm.quantity import COVERAGE_FACTOR, Quantity
 
 __all__ = ["choose_law", "law_results"]
 
@@ -31,11 +31,31 @@ _EQUATIONS: Final = {
 }
 
 
-def choose_law(fits: tuple[LawFit, ...]) -> LawFit:
-    """Simplest law within 2 of the least AICc; of equally simple ones the better supported."""
+def choose_law(fits: tuple[LawFit, ...], seconds: float) -> LawFit:
+    """Choose the law that describes a hold.
+
+    Parameters
+    ----------
+    fits : tuple of LawFit
+        Every law fitted to it.
+    seconds : float
+        Its duration, s.
+
+    Returns
+    -------
+    LawFit
+        The simplest law within 2 of the least AICc, of equally simple ones the better supported; the
+        constant one where the loss so described over the hold is not beyond its own expanded uncertainty
+        (U = 2 u): the criterion counts parameters against the likelihood's peak, and correlated noise makes
+        that peak look sharper than the loss is known.
+    """
     least = min(fit.aicc for fit in fits)
     supported = [fit for fit in fits if fit.aicc - least <= SUBSTANTIAL]
-    return min(supported, key=lambda fit: (fit.parameters, fit.aicc))
+    chosen = min(supported, key=lambda fit: (fit.parameters, fit.aicc))
+    loss = law_loss(chosen, seconds)
+    if abs(loss.value) > COVERAGE_FACTOR * loss.u:
+        return chosen
+    return next(fit for fit in fits if fit.name == "constant")
 
 
 def _parameters(fit: LawFit, unit: str) -> dict[str, Quantity]:

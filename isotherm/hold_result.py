@@ -63,7 +63,7 @@ class Hold:
     settling_s : left out after the arrival because the trough was still settling.
     pressure : mean over an isobaric hold, fitted start of an isochoric one, mN/m.
     start_level : drifting quantity at the arrival, by the chosen law.
-    laws : in order of support; chosen : name of the simplest law within 2 of the least AICc.
+    laws : in order of support; chosen : name of the law chosen (`hold_laws.choose_law`).
     planned_time : s, time asked for, or None.
     noise : scatter of one row group (`blocks`) about the chosen law, unit of the level.
     correlation_time : s, how long the scatter remembers; effective : independent groups it amounts to.

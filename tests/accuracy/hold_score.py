@@ -10,6 +10,7 @@ from __future__ import annotations
 import argparse
 import sys
 from dataclasses import dataclass
+from functools import partial
 from pathlib import Path
 
 import numpy as np
@@ -50,10 +51,10 @@ def record_of(hold: SimulatedHold) -> HoldRecord:
     return HoldRecord(source, hold.time, hold.area, "cm^2", hold.pressure, stretches)
 
 
-def score_one(seed: int) -> Score | None:
+def score_one(seed: int, noise: float = 1.0) -> Score | None:
     """Simulate, analyse and compare one hold; law and kind follow from the seed."""
     rng = np.random.default_rng(seed)
-    hold = simulate_hold(rng, LAWS[seed % 5], KINDS[(seed // 5) % 2])
+    hold = simulate_hold(rng, LAWS[seed % 5], KINDS[(seed // 5) % 2], noise)
     result = analyse_hold(record_of(hold), planned_time=FOUR_HOURS)
     if not result.holds:
         return None
@@ -90,6 +91,7 @@ def main() -> None:
     parser = argparse.ArgumentParser(description=__doc__)
     parser.add_argument("--holds", type=int, default=100)
     parser.add_argument("--seed", type=int, default=0)
+    parser.add_argument("--noise", type=float, default=1.0, help="times that of ordinary troughs")
     parser.add_argument("--jobs", type=int, default=1)
     parser.add_argument(
         "--misses", action="store_true", help="list wrong laws and losses off by > 3 u"
@@ -100,9 +102,9 @@ def main() -> None:
         from multiprocessing import Pool
 
         with Pool(options.jobs) as pool:
-            scores = pool.map(score_one, seeds, chunksize=5)
+            scores = pool.map(partial(score_one, noise=options.noise), seeds, chunksize=5)
     else:
-        scores = [score_one(seed) for seed in seeds]
+        scores = [score_one(seed, options.noise) for seed in seeds]
     print(summary(scores))
     if options.misses:
         for s in scores:

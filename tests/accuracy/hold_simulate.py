@@ -77,8 +77,10 @@ def _level(rng: np.random.Generator, law: str, t: FloatArray, loss: float, durat
     return 1.0 - bound * done[:-1], {"half": half, "power": power, "bound": bound}
 
 
-def simulate_hold(rng: np.random.Generator, law: str, kind: str = "isobaric") -> SimulatedHold:
-    """One hold of 1.5 to 5 h; see the module's docstring for what is added to the film's law."""
+def simulate_hold(
+    rng: np.random.Generator, law: str, kind: str = "isobaric", noise: float = 1.0
+) -> SimulatedHold:
+    """One hold of 1.5 to 5 h; `noise` multiplies what the module's docstring adds to the film's law."""
     duration = rng.uniform(1.5, 5.0) * 3600.0
     dt = float(rng.choice([0.5, 1.0, 2.0, 5.0, 10.0]))
     t = np.arange(0.0, duration, dt)
@@ -99,11 +101,13 @@ def simulate_hold(rng: np.random.Generator, law: str, kind: str = "isobaric") ->
     wander_tau = float(rng.uniform(600.0, 1800.0))
     if kind == "isobaric":
         area = area0 * level * (1.0 - transient / modulus)
-        area += rng.uniform(0.005, 0.05) * rng.normal(size=n)
-        area += area0 * rng.uniform(1e-4, 5e-4) * _correlated(rng, n, dt, jitter_tau)
-        area += area0 * rng.uniform(0.5e-4, 4e-4) * _correlated(rng, n, dt, wander_tau)
+        area += noise * rng.uniform(0.005, 0.05) * rng.normal(size=n)
+        area += noise * area0 * rng.uniform(1e-4, 5e-4) * _correlated(rng, n, dt, jitter_tau)
+        area += noise * area0 * rng.uniform(0.5e-4, 4e-4) * _correlated(rng, n, dt, wander_tau)
         pressure = set_pressure + transient
-        pressure += 0.03 * rng.normal(size=n) + 0.05 * _correlated(rng, n, dt, jitter_tau)
+        pressure += noise * 0.03 * rng.normal(size=n) + noise * 0.05 * _correlated(
+            rng, n, dt, jitter_tau
+        )
         area = np.round(area, 3)
         pressure = np.round(pressure, 2)
     else:
@@ -113,9 +117,11 @@ def simulate_hold(rng: np.random.Generator, law: str, kind: str = "isobaric") ->
         pressure = (
             set_pressure * level * (1.0 - 0.005 * np.exp(-t / tau_settle) * (amplitude != 0.0))
         )
-        pressure += rng.uniform(0.01, 0.06) * rng.normal(size=n)
-        pressure += rng.uniform(0.005, 0.04) * _correlated(rng, n, dt, jitter_tau)
-        pressure += set_pressure * rng.uniform(0.5e-4, 8e-4) * _correlated(rng, n, dt, wander_tau)
+        pressure += noise * rng.uniform(0.01, 0.06) * rng.normal(size=n)
+        pressure += noise * rng.uniform(0.005, 0.04) * _correlated(rng, n, dt, jitter_tau)
+        pressure += (
+            noise * set_pressure * rng.uniform(0.5e-4, 8e-4) * _correlated(rng, n, dt, wander_tau)
+        )
         area = np.round(area, 2)
         pressure = np.round(pressure, 3)
     return SimulatedHold(
