@@ -112,15 +112,18 @@ def unzeroed_isotherm() -> list[str]:
 # --- a film held -------------------------------------------------------------------------------
 
 
-def held() -> list[str]:
-    """The film held at 35 mN/m for two hours. Tension instead of pressure, minutes, semicolons."""
-    rng = np.random.default_rng(23)
+def held(seed: int, pressure: float, root: float, steady: float) -> list[str]:
+    """The film held for two hours. Tension instead of pressure, minutes, semicolons.
+
+    pressure : mN/m. root, steady : loss per square root of a second and per second.
+    """
+    rng = np.random.default_rng(seed)
     time = np.arange(0.0, 7200.0, 4.0)
-    start = film_area(35.0) * MOLECULES / NM2_PER_CM2
+    start = film_area(pressure) * MOLECULES / NM2_PER_CM2
     wander = np.convolve(rng.normal(0.0, 0.04, time.size + 9), np.ones(10) / 10.0, mode="valid")
-    area = start * (1.0 - 2.0e-4 * np.sqrt(time)) * (1.0 - wander / 390.0)
+    area = start * (1.0 - root * np.sqrt(time) - steady * time) * (1.0 - wander / 390.0)
     area = area + rng.normal(0.0, 0.01, time.size)
-    tension = 72.74 - 35.0 - wander + rng.normal(0.0, 0.03, time.size)
+    tension = 72.74 - pressure - wander + rng.normal(0.0, 0.03, time.size)
     celsius = np.full(time.size, 20.0)
     head = [MARK, "t [min];A [cm²];γ [mN/m];T [°C]"]
     forms = ("{:.4f}", "{:.3f}", "{:.3f}", "{:.1f}")
@@ -338,7 +341,8 @@ FILES: dict[str, tuple[Maker, str]] = {
     "spacer_isotherm.txt": (first_isotherm, "utf-8"),
     "second_isotherm.csv": (second_isotherm, "utf-16"),
     "unzeroed_isotherm.dat": (unzeroed_isotherm, "ascii"),
-    "held_35.csv": (held, "utf-8-sig"),
+    "held_35.csv": (lambda: held(23, 35.0, 2.0e-4, 0.0), "utf-8-sig"),
+    "held_45.csv": (lambda: held(26, 45.0, 0.0, 2.5e-5), "utf-8-sig"),
     "build_good.txt": (good_log, "utf-8"),
     "build_failing.csv": (failing_log, "cp1252"),
     "build_unzeroed.dat": (unzeroed_log, "ascii"),
