@@ -90,7 +90,7 @@ def change_points(ratios: FloatArray, group: NDArray[np.intp], u: FloatArray) ->
 
     import ruptures
 
-    search = ruptures.Dynp(model="l2", min_size=_SHORTEST, jump=1).fit(level.reshape(-1, 1))
+    search = ruptures.KernelCPD(kernel="linear", min_size=_SHORTEST).fit(level.reshape(-1, 1))
     found: tuple[int, ...] = chosen
     for count in range(1, min(_MOST_CHANGES, n // _SHORTEST - 1) + 1):
         ends = search.predict(n_bkps=count)

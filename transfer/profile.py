@@ -17,7 +17,8 @@ __all__ = ["StrokeProfile", "stroke_profile"]
 
 FloatArray = NDArray[np.float64]
 
-_MOST_WINDOWS = 10
+# Numbers of windows to try, finest first.
+_MOST_WINDOWS = (10, 7, 5, 3, 1)
 _LEAST_MM = 2.0
 # A window is worth having when its own uncertainty is below this.
 _WANTED_U = 0.03
@@ -64,13 +65,14 @@ def stroke_profile(
     low, high = float(heights.min()), float(heights.max())
     if total <= 0 or high - low < _LEAST_MM or crossed.size < 6:
         return StrokeProfile((), ())
-    count = min(_MOST_WINDOWS, int((high - low) / _LEAST_MM), crossed.size // 3)
-    while count > 1:
+    most = min(_MOST_WINDOWS[0], int((high - low) / _LEAST_MM), crossed.size // 3)
+    fit = None
+    for count in _MOST_WINDOWS:
+        if count > max(most, 1):
+            continue
         fit = _fit(heights, crossed, removed, variance, geometry, direction, count)
         if fit is not None and float(np.median(np.sqrt(np.diag(fit[2])))) <= _WANTED_U:
             break
-        count -= 1
-    fit = _fit(heights, crossed, removed, variance, geometry, direction, max(count, 1))
     if fit is None:
         return StrokeProfile((), ())
     edges, slopes, covariance = fit

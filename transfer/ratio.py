@@ -91,8 +91,10 @@ def transfer_ratios(
             removed[s] += film_before - film_after
             by_mean[s, before] += film_before
             by_mean[s, after] -= film_after
-            by_film[s, :terms] += film_before * (bends[before] - fit.model.loss(before, at)[0])
-            by_film[s, :terms] -= film_after * (bends[after] - fit.model.loss(after, at)[0])
+            for node, film in ((before, film_before), (after, -film_after)):
+                by_film[s, :terms] += film * bends[node]
+                for index, coefficient in fit.model.loss(node, at):
+                    by_film[s, index] -= film * coefficient[0]
             by_film[s, terms] += film_before * nodes.off[before] - film_after * nodes.off[after]
         raw[s] = np.exp(nodes.log_area[passage.nodes[0]]) - np.exp(
             nodes.log_area[passage.nodes[-1]]

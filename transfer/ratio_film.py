@@ -19,7 +19,8 @@ FloatArray = NDArray[np.float64]
 class FilmFit:
     """What the dwells say of the film.
 
-    model, theta : the creep and its parameters. creep, u_creep : (k,) rate at each node, 1/s.
+    model, theta : the creep and its parameters. creep, u_creep, bend : (k,) rate at each node and
+    its uncertainty, 1/s, and how it changes, 1/s^2.
     compressibility : C_s = -(1/A) dA/dPi, m/mN. covariance : (size + 1, size + 1) of (theta, C_s).
     row_variance : variance of ln(area) of one row about the fit; inflation : the factor by which the
     variance of a long mean exceeds that of independent rows. mean_variance : (k,) variance of each node's
@@ -30,6 +31,7 @@ class FilmFit:
     theta: FloatArray
     creep: FloatArray
     u_creep: FloatArray
+    bend: FloatArray
     compressibility: float
     covariance: FloatArray
     row_variance: float
@@ -51,9 +53,12 @@ def film_area(nodes: Nodes, fit: FilmFit, node: int, time: FloatArray) -> FloatA
     """
     level = nodes.log_area[node] + fit.compressibility * nodes.off[node]
     # a dwell's mean lies below the line through its middle where the rate changes within it
-    bend = float(fit.model.rate_changes()[node] @ fit.theta)
+    bend = float(fit.bend[node])
     spread = nodes.tt[node] / max(nodes.rows[node], 1)
-    return np.asarray(np.exp(level + 0.5 * bend * spread - fit.model.loss(node, time) @ fit.theta))
+    lost = np.zeros(np.size(time))
+    for index, coefficient in fit.model.loss(node, time):
+        lost += fit.theta[index] * coefficient
+    return np.asarray(np.exp(level + 0.5 * bend * spread - lost))
 
 
 def fit_film(
@@ -87,7 +92,7 @@ def fit_film(
     variance = _row_variance(nodes, np.zeros(nodes.size), prior)
     model = choose_creep_model(nodes, hold_start, value, variance * inflation)
     theta, covariance = np.zeros(model.size), np.zeros((model.size + 1, model.size + 1))
-    for _ in range(3):
+    for _ in range(2):
         solution, covariance = _solve(nodes, model, variance * inflation, prior, prior_u)
         theta, value = solution[:-1], float(solution[-1])
         variance = _row_variance(nodes, model.rates() @ theta, value)
@@ -102,6 +107,7 @@ def fit_film(
         theta=theta,
         creep=rates @ theta,
         u_creep=u_creep,
+        bend=model.rate_changes() @ theta,
         compressibility=value,
         covariance=covariance,
         row_variance=variance,

@@ -22,7 +22,7 @@ _END_ROWS = 12
 # Lag of the instrument, s and rows: noise of the pressure reading is independent over it, wander is not.
 _LAG_SECONDS = 1.0
 # Rows on each side that the instrument averages; the strongest is used.
-_LAG_WIDTHS = (1, 2, 4, 8, 16, 32, 64)
+_LAG_WIDTHS = (1, 4, 16, 64)
 
 
 @dataclass(frozen=True)
