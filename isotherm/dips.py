@@ -22,6 +22,7 @@ SIGMAS: Final = 2.0  # bounds of the moduli compared, in u
 SHORTEST: Final = 0.05  # share of the branch's range of ln A that a coexistence covers at least
 RISEN: Final = 1.0  # mN/m by which the branch has risen where a coexistence begins
 RISEN_SIGMAS: Final = 5.0
+DOUBT: Final = 0.05  # of a fitted modulus, relative, when looking for a dip in it
 ROUNDED: Final = 0.15  # first guess of a rounding, as a share of the dip's half-width
 
 
@@ -73,11 +74,20 @@ def _crossing(x: FloatArray, modulus: FloatArray, outer: int, inner: int, level:
 
 
 def with_dips(
-    candidates: list[Candidate], x: FloatArray, y: FloatArray, sigma: FloatArray
+    candidates: list[Candidate],
+    x: FloatArray,
+    y: FloatArray,
+    sigma: FloatArray,
+    modulus: FloatArray,
 ) -> list[Candidate]:
-    """The candidates, with the two knees of a dip put in where no pair of them encloses one."""
+    """The candidates, with the two knees of a dip put in where no pair of them encloses one.
+
+    modulus : (m,) of the model fitted so far: without a dip in it there is no need to look closer.
+    """
     steps = [c.after - c.before for c in candidates]
     if any(a < 0 < b for a, b in itertools.pairwise(steps)):
+        return candidates
+    if find_dip(x, modulus, DOUBT * np.abs(modulus)) is None:
         return candidates
     whole = np.array([0, x.size], dtype=np.int64)
     local = local_regression(x, y, sigma, whole)

@@ -23,7 +23,7 @@ FloatArray = NDArray[np.float64]
 
 MAX_ITERATIONS: Final = 14
 WIDEST: Final = 0.5  # rounding width, as a share of the shorter neighbouring stretch
-CONVERGED: Final = 1e-2  # smallest fall of χ² worth another iteration, in units of its mean term
+CONVERGED: Final = 0.01  # smallest fall of χ² worth another iteration, in units of its mean term
 # Misfits below this share of the pressure range decide nothing: no rounding shape is exact (our choice).
 INDIFFERENT: Final = 5e-5
 # Huber's bound for the scaled residual (Huber, Robust Statistics, 1981: 1.345 for 95 % efficiency; wider
@@ -85,6 +85,7 @@ def fit_knees(
     *,
     iterations: int = MAX_ITERATIONS,
     widest: float = WIDEST,
+    converged: float = CONVERGED,
 ) -> KneeModel:
     """Fit knots, widths and polynomials together (Levenberg-Marquardt, Huber weights).
 
@@ -93,6 +94,7 @@ def fit_knees(
     x, y, sigma : (n,) x = -ln A increasing; pressure and its standard uncertainty, mN/m.
     knots, widths : (K,) starting values. degrees : K + 1 polynomial degrees.
     iterations : at most so many. widest : largest rounding, a share of the shorter neighbour.
+    converged : smallest fall of χ² worth another iteration.
 
     Returns
     -------
@@ -120,23 +122,22 @@ def fit_knees(
 
     def evaluate(
         c: FloatArray, kn: FloatArray, w: FloatArray
-    ) -> tuple[FloatArray, FloatArray, FloatArray, FloatArray]:
+    ) -> tuple[FloatArray, FloatArray, FloatArray, FloatArray, FloatArray]:
         g, rise, broaden = coordinates(x, kn, w, 0.5 * float(x[0] + x[-1]))
         design = design_matrix(g, degrees, scales)
-        return (y - design @ c) * weight, design, rise, broaden
+        return (y - design @ c) * weight, design, g, rise, broaden
 
     def cost(residual: FloatArray, w: FloatArray) -> float:
         prior = (np.log(w) - prior_mean) / PRIOR_LOG_WIDTH_SIGMA
         return float(np.sum(huber * residual**2) + np.sum(prior**2))
 
-    residual, design, rise, broaden = evaluate(coefficients, knots, widths)
+    residual, design, g, rise, broaden = evaluate(coefficients, knots, widths)
     normal = np.eye(p + 2 * k)
     robust = False
     for _ in range(iterations):
         if robust:
             scale = max(1.0, 1.4826 * float(np.median(np.abs(residual))))
             huber = np.minimum(1.0, HUBER * scale / np.maximum(np.abs(residual), 1e-12))
-        g, _, _ = coordinates(x, knots, widths, 0.5 * float(x[0] + x[-1]))
         slopes = slopes_of(g, degrees, scales, coefficients)
         jacobian, _ = jacobian_of(design, slopes, rise, broaden)
         jacobian *= weight[:, None]
@@ -160,7 +161,7 @@ def fit_knees(
             edges = np.concatenate([[x[0]], new_knots, [x[-1]]])
             if np.all(np.diff(edges) > 0.02 * np.minimum(gaps, 1.0)):
                 trial = coefficients + step[:p]
-                r, d, ri, br = evaluate(trial, new_knots, new_widths)
+                r, d, gr, ri, br = evaluate(trial, new_knots, new_widths)
                 if cost(r, new_widths) <= now:
                     accepted = True
                     break
@@ -172,9 +173,9 @@ def fit_knees(
             continue
         gain = now - cost(r, new_widths)
         coefficients, knots, widths = trial, new_knots, new_widths
-        residual, design, rise, broaden = r, d, ri, br
+        residual, design, g, rise, broaden = r, d, gr, ri, br
         damping = max(damping * 0.2, 1e-9)
-        if gain < CONVERGED * max(1.0, now / x.size):
+        if gain < converged * max(1.0, now / x.size):
             if robust:
                 break
             robust = True

@@ -25,7 +25,7 @@ SHAPE_SIGMA: Final = 0.5  # of the mixture between softplus (0) and the other ro
 DEGREE_SIGMA: Final = 0.1
 # A rounded knee's place is a convention: extended how far, from where? Our choice, a standard uncertainty
 # of this share of the rounding's width, on its area alone (the pressure there carries its own).
-WIDTH_SHARE: Final = 0.15
+WIDTH_SHARE: Final = 0.25
 FEWEST: Final = 6  # points from which a stretch has a scatter of its own
 
 

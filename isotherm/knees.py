@@ -22,7 +22,7 @@ FloatArray = NDArray[np.float64]
 
 HIGHEST_DEGREE: Final = 5  # of a stretch; a fluid branch from lift-off to collapse needs about 4
 MODEST_DEGREE: Final = 3  # of the first fit
-CLOSEST: Final = 1e-4  # share of the branch's range of ln A that two knees are apart at least
+CLOSEST: Final = 2e-3  # share of the branch's range of ln A that two knees are apart at least
 SPARSE_WIDEST: Final = 0.12  # few points: a wide rounding and a curved stretch look the same
 COARSE: Final = 10  # iterations of a fit that will be refined
 ROUNDS: Final = 2  # of enriching shapes
@@ -47,7 +47,7 @@ def find_knees(nodes: Nodes) -> KneeModel:
     candidates = _in_order(search(x, y, sigma), x)
     model = _fit(x, y, sigma, candidates)
     scatter = sigma * np.sqrt(max(model.inflation, 1.0))
-    dipped = with_dips(candidates, x, y, scatter)
+    dipped = with_dips(candidates, x, y, scatter, model.modulus(x))
     if dipped is not candidates:
         dipped = _in_order(dipped, x)
         candidates, model = dipped, _fit(x, y, sigma, dipped)
@@ -90,13 +90,23 @@ def _fit(
     # modest shapes first: a rich polynomial would explain a rounding that the knee has yet to fit
     modest = tuple(min(h, MODEST_DEGREE) for h in highest)
     degrees = choose_degrees(x, y, sigma, knots, widths, modest)
-    model = fit_knees(x, y, sigma, knots, widths, degrees, iterations=COARSE, widest=widest)
+    model = fit_knees(
+        x, y, sigma, knots, widths, degrees, iterations=COARSE, widest=widest, converged=0.1
+    )
     for _ in range(ROUNDS):
         degrees = choose_degrees(x, y, sigma, model.knots, model.widths, highest)
         if degrees == model.degrees:
             return model
         richer = fit_knees(
-            x, y, sigma, model.knots, model.widths, degrees, iterations=COARSE, widest=widest
+            x,
+            y,
+            sigma,
+            model.knots,
+            model.widths,
+            degrees,
+            iterations=COARSE,
+            widest=widest,
+            converged=0.1,
         )
         if _bic(richer, y, sigma) > _bic(model, y, sigma):
             return model
