@@ -73,7 +73,7 @@ def judge_knee(x: FloatArray, y: FloatArray, sigma: FloatArray) -> Verdict | Non
     smoothest = int(np.argmin(bics))
     bic_smooth = float(bics[smoothest])
     fitter = _HingeFitter(t, weight, target, q, along, floor)
-    edge = 2 if n < 30 else max(2, n // 20)
+    edge = 2 if n < 30 else 3
     positions = t[edge : n - edge]
     if positions.size > POSITIONS:
         positions = positions[:: positions.size // POSITIONS + 1]
