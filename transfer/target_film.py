@@ -16,6 +16,7 @@ FloatArray = NDArray[np.float64]
 
 _NM2_PER_CM2 = 1e14
 _FEWEST_NODES = 3
+_MEDIAN = 5  # nodes; two wild ones in a row are passed over
 _SOFTEST = 0.1  # mN/m; below it a pressure says nothing about the area, and the quotient is no help
 
 
@@ -25,7 +26,7 @@ class FilmAxis:
 
     pressure : (m,) mN/m, rising. area : (m,) nm^2. modulus, u_modulus : (m,) mN/m.
     molecules : on the trough, None where unknown (then no trough area can be given).
-    pressure_u : mN/m, of a pressure read off the curve: random, zero and scale.
+    pressure_u : mN/m, of a pressure read off the curve: random, zero and scale. random_u : its random part.
     """
 
     pressure: FloatArray
@@ -34,6 +35,7 @@ class FilmAxis:
     u_modulus: FloatArray
     molecules: float | None
     pressure_u: float
+    random_u: float = 0.0
 
     @property
     def lowest(self) -> float:
@@ -67,6 +69,18 @@ class FilmAxis:
         u = np.interp(pressure, self.pressure, self.u_modulus)
         return np.asarray(value - k * u)
 
+    def modulus_across(self, pressure: FloatArray, reach: float, k: float = 0.0) -> FloatArray:
+        """Modulus from `reach` below to `reach` above a pressure, less k of its u, mN/m.
+
+        dP / d ln A between the two pressures: what the film does to a controller that strays so far. A
+        plateau anywhere between shows, a wild local slope does not.
+        """
+        low = np.maximum(pressure - reach, self.lowest)
+        high = np.minimum(pressure + reach, self.highest)
+        rise = np.maximum(high - low, 1e-12)
+        value = rise / np.maximum(np.log(self.area_at(low) / self.area_at(high)), 1e-12)
+        return np.asarray(value * (1.0 - k * np.sqrt(2.0) * self.random_u / rise))
+
     def u_modulus_at(self, pressure: FloatArray) -> FloatArray:
         """Standard uncertainty of the modulus, mN/m."""
         return np.asarray(np.interp(pressure, self.pressure, self.u_modulus))
@@ -87,8 +101,8 @@ class FilmAxis:
 def film_axis(result: IsothermResult) -> FilmAxis:
     """Turn the first compression round: from pressure against area to everything against pressure.
 
-    Where the pressure dips on the way (a hump before a plateau), the place counts where the compression
-    passes a pressure for the last time, so that each pressure has one area.
+    Where the pressure dips on the way (noise, a hump before a plateau), the rising curve nearest to it counts
+    (isotonic regression), so that each pressure has one area: that at which it is left behind.
 
     Raises
     ------
@@ -110,9 +124,10 @@ def film_axis(result: IsothermResult) -> FilmAxis:
         stop = min(stop, max(inside, 1))
     good = np.isfinite(curve.pressure[:stop]) & np.isfinite(curve.modulus[:stop])
     pressure = curve.pressure[:stop][good]
-    level = np.minimum.accumulate(pressure[::-1])
-    # last node at each level: np.unique keeps the first of the reversed order
-    levels, last = np.unique(level, return_index=True)
+    # last node at each level: np.unique keeps the first of the reversed order; pooled means of one level
+    # differ by rounding
+    level = np.round(_rising(pressure), 9)
+    levels, last = np.unique(level[::-1], return_index=True)
     if levels.size < _FEWEST_NODES:
         raise UpstrokeError(
             "the pressure does not rise on compression",
@@ -131,7 +146,23 @@ def film_axis(result: IsothermResult) -> FilmAxis:
         u_modulus=known,
         molecules=_molecules(result),
         pressure_u=float(np.linalg.norm(parts)),
+        random_u=random,
     )
+
+
+def _rising(pressure: FloatArray) -> FloatArray:
+    """The rising curve nearest to a pressure in order of compression, (m,) mN/m.
+
+    A running median first, which leaves what rises alone, so that one wild node cannot drag its neighbours.
+    """
+    from scipy.optimize import isotonic_regression
+
+    half = _MEDIAN // 2
+    if pressure.size <= _MEDIAN:
+        return np.asarray(isotonic_regression(pressure).x)
+    padded = np.pad(pressure, half, mode="edge")
+    steady = np.median(np.lib.stride_tricks.sliding_window_view(padded, _MEDIAN), axis=1)
+    return np.asarray(isotonic_regression(steady).x)
 
 
 def _molecules(result: IsothermResult) -> float | None:

@@ -24,6 +24,9 @@ FloatArray = NDArray[np.float64]
 # mN/m; a film softer than this is gaseous or a coexistence (Davies & Rideal, Interfacial Phenomena, 2nd ed.,
 # Academic Press 1963, as widely quoted).
 GASEOUS_BELOW: Final = 12.5
+_FINEST: Final = (
+    200  # parts of the pressure axis that the compact curve (some 250 nodes) still resolves
+)
 
 
 @dataclass(frozen=True)
@@ -173,13 +176,18 @@ def _transition(inputs: TargetInputs, band: Band) -> Rule:
 
 
 def _single_phase(inputs: TargetInputs) -> Rule | LeftOut:
-    """Stiffer than a gas or a coexistence, so that a plateau without sharp ends is not dipped in either."""
+    """Stiffer than a gas or a coexistence, so that a plateau without sharp ends is not dipped in either.
+
+    The modulus counts over the pressures that the controller may visit (k = 2).
+    """
     film, wanted = inputs.film, inputs.wanted.phase
     if wanted is not None and check_phase(wanted, "run sheet") == "gaseous":
         return LeftOut("single phase", "a gas is wanted (target.phase)")
 
+    reach = max(COVERAGE_FACTOR * inputs.set_u, (film.highest - film.lowest) / _FINEST)
+
     def slack(pressure: FloatArray, k: float) -> FloatArray:
-        return film.modulus_at(pressure, k) - GASEOUS_BELOW
+        return film.modulus_across(pressure, reach, k) - GASEOUS_BELOW
 
     reason = (
         f"modulus above {GASEOUS_BELOW:g} mN/m by its u; softer is a gas or a coexistence by the customary "

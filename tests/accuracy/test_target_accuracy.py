@@ -7,7 +7,7 @@ from functools import cache
 from isotherm_truth import TrueCollapse, TruePoint, TrueTransition, Truth
 from target_score import FAMILIES_SCORED, Verdict, fault_of, verdict_of
 
-TRACES = 40
+TRACES = 30
 
 
 @cache

@@ -290,3 +290,16 @@ def test_hump_before_a_plateau_gives_each_pressure_one_area() -> None:
         film, branches=(replace(film.branches[0], curve=replace(curve, pressure=pressure)),)
     )
     assert recommended(bumped) == pytest.approx(TOP / 2, abs=0.1)
+
+
+def test_wild_nodes_do_not_move_the_recommendation() -> None:
+    film = plain_film()
+    curve = film.branches[0].curve
+    pressure = curve.pressure.copy()
+    pressure[[200, 500, 501, 830]] = [-30.0, 300.0, 300.0, -5.0]
+    pressure[-1] = TOP
+    wild = replace(
+        film, branches=(replace(film.branches[0], curve=replace(curve, pressure=pressure)),)
+    )
+    wild = replace(wild, branches=(replace(wild.branches[0], collapse=film.branches[0].collapse),))
+    assert recommended(wild) == pytest.approx(TOP / 2, abs=0.1)
