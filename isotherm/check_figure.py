@@ -76,12 +76,12 @@ def figure_check(result: CheckResult) -> Figure:
         figure = blank_figure(
             max(6.6, 3.6 * max(len(curves), 1)), height + (3.0 if curves else 0.0)
         )
-        parts = figure.subfigures(2, 1, height_ratios=[3.0, height]) if curves else None
-        if parts is not None:
-            panels = parts[0].subplots(1, len(curves), squeeze=False)[0]
-            for curve, axes in zip(curves, panels, strict=True):
-                _record(curve, axes)
-        below = (parts[1] if parts is not None else figure).subplots()
+        columns = max(len(curves), 1)
+        ratios = [3.0, height] if curves else [height]
+        grid = figure.add_gridspec(len(ratios), columns, height_ratios=ratios)
+        for i, curve in enumerate(curves):
+            _record(curve, figure.add_subplot(grid[0, i]))
+        below = figure.add_subplot(grid[-1, :])
         _items(items, below)
         if not items:
             note(below, "no item has a limit")

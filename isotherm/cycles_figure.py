@@ -6,6 +6,7 @@ from typing import TYPE_CHECKING, Final
 
 from isotherm.cycles_result import CyclesResult, molar
 from isotherm.figures_style import ACCENT, INK, RUN_COLOURS, RUN_DASHES, SECOND, style
+from isotherm.quantity import Quantity
 from isotherm.series_figure import AREA_LABEL, MARKS, PRESSURE_LABEL, blank_figure, note, tidy
 
 if TYPE_CHECKING:
@@ -34,7 +35,7 @@ def _loops(result: CyclesResult, axes: Axes) -> None:
 
 def _works(result: CyclesResult, axes: Axes) -> None:
     """Work per cycle in kJ/mol, with error bars of 2 u."""
-    groups = (
+    groups: tuple[tuple[str, list[Quantity | None], str], ...] = (
         ("compression", [c.compression.work for c in result.cycles], INK),
         ("expansion", [c.expansion.work if c.expansion else None for c in result.cycles], SECOND),
         ("hysteresis", [c.hysteresis for c in result.cycles], ACCENT),
