@@ -14,6 +14,7 @@ from cli.options import (
     ForceOption,
     JobsOption,
     JsonOption,
+    ReportOption,
     TracesArgument,
     parse_numbers,
 )
@@ -35,6 +36,7 @@ def batch(
     column: ColumnOption = None,
     json: JsonOption = None,
     csv: CsvOption = None,
+    report: ReportOption = None,
     force: ForceOption = False,
     jobs: JobsOption = 1,
 ) -> None:
@@ -53,7 +55,7 @@ def batch(
 
     pressures = parse_numbers(at, option="--at")
     runs = find_runs(traces, sheet, column, pressures, own_sheets=True)
-    plan = plan_outputs(OutputChoice(json, csv, force=force), run_inputs(runs))
+    plan = plan_outputs(OutputChoice(json, csv, report=report, force=force), run_inputs(runs))
     for one in {(run.sheet, run.columns): run for run in runs}.values():
         run_sheet(one)  # a bad sheet is told before any work
 

@@ -7,7 +7,7 @@ from typing import Annotated
 
 import typer
 
-from cli.options import ColumnOption, CsvOption, ForceOption, JsonOption, SheetOption
+from cli.options import ColumnOption, CsvOption, ForceOption, JsonOption, ReportOption, SheetOption
 
 __all__ = ["app"]
 
@@ -27,6 +27,7 @@ def check(
     column: ColumnOption = None,
     json: JsonOption = None,
     csv: CsvOption = None,
+    report: ReportOption = None,
     force: ForceOption = False,
 ) -> None:
     """Clean surface, steady probe, true barriers, before a film.
@@ -47,7 +48,7 @@ def check(
     if not given and sheet is None:
         raise typer.BadParameter("give a record of the bare subphase, or a sheet with [check]")
     inputs = [*given, *([sheet] if sheet else [])]
-    plan = plan_outputs(OutputChoice(json, csv, force=force), inputs)
+    plan = plan_outputs(OutputChoice(json, csv, report=report, force=force), inputs)
 
     from cli.check_text import check_rows, check_text
     from isotherm.check import read_check

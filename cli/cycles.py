@@ -12,6 +12,7 @@ from cli.options import (
     FigureOption,
     ForceOption,
     JsonOption,
+    ReportOption,
     SheetOption,
     TraceArgument,
     parse_numbers,
@@ -32,6 +33,7 @@ def cycles(
     json: JsonOption = None,
     csv: CsvOption = None,
     figure: FigureOption = None,
+    report: ReportOption = None,
     force: ForceOption = False,
 ) -> None:
     """Work, hysteresis and area shift from cycle to cycle.
@@ -51,7 +53,7 @@ def cycles(
 
     pressures = parse_numbers(at, option="--at")
     inputs = [path for path in (trace, sheet, check) if path is not None]
-    plan = plan_outputs(OutputChoice(json, csv, figure, force=force), inputs)
+    plan = plan_outputs(OutputChoice(json, csv, figure, report, force=force), inputs)
 
     from cli.cycles_text import cycles_text, shift_rows
     from isotherm.check_result import load_check

@@ -10,6 +10,7 @@ from cli.options import (
     FigureOption,
     ForceOption,
     JsonOption,
+    ReportOption,
     SheetOption,
     TraceArgument,
 )
@@ -27,6 +28,7 @@ def fluid(
     json: JsonOption = None,
     csv: CsvOption = None,
     figure: FigureOption = None,
+    report: ReportOption = None,
     force: ForceOption = False,
 ) -> None:
     """Co-area and cohesion of the fluid branch, gaseous limit.
@@ -44,7 +46,7 @@ def fluid(
     from cli.single import deliver_one
 
     inputs = [path for path in (trace, sheet) if path is not None]
-    plan = plan_outputs(OutputChoice(json, csv, figure, force=force), inputs)
+    plan = plan_outputs(OutputChoice(json, csv, figure, report, force=force), inputs)
 
     from cli.fluid_text import fluid_text
     from isotherm.analysis import analyse

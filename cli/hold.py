@@ -13,6 +13,7 @@ from cli.options import (
     CsvOption,
     ForceOption,
     JsonOption,
+    ReportOption,
     SheetOption,
 )
 
@@ -43,6 +44,7 @@ def hold(
     column: ColumnOption = None,
     json: JsonOption = None,
     csv: CsvOption = None,
+    report: ReportOption = None,
     force: ForceOption = False,
 ) -> None:
     """Film stability: loss over time, and by which law.
@@ -65,7 +67,7 @@ def hold(
 
     seconds = None if planned is None else read_time(planned, option="--over")
     inputs = [*records, *(path for path in (sheet, check) if path is not None)]
-    plan = plan_outputs(OutputChoice(json, csv, force=force), inputs)
+    plan = plan_outputs(OutputChoice(json, csv, report=report, force=force), inputs)
     run_sheet = load_sheet(sheet, column)
     before = None if check is None else load_check(check)
     results = [
@@ -80,6 +82,7 @@ def hold(
             text=lambda: _text(results),
             json=lambda: _json(results, settings),
             csv=lambda: _csv(results),
+            report=lambda: _report(results, settings),
         )
     )
 
@@ -93,11 +96,27 @@ def _text(results: list[HoldResult]) -> str:
     return join_results([hold_text(result, width) for result in results], width)
 
 
-def _json(results: list[HoldResult], settings: dict[str, Any]) -> bytes:
-    from cli.serialise import json_bytes, with_provenance
+def _payloads(results: list[HoldResult], settings: dict[str, Any]) -> list[dict[str, Any]]:
+    from cli.serialise import with_provenance
 
-    payloads = [with_provenance(result.to_json(), settings) for result in results]
+    return [with_provenance(result.to_json(), settings) for result in results]
+
+
+def _json(results: list[HoldResult], settings: dict[str, Any]) -> bytes:
+    from cli.serialise import json_bytes
+
+    payloads = _payloads(results, settings)
     return json_bytes(payloads if len(payloads) > 1 else payloads[0])
+
+
+def _report(results: list[HoldResult], settings: dict[str, Any]) -> bytes:
+    from cli.page import one_page
+    from cli.page_figure import picture_of
+    from isotherm.hold_figure import figure_hold
+
+    caption = "The drifting quantity, the laws fitted to it, and what they leave over."
+    pictures = [[picture_of(figure_hold(result), caption)] for result in results]
+    return one_page(_payloads(results, settings), pictures=pictures)
 
 
 def _csv(results: list[HoldResult]) -> bytes:

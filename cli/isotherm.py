@@ -15,12 +15,14 @@ from cli.options import (
     JobsOption,
     JsonOption,
     KeepGoingOption,
+    ReportOption,
     SheetOption,
     TracesArgument,
     parse_numbers,
 )
 
 if TYPE_CHECKING:
+    from cli.runs import Run
     from isotherm.result import IsothermResult
 
 __all__ = ["app"]
@@ -37,6 +39,7 @@ def isotherm(
     json: JsonOption = None,
     csv: CsvOption = None,
     figure: FigureOption = None,
+    report: ReportOption = None,
     force: ForceOption = False,
     keep_going: KeepGoingOption = False,
     jobs: JobsOption = 1,
@@ -57,7 +60,7 @@ def isotherm(
 
     pressures = parse_numbers(at, option="--at")
     runs = find_runs(traces, sheet, column, pressures)
-    plan = plan_outputs(OutputChoice(json, csv, figure, force=force), run_inputs(runs))
+    plan = plan_outputs(OutputChoice(json, csv, figure, report, force=force), run_inputs(runs))
     found = analyse_runs(runs, keep_going=keep_going, jobs=jobs)
     settings = run_settings("isotherm", runs, at=list(pressures))
     plan.deliver(
@@ -66,6 +69,7 @@ def isotherm(
             json=lambda: _json(found.results, settings, as_list=len(runs) > 1),
             csv=lambda: _csv(found.results),
             figure=lambda suffix: _figure(found.results, suffix),
+            report=lambda: _report(found.done, found.results, settings),
         )
     )
     if found.failed:
@@ -86,6 +90,21 @@ def _json(results: list[IsothermResult], settings: dict[str, Any], *, as_list: b
 
     payloads = [with_provenance(result.to_json(), settings) for result in results]
     return json_bytes(payloads if as_list else payloads[0])
+
+
+def _report(runs: list[Run], results: list[IsothermResult], settings: dict[str, Any]) -> bytes:
+    from cli.page import one_page
+    from cli.page_plots import isotherm_picture
+    from cli.runs import run_sheet
+    from cli.serialise import with_provenance
+    from isotherm.figures import isotherm_figure
+
+    payloads = [with_provenance(result.to_json(), settings) for result in results]
+    pictures = [
+        [isotherm_picture(result, run_sheet(run))]
+        for run, result in zip(runs, results, strict=True)
+    ]
+    return one_page(payloads, lambda: isotherm_figure(*results), pictures)
 
 
 def _csv(results: list[IsothermResult]) -> bytes:

@@ -23,6 +23,7 @@ __all__ = [
     "LogArgument",
     "NeededSheetOption",
     "PressuresOption",
+    "ReportOption",
     "SheetOption",
     "TraceArgument",
     "TracesArgument",
@@ -39,6 +40,10 @@ CsvOption = Annotated[
 FigureOption = Annotated[
     Path | None,
     typer.Option("--figure", metavar="PATH", help="Draw it: .svg, .png or .pdf by suffix."),
+]
+ReportOption = Annotated[
+    Path | None,
+    typer.Option("--report", metavar="PATH", help="Write all of it as one page (.html)."),
 ]
 ForceOption = Annotated[
     bool, typer.Option("--force", help="Replace output files that exist (never an input).")

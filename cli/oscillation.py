@@ -14,6 +14,7 @@ from cli.options import (
     IsothermOption,
     IsothermSheetOption,
     JsonOption,
+    ReportOption,
     SheetOption,
     TraceArgument,
 )
@@ -41,6 +42,7 @@ def oscillation(
     json: JsonOption = None,
     csv: CsvOption = None,
     figure: FigureOption = None,
+    report: ReportOption = None,
     force: ForceOption = False,
 ) -> None:
     """Storage and loss modulus per frequency, linearity.
@@ -58,7 +60,7 @@ def oscillation(
     from cli.single import deliver_one
 
     inputs = [path for path in (trace, sheet, isotherm, isotherm_sheet) if path is not None]
-    plan = plan_outputs(OutputChoice(json, csv, figure, force=force), inputs)
+    plan = plan_outputs(OutputChoice(json, csv, figure, report, force=force), inputs)
     lag = None if delay is None else read_quantity(delay, "time", option="--delay")
 
     from cli.oscillation_text import oscillation_text

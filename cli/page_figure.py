@@ -97,7 +97,7 @@ def picture_of(
 
 def place(axes: Axes, x: FloatArray, y: FloatArray) -> tuple[FloatArray, FloatArray]:
     """Return where data points of some axes lie in the picture, points from left and top."""
-    figure = axes.figure
+    figure: Any = axes.figure
     pixels = axes.transData.transform(np.column_stack([x, y]))
     scale = POINTS_PER_INCH / float(figure.dpi)
     height = float(figure.get_size_inches()[1]) * POINTS_PER_INCH

@@ -12,6 +12,7 @@ from cli.options import (
     FigureOption,
     ForceOption,
     JsonOption,
+    ReportOption,
     SheetOption,
     TraceArgument,
 )
@@ -37,6 +38,7 @@ def potential(
     json: JsonOption = None,
     csv: CsvOption = None,
     figure: FigureOption = None,
+    report: ReportOption = None,
     force: ForceOption = False,
 ) -> None:
     """Effective dipole moment against area, onset of potential.
@@ -54,7 +56,7 @@ def potential(
     from cli.single import deliver_one
 
     inputs = [path for path in (trace, sheet) if path is not None]
-    plan = plan_outputs(OutputChoice(json, csv, figure, force=force), inputs)
+    plan = plan_outputs(OutputChoice(json, csv, figure, report, force=force), inputs)
     clean = None if baseline is None else read_quantity(baseline, "potential", option="--baseline")
 
     from cli.potential_text import potential_text

@@ -111,12 +111,18 @@ def deliver(
 
         return figure_bytes(figure(), suffix)
 
+    def paged() -> bytes:
+        from cli.page import one_page
+
+        return one_page(with_provenance(result.to_json(), series.settings), figure)
+
     series.plan.deliver(
         Renderers(
             text=lambda: text(terminal_width()),
             json=lambda: json_bytes(with_provenance(result.to_json(), series.settings)),
             csv=lambda: rows_csv(result.rows()),
             figure=drawn,
+            report=paged,
         )
     )
     if series.failed:

@@ -10,6 +10,8 @@ from cli.outputs import OutputPlan, Renderers
 if TYPE_CHECKING:
     from matplotlib.figure import Figure
 
+    from cli.page_figure import Picture
+
 __all__ = ["deliver_one"]
 
 
@@ -21,6 +23,7 @@ def deliver_one(
     text: Callable[[int], str],
     rows: Callable[[], Sequence[dict[str, Any]]],
     figure: Callable[[], Figure] | None = None,
+    pictures: Callable[[], Sequence[Sequence[Picture]]] | None = None,
 ) -> None:
     """Write what was asked for.
 
@@ -38,14 +41,25 @@ def deliver_one(
         Returns the rows of the CSV.
     figure : callable, optional
         Returns the figure.
+    pictures : callable, optional
+        Returns the page's own pictures of each result; left out, those its JSON form allows.
     """
     from cli.serialise import json_bytes, rows_csv, with_provenance
     from cli.terminal import terminal_width
 
-    def made() -> bytes:
+    def whole() -> dict[str, Any] | list[dict[str, Any]]:
         if isinstance(payload, list):
-            return json_bytes([with_provenance(one, settings) for one in payload])
-        return json_bytes(with_provenance(payload, settings))
+            return [with_provenance(one, settings) for one in payload]
+        return with_provenance(payload, settings)
+
+    def paged() -> bytes:
+        from cli.page import one_page
+        from cli.page_plots import result_pictures
+
+        told = whole()
+        results = told if isinstance(told, list) else [told]
+        drawn = [result_pictures(one) for one in results] if pictures is None else pictures()
+        return one_page(told, figure, drawn)
 
     def drawn(suffix: str) -> bytes:
         from isotherm.figures_style import figure_bytes
@@ -57,8 +71,9 @@ def deliver_one(
     plan.deliver(
         Renderers(
             text=lambda: text(terminal_width()),
-            json=made,
+            json=lambda: json_bytes(whole()),
             csv=lambda: rows_csv(rows()),
             figure=drawn,
+            report=paged,
         )
     )

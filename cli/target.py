@@ -15,6 +15,7 @@ from cli.options import (
     ForceOption,
     JsonOption,
     NeededSheetOption,
+    ReportOption,
     TraceArgument,
 )
 
@@ -36,6 +37,7 @@ def target(
     json: JsonOption = None,
     csv: CsvOption = None,
     figure: FigureOption = None,
+    report: ReportOption = None,
     force: ForceOption = False,
 ) -> None:
     """Dipping pressure, what binds it, and the film budget.
@@ -55,7 +57,7 @@ def target(
     from cli.single import deliver_one
 
     inputs = [trace, sheet, *(holds or []), *([check] if check else [])]
-    plan = plan_outputs(OutputChoice(json, csv, figure, force=force), inputs)
+    plan = plan_outputs(OutputChoice(json, csv, figure, report, force=force), inputs)
 
     from dataclasses import replace
 

@@ -15,6 +15,7 @@ from cli.options import (
     JsonOption,
     LogArgument,
     NeededSheetOption,
+    ReportOption,
 )
 
 if TYPE_CHECKING:
@@ -34,6 +35,7 @@ def transfer(
     column: ColumnOption = None,
     json: JsonOption = None,
     csv: CsvOption = None,
+    report: ReportOption = None,
     force: ForceOption = False,
 ) -> None:
     """Transfer ratio of every stroke, deposition type, layers.
@@ -54,7 +56,7 @@ def transfer(
     from transfer.log import read_log
 
     inputs = [path for path in (log, sheet, isotherm, isotherm_sheet) if path is not None]
-    plan = plan_outputs(OutputChoice(json, csv, force=force), inputs)
+    plan = plan_outputs(OutputChoice(json, csv, report=report, force=force), inputs)
     run_sheet = load_sheet(sheet, column)
     film = film_isotherm(isotherm, isotherm_sheet, run_sheet)
     result = analyse_log(read_log(log, run_sheet), run_sheet, isotherm=film)
@@ -64,6 +66,7 @@ def transfer(
             text=lambda: _text(result),
             json=lambda: _json(result, settings),
             csv=lambda: _csv(result),
+            report=lambda: _report(result, settings),
         )
     )
 
@@ -79,6 +82,15 @@ def _json(result: TransferResult, settings: dict[str, Any]) -> bytes:
     from cli.serialise import json_bytes, with_provenance
 
     return json_bytes(with_provenance(result.to_json(), settings))
+
+
+def _report(result: TransferResult, settings: dict[str, Any]) -> bytes:
+    from cli.page import one_page
+    from cli.page_plots import result_pictures
+    from cli.serialise import with_provenance
+
+    payload = with_provenance(result.to_json(), settings)
+    return one_page(payload, pictures=[result_pictures(payload)])
 
 
 def _csv(result: TransferResult) -> bytes:
