@@ -99,11 +99,9 @@ def analyse_log(
     warnings.extend(known.warnings)
     starts = np.asarray([log.time[hold.first] for hold in held.holds], dtype=np.float64)
     fit = fit_film(nodes, starts, prior=known.value, prior_u=known.u)
-    inflation = variance_inflation(nodes, fit, log.time, np.log(log.area), log.pressure)
+    inflation = variance_inflation(nodes, fit)
     if inflation > 1.0:
-        fit = fit_film(
-            nodes, starts, prior=known.value, prior_u=known.u, inflation=inflation
-        )
+        fit = fit_film(nodes, starts, prior=known.value, prior_u=known.u, inflation=inflation)
     curves = _curves(log, motion, held, nodes, fit)
     levels = [rest.level for rest in motion.rests]
     contact = find_contact(curves, geometry, sheet, (min(levels), max(levels)))

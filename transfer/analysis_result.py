@@ -117,7 +117,7 @@ def assemble(
         source=log.source,
         title=sheet.title,
         strokes=made,
-        creep=_creep(log, nodes, fit),
+        creep=_creep(nodes, fit),
         interruptions=tuple(
             Renewal(
                 float(log.time[i.first]), float(log.time[min(i.last, log.time.size - 1)]), i.kind
@@ -223,24 +223,17 @@ def _stroke(
     )
 
 
-def _creep(log: DippingLog, nodes: Nodes, fit: FilmFit) -> tuple[CreepSpan, ...]:
+def _creep(nodes: Nodes, fit: FilmFit) -> tuple[CreepSpan, ...]:
     """Creep at every dwell: relative loss rate, 1/s."""
-    spans = []
-    used = np.flatnonzero(nodes.row_node >= 0)
-    edges = np.searchsorted(nodes.row_node[used], np.arange(nodes.size + 1))
-    for k in range(nodes.size):
-        rows = used[edges[k] : edges[k + 1]]
-        if rows.size < 2:
-            continue
-        u = float(fit.u_creep[k])
-        spans.append(
-            CreepSpan(
-                float(log.time[rows[0]]),
-                float(log.time[rows[-1]]),
-                Quantity(float(fit.creep[k]), u, "1/s"),
-            )
+    return tuple(
+        CreepSpan(
+            float(nodes.first_time[k]),
+            float(nodes.last_time[k]),
+            Quantity(float(fit.creep[k]), float(fit.u_creep[k]), "1/s"),
         )
-    return tuple(spans)
+        for k in range(nodes.size)
+        if nodes.rows[k] > 1
+    )
 
 
 def _compressibility(fit: FilmFit) -> Quantity:
@@ -287,8 +280,8 @@ def _warnings(
             start = float(log.time[item.first])
             end = float(log.time[min(item.last, log.time.size - 1)])
             out.append(f"{item.kind} at {start:.0f}-{end:.0f} s: nothing in it is judged")
-    if nodes.spikes:
-        out.append(f"{nodes.spikes} rows far off their dwell were left out")
+    if nodes.kept.spikes:
+        out.append(f"{nodes.kept.spikes} rows far off their dwell were left out")
     deepest = max((s.deep for s in made), default=0.0)
     if geometry.height is not None and deepest > geometry.height:
         out.append(

@@ -150,16 +150,16 @@ def _flags(
     edges: FloatArray, slopes: FloatArray, u: FloatArray, covariance: FloatArray, direction: str
 ) -> tuple[str, ...]:
     """What the windows show, in the order in which they crossed the surface."""
-    from scipy.stats import chi2
-
     count = slopes.size
-    if count < 3:
+    if count < 3 or float(np.ptp(slopes)) < _UNEVEN:
         return ()
+    from scipy.special import chdtrc  # upper tail of chi-squared; scipy.stats is slow to import
+
     usual = float(np.median(slopes))
     weights = np.linalg.inv(covariance)
     mean = float(weights.sum(axis=0) @ slopes / weights.sum())
     misfit = float((slopes - mean) @ weights @ (slopes - mean))
-    if chi2.sf(misfit, count - 1) > _CHANCE or float(np.ptp(slopes)) < _UNEVEN:
+    if float(chdtrc(count - 1, misfit)) > _CHANCE:
         return ()
     best = float(np.quantile(slopes, 0.75))
     if best < 0.2:

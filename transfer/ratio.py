@@ -123,7 +123,8 @@ def transfer_ratios(
     random = (dwell + film) * outer + level
     shape_part, contact_part = ratio * u_shape * scale, ratio * by_contact * scale
     systematic = np.outer(shape_part, shape_part) + np.outer(contact_part, contact_part)
-    creep = by_film[:, :terms] @ fit.covariance[:terms, :terms] @ by_film[:, :terms].T
+    by_creep = by_film[:, :terms]
+    creep = ((by_creep @ fit.covariance[:terms, :terms]) * by_creep).sum(axis=1)
     pressure = by_film[:, terms] ** 2 * fit.covariance[terms, terms]
     return Ratios(
         coated=coated,
@@ -136,7 +137,7 @@ def transfer_ratios(
         systematic_covariance=systematic,
         budget={
             "dwells": np.sqrt(np.diag(dwell)) * scale,
-            "creep": np.sqrt(np.diag(creep)) * scale,
+            "creep": np.sqrt(creep) * scale,
             "pressure": np.sqrt(pressure) * scale,
             "position": np.abs(ratio) * u_level * scale,
             "dimensions": np.abs(shape_part),

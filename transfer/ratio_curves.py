@@ -78,7 +78,7 @@ def removal_curve(
     end = motion.rests[nodes.rest[after]].level
     middle = np.asarray([0.5 * (way.start + way.end)])
     scale = float(film_area(nodes, fit, before, middle)[0])
-    row_variance = scale**2 * fit.row_variance * fit.inflation
+    row_variance = scale**2 * fit.row_variance * fit.inflation * nodes.kept.group
     if x.size > _BINS and end != start:
         edges = np.clip(((x - start) / (end - start) * _BINS).astype(np.intp), 0, _BINS - 1)
         count = np.bincount(edges, minlength=_BINS).astype(np.float64)

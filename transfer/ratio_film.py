@@ -101,7 +101,7 @@ def fit_film(
     theta, value = solution[:-1], float(solution[-1])
     rates = model.rates()
     own, own_u = _own(value, covariance, prior, prior_u)
-    u_creep = np.sqrt(np.einsum("ij,jk,ik->i", rates, covariance[:-1, :-1], rates))
+    u_creep = np.sqrt(((rates @ covariance[:-1, :-1]) * rates).sum(axis=1))
     return FilmFit(
         model=model,
         theta=theta,

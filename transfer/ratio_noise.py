@@ -1,4 +1,4 @@
-"""How far the rows of a dwell are independent: the factor by which means are noisier than they seem."""
+"""What the residuals of the dwells say: how independent rows are, and how long moves take to settle."""
 
 from __future__ import annotations
 
@@ -16,38 +16,32 @@ _MOST_LAGS = 60
 _LONGEST_PART = 0.25
 
 
-def dwell_residuals(
-    nodes: Nodes, fit: FilmFit, time: FloatArray, log_area: FloatArray, pressure: FloatArray
-) -> tuple[NDArray[np.intp], FloatArray]:
-    """Rows in dwells and their residuals of ln(area) from the fit.
+def dwell_residuals(nodes: Nodes, fit: FilmFit) -> FloatArray:
+    """Residuals of ln(area) of the kept rows, each dwell's own line (level and slope) removed.
 
     Parameters
     ----------
     nodes : Nodes
     fit : FilmFit
-    time, log_area, pressure : (n,) s, ln(cm^2), mN/m.
 
     Returns
     -------
-    tuple of arrays
-        Row numbers (r,) and residuals (r,), each dwell's own line (level and slope) removed.
+    (r,) array
     """
-    rows = np.flatnonzero(nodes.row_node >= 0)
-    node = nodes.row_node[rows]
-    t = time[rows] - nodes.time[node]
-    off = pressure[rows] - nodes.target[node] - nodes.off[node]
-    y = log_area[rows] - nodes.log_area[node] + fit.compressibility * off
+    kept = nodes.kept
+    node = kept.node
+    t = kept.time - nodes.time[node]
+    y = kept.log_area - nodes.log_area[node]
+    y = y + fit.compressibility * (kept.off - nodes.off[node])
     slope = np.where(
         nodes.tt > 0,
         (nodes.ty + fit.compressibility * nodes.tw) / np.maximum(nodes.tt, 1e-300),
         0.0,
     )
-    return rows, y - slope[node] * t
+    return np.asarray(y - slope[node] * t)
 
 
-def variance_inflation(
-    nodes: Nodes, fit: FilmFit, time: FloatArray, log_area: FloatArray, pressure: FloatArray
-) -> float:
+def variance_inflation(nodes: Nodes, fit: FilmFit) -> float:
     """Variance of a long mean over that of independent rows: 1 + 2 sum of autocorrelations.
 
     The sum runs to the first lag whose autocorrelation, pooled over dwells, does not stand out of its own
@@ -58,26 +52,25 @@ def variance_inflation(
     ----------
     nodes : Nodes
     fit : FilmFit
-    time, log_area, pressure : (n,) s, ln(cm^2), mN/m.
 
     Returns
     -------
     float
         At least 1.
     """
-    rows, residual = dwell_residuals(nodes, fit, time, log_area, pressure)
-    node = nodes.row_node[rows]
+    residual = dwell_residuals(nodes, fit)
+    node = nodes.kept.node
     long_enough = nodes.rows >= 8
     keep = long_enough[node]
-    rows, residual, node = rows[keep], residual[keep], node[keep]
-    if rows.size < 30:
+    residual, node = residual[keep], node[keep]
+    if residual.size < 30:
         return 1.0
-    freedom = rows.size - 2.0 * np.unique(node).size
+    freedom = residual.size - 2.0 * np.unique(node).size
     variance = float(residual @ residual) / freedom
     usual = float(np.median(nodes.rows[long_enough]))
     total = 0.0
     for lag in range(1, min(_MOST_LAGS, int(_LONGEST_PART * usual)) + 1):
-        together = (node[lag:] == node[:-lag]) & (rows[lag:] - rows[:-lag] == lag)
+        together = node[lag:] == node[:-lag]
         pairs = int(together.sum())
         if pairs < 20:
             break

@@ -27,7 +27,8 @@ _REST_FACTOR = 4.0
 _REST_ROWS = 3
 # Part of a move's way, at each end, that the line to its start or end goes through.
 _END_PART = 0.15
-_CHUNK = 64
+# Groups of rows that the dead band is walked along, at most.
+_MOST_WALKED = 40_000
 
 
 @dataclass(frozen=True)
@@ -82,9 +83,16 @@ def position_noise(position: FloatArray) -> tuple[float, float]:
         Noise from the median absolute second difference (a steady move leaves none), and the smallest
         change ever seen between rows (the encoder step where there is one).
     """
-    second = position[2:] - 2.0 * position[1:-1] + position[:-2]
+    # stretches spread over a long log are enough
+    if position.size > 4 * _MOST_WALKED:
+        length = _MOST_WALKED // 20
+        starts = np.linspace(0, position.size - length, 20).astype(np.intp)
+        pieces = np.stack([position[a : a + length] for a in starts])
+    else:
+        pieces = position[None, :]
+    second = pieces[:, 2:] - 2.0 * pieces[:, 1:-1] + pieces[:, :-2]
     noise = 1.4826 * float(np.median(np.abs(second))) / np.sqrt(6.0) if second.size else 0.0
-    change = np.abs(np.diff(position))
+    change = np.abs(np.diff(pieces, axis=1)).ravel()
     change = change[change > 1e-9]
     step = float(np.quantile(change, 0.01)) if change.size else 0.0
     return noise, step
@@ -94,8 +102,7 @@ def find_motion(time: FloatArray, position: FloatArray) -> Motion:
     """Cut the trace into rests joined by moves.
 
     A dead band as wide as the noise asks for follows the reading; leaving it is a step. Runs of steps one
-    way are moves; a gap much longer than the run's usual step is a rest. Cost: linear in rows, plus one
-    short search for each dead band crossed.
+    way are moves; a gap much longer than the run's usual step is a rest.
 
     Parameters
     ----------
@@ -108,7 +115,7 @@ def find_motion(time: FloatArray, position: FloatArray) -> Motion:
     """
     noise, step = position_noise(position)
     low, high = (
-        np.quantile(position, [0.001, 0.999])
+        np.quantile(position[:: max(1, position.size // _MOST_WALKED)], [0.001, 0.999])
         if position.size > 2000
         else (position.min(), position.max())
     )
@@ -127,28 +134,23 @@ def find_motion(time: FloatArray, position: FloatArray) -> Motion:
 
 
 def _steps(position: FloatArray, band: float) -> IntArray:
-    """Rows at which the reading has left the dead band around its last step."""
+    """Rows at which the reading has left the dead band around its last step.
+
+    A long log is first averaged in groups of rows, so that the walk has a bounded length.
+    """
+    group = -(-position.size // _MOST_WALKED)
+    if group > 1:
+        whole = position.size // group * group
+        walked = position[:whole].reshape(-1, group).mean(axis=1)
+    else:
+        walked = position
     events: list[int] = []
-    anchor = float(np.median(position[: min(5, position.size)]))
-    row, size = 0, position.size
-    while row < size:
-        width = _CHUNK
-        found = -1
-        while row < size:
-            chunk = position[row : row + width]
-            out = np.abs(chunk - anchor) > band
-            hit = int(out.argmax())
-            if out[hit]:
-                found = row + hit
-                break
-            row += chunk.size
-            width = min(width * 4, 1 << 16)
-        if found < 0:
-            break
-        anchor = float(position[found])
-        events.append(found)
-        row = found + 1
-    return np.asarray(events, dtype=np.intp)
+    anchor = float(np.median(walked[: min(5, walked.size)]))
+    for place, value in enumerate(walked.tolist()):
+        if value - anchor > band or anchor - value > band:
+            anchor = value
+            events.append(place)
+    return np.asarray(events, dtype=np.intp) * group + group // 2
 
 
 def _runs(
