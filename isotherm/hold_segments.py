@@ -45,6 +45,8 @@ _MODULUS = 100.0
 # mN/m: a drift any trough shows plainly; and how many times the other's it must be to be sure of the kind.
 _CLEAR_DRIFT = 0.3
 _CLEAR_RATIO = 3.0
+# A controller trades scatter of pressure for scatter of area; a stopped barrier's reading is far quieter.
+_TRADED_PART = 0.25
 # Scatter against that of successive differences, 1 for white noise; its own scatter is a few per cent.
 _BUSY_RATIO = 1.25
 
@@ -142,7 +144,10 @@ def _clear_kind(data: _Condensed, first: int, last: int) -> str:
 def _busy_kind(data: _Condensed, first: int, last: int) -> str:
     """Where nothing drifts: a controller keeps the barrier busy, a stopped one only shows its reading."""
     first += (last - first) // 10
-    area = data.area[first : last + 1]
+    area, pressure = data.area[first : last + 1], data.pressure[first : last + 1]
+    traded = _MODULUS * float(np.std(area)) / max(abs(float(area.mean())), 1e-300)
+    if traded > _TRADED_PART * float(np.std(pressure)):
+        return "isobaric"
     # successive differences hold no slow motion: white readings have a ratio of 1, wandering ones below
     step = float(np.sqrt(np.mean(np.diff(area) ** 2)))
     slow = float(np.std(area)) * np.sqrt(2.0)
