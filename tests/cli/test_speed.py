@@ -1,0 +1,39 @@
+"""What the command costs beside what it has to import, in processor time, alternately, best of several."""
+
+from __future__ import annotations
+
+import os
+import subprocess
+import sys
+from pathlib import Path
+
+import pytest
+
+resource = pytest.importorskip("resource", reason="processor time of children needs a POSIX system")
+
+ROOT = Path(__file__).resolve().parents[2]
+ONE_THREAD = {name: "1" for name in ("OMP_NUM_THREADS", "OPENBLAS_NUM_THREADS", "MKL_NUM_THREADS")}
+
+
+def processor_seconds(*argv: str) -> float:
+    before = resource.getrusage(resource.RUSAGE_CHILDREN)
+    subprocess.run(
+        [sys.executable, *argv],
+        cwd=ROOT,
+        stdout=subprocess.DEVNULL,
+        check=True,
+        env={**os.environ, **ONE_THREAD},
+    )
+    after = resource.getrusage(resource.RUSAGE_CHILDREN)
+    return after.ru_utime + after.ru_stime - before.ru_utime - before.ru_stime
+
+
+@pytest.mark.slow
+def test_a_whole_isotherm_costs_little_more_than_its_imports() -> None:
+    """3,000 rows, JSON only, against importing numpy, pandas, scipy.signal and ruptures."""
+    command = ["-m", "cli.main", "isotherm", "demo/spacer_isotherm.txt"]
+    command += ["--sheet", "demo/spacer.toml", "--json", "-"]
+    imports = ["-c", "import numpy, pandas, scipy.signal, ruptures"]
+    pairs = [(processor_seconds(*command), processor_seconds(*imports)) for _ in range(4)]
+    ours, theirs = (min(column) for column in zip(*pairs, strict=True))
+    assert ours <= 1.25 * theirs, f"{ours:.3f} s against {theirs:.3f} s"
