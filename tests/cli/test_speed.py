@@ -12,7 +12,7 @@ import pytest
 resource = pytest.importorskip("resource", reason="processor time of children needs a POSIX system")
 
 ROOT = Path(__file__).resolve().parents[2]
-ONE_THREAD = {name: "1" for name in ("OMP_NUM_THREADS", "OPENBLAS_NUM_THREADS", "MKL_NUM_THREADS")}
+ONE_THREAD = dict.fromkeys(("OMP_NUM_THREADS", "OPENBLAS_NUM_THREADS", "MKL_NUM_THREADS"), "1")
 
 
 def processor_seconds(*argv: str) -> float:
