@@ -191,7 +191,9 @@ def _stretch_misfit(
     sign = 1.0 if reads == "depth" else -1.0
     x = _delayed(stretch.curve, delay)[stretch.rows]
     if stretch.deep_end is None:
-        cover = geometry.coated(sign * (x[None, :] - grid[:, None]))
+        cover = geometry.mean_coated(
+            sign * (x[None, :] - grid[:, None]), stretch.curve.bin_width
+        )
     else:
         cover = np.abs(x - stretch.deep_end)[None, :] * np.ones((grid.size, 1))
     w, y = stretch.weight, stretch.y

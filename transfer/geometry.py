@@ -15,6 +15,7 @@ __all__ = ["Geometry", "substrate_geometry"]
 FloatArray = NDArray[np.float64]
 
 _MM2_PER_CM2 = 100.0
+_AVERAGED = 8  # points of a bin that its mean is taken over
 
 
 @dataclass(frozen=True)
@@ -38,6 +39,16 @@ class Geometry:
     def coated(self, immersion: FloatArray) -> FloatArray:
         """Area below the water line, cm^2, at each immersion (mm, of the lower edge; negative: in air)."""
         return self._area(immersion, self.perimeters) + np.where(immersion > 0, self.face, 0.0)
+
+    def mean_coated(self, immersion: FloatArray, width: float) -> FloatArray:
+        """`coated` averaged over a stretch of immersions (mm) as wide as a bin, for binned readings."""
+        if width <= 0:
+            return self.coated(immersion)
+        shifts = width * (np.arange(_AVERAGED) + 0.5 - 0.5 * _AVERAGED) / _AVERAGED
+        total = np.zeros(np.shape(immersion))
+        for shift in shifts:
+            total += self.coated(immersion + shift)
+        return np.asarray(total / _AVERAGED)
 
     def u_coated(self, shallow: float, deep: float) -> float:
         """Standard uncertainty, cm^2, from the dimensions, of the area between two immersions (mm)."""

@@ -89,19 +89,20 @@ def _gather(
 ) -> tuple[FloatArray, FloatArray, FloatArray, FloatArray]:
     """Water line on the substrate (mm), area crossed (cm^2), film removed (cm^2) and its variance."""
     gone = 0.0
-    parts: list[tuple[FloatArray, FloatArray, FloatArray]] = []
+    parts: list[tuple[FloatArray, ...]] = []
     for curve in curves:
         reading = np.concatenate([[curve.start], curve.reading, [curve.end]])
         removed = gone + np.concatenate([[0.0], curve.removed, [curve.total]])
         end = max(curve.u_total**2, 1e-12)
         variance = np.concatenate([[end], curve.variance, [end]])
-        parts.append((reading, removed, variance))
+        immersed = immersion(contact, reading)
+        area = geometry.mean_coated(immersed, curve.bin_width)
+        area[[0, -1]] = geometry.coated(immersed[[0, -1]])
+        parts.append((immersed, removed, variance, area))
         gone += curve.total
-    reading = np.concatenate([p[0] for p in parts])
-    wet = np.maximum(immersion(contact, reading), 0.0)
-    area = geometry.coated(np.where(wet > 0, wet, -1.0))
+    area = np.concatenate([p[3] for p in parts])
     return (
-        wet,
+        np.maximum(np.concatenate([p[0] for p in parts]), 0.0),
         np.abs(area - area[0]),
         np.concatenate([p[1] for p in parts]),
         np.concatenate([p[2] for p in parts]),

@@ -114,32 +114,32 @@ def transfer_ratios(
             u_level[s] = float(np.hypot(u_level[s], line * levels[1 - deep_end]))
     safe = np.where(coated > 0, coated, np.nan)
     ratio = removed / safe
-    scale = 1.0 / safe
+    per_area = 1.0 / safe
     known = np.where(np.isfinite(fit.mean_variance), fit.mean_variance, 0.0)
     dwell = (by_mean * known) @ by_mean.T
     film = by_film @ fit.covariance @ by_film.T
-    outer = np.outer(scale, scale)
-    level = np.diag((ratio * u_level * scale) ** 2)
+    outer = np.outer(per_area, per_area)
+    level = np.diag((ratio * u_level * per_area) ** 2)
     random = (dwell + film) * outer + level
-    shape_part, contact_part = ratio * u_shape * scale, ratio * by_contact * scale
+    shape_part, contact_part = ratio * u_shape * per_area, ratio * by_contact * per_area
     systematic = np.outer(shape_part, shape_part) + np.outer(contact_part, contact_part)
     by_creep = by_film[:, :terms]
-    creep = ((by_creep @ fit.covariance[:terms, :terms]) * by_creep).sum(axis=1)
-    pressure = by_film[:, terms] ** 2 * fit.covariance[terms, terms]
+    creep_variance = ((by_creep @ fit.covariance[:terms, :terms]) * by_creep).sum(axis=1)
+    pressure_variance = by_film[:, terms] ** 2 * fit.covariance[terms, terms]
     return Ratios(
         coated=coated,
         u_coated=np.sqrt(u_shape**2 + by_contact**2 + u_level**2),
         removed=removed,
         u_removed=np.sqrt(np.diag(dwell + film)),
         ratio=ratio,
-        uncorrected=raw * scale,
+        uncorrected=raw * per_area,
         random_covariance=random,
         systematic_covariance=systematic,
         budget={
-            "dwells": np.sqrt(np.diag(dwell)) * scale,
-            "creep": np.sqrt(creep) * scale,
-            "pressure": np.sqrt(pressure) * scale,
-            "position": np.abs(ratio) * u_level * scale,
+            "dwells": np.sqrt(np.diag(dwell)) * per_area,
+            "creep": np.sqrt(creep_variance) * per_area,
+            "pressure": np.sqrt(pressure_variance) * per_area,
+            "position": np.abs(ratio) * u_level * per_area,
             "dimensions": np.abs(shape_part),
             "contact": np.abs(contact_part),
         },

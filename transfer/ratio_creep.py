@@ -173,7 +173,7 @@ def _log_likelihood(
     decay: FloatArray,
     wander: FloatArray,
 ) -> FloatArray:
-    """Log-likelihood of the dwells' slopes (k,) for every pair of decay and wander (g,), by Kalman's recursion.
+    """Log-likelihood of the dwells' slopes (k,) for every decay and wander (g,), by Kalman's recursion.
 
     The state is (r, a): the wandering rate and the decaying part, the latter new in every hold.
     """

@@ -23,7 +23,7 @@ class RemovalCurve:
     """Film gone since the dwell before, at the set point and with creep taken out.
 
     reading : (b,) mm. removed : (b,) cm^2. variance : (b,) cm^4, independent part. time : (b,) s.
-    time_start, time_end : s. total : cm^2 between the two dwells, u_total its standard uncertainty (cm^2).
+    time_start, time_end : s. bin_width : mm, 0 for single rows. total : cm^2 between the two dwells, u_total its standard uncertainty (cm^2).
     """
 
     move: int
@@ -39,6 +39,7 @@ class RemovalCurve:
     u_total: float
     time_start: float
     time_end: float
+    bin_width: float
 
 
 def removal_curve(
@@ -72,14 +73,16 @@ def removal_curve(
     rows = slice(way.first, way.last + 1)
     t, x = time[rows], position[rows]
     off = pressure[rows] - nodes.target[before]
-    at_target = area[rows] * (1.0 + fit.compressibility * off)
+    at_target = area[rows] * np.exp(fit.compressibility * off)
     removed = film_area(nodes, fit, before, t) - at_target
     start = motion.rests[nodes.rest[before]].level
     end = motion.rests[nodes.rest[after]].level
     middle = np.asarray([0.5 * (way.start + way.end)])
     scale = float(film_area(nodes, fit, before, middle)[0])
     row_variance = scale**2 * fit.row_variance * fit.inflation * nodes.kept.group
+    width = 0.0
     if x.size > _BINS and end != start:
+        width = abs(end - start) / _BINS
         edges = np.clip(((x - start) / (end - start) * _BINS).astype(np.intp), 0, _BINS - 1)
         count = np.bincount(edges, minlength=_BINS).astype(np.float64)
         used = count > 0
@@ -105,4 +108,5 @@ def removal_curve(
         u_total=u_total,
         time_start=way.start,
         time_end=way.end,
+        bin_width=width,
     )

@@ -77,7 +77,7 @@ def dwell_rows(
     DwellRows
     """
     node_of = np.full(time.size, -1, dtype=np.intp)
-    for node, (rest, hold) in enumerate(pairs):
+    for k, (rest, hold) in enumerate(pairs):
         stay = motion.rests[rest]
         if not stay.still:
             continue
@@ -86,7 +86,7 @@ def dwell_rows(
         if settling > 0 and rest > 0 and first == stay.first and last > first:
             wait = min(settling, 0.4 * float(time[last] - time[first]))
             first = int(np.searchsorted(time, time[first] + wait))
-        node_of[first : last + 1] = node
+        node_of[first : last + 1] = k
     rows = np.flatnonzero((node_of >= 0) & held.steady)
     node = node_of[rows]
     t, y = time[rows], np.log(area[rows])

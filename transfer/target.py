@@ -83,7 +83,13 @@ def choose_target(
     loss = loss_map(holds, planned, film) if holds and planned else None
     supply = supply_of(sheet, stroke, steps, film)
     inputs = gather_inputs(
-        result, sheet, film=film, loss=loss, supply=supply, drift_u=_drift_u(check, planned)
+        result,
+        sheet,
+        film=film,
+        loss=loss,
+        supply=supply,
+        drift_u=_drift_u(check, planned),
+        no_loss=_no_loss(holds, planned),
     )
     choice = choose(inputs)
     at = choice.recommended
@@ -117,7 +123,7 @@ def choose_target(
         cautions=cautions(sheet),
         drawing=_drawing(result, inputs),
         set_u=inputs.set_u,
-        warnings=warnings_of(result, sheet, inputs, choice, holds=holds, foreseen=foreseen),
+        warnings=warnings_of(result, sheet, inputs, choice, foreseen=foreseen),
         settings={
             "coverage_factor": COVERAGE_FACTOR,
             "holds": [hold.source.path for hold in holds],
@@ -134,6 +140,15 @@ def _counted(film: FilmAxis, sheet: RunSheet) -> FilmAxis:
         return replace(film, molecules=molecules_spread(sheet.film).value)
     except UpstrokeError:
         return film  # the sheet does not tell it either: no budget, and the result says why
+
+
+def _no_loss(holds: tuple[HoldResult, ...], planned: float | None) -> str:
+    """Why nothing can be said about film loss, where that is so."""
+    if not any(result.holds for result in holds):
+        return "no hold is given" if not holds else "no hold was found in the records given"
+    if planned is None:
+        return "the dipping time is not known (stack.layers, dipping.stroke_length, dipping.speed)"
+    return "no hold lies where the isotherm gives a modulus"
 
 
 def _drift_u(check: CheckResult | None, planned: float | None) -> float:

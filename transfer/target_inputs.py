@@ -56,7 +56,8 @@ class TargetInputs:
     """What the limits are computed from. Pressures mN/m.
 
     collapse : None where it was not reached (`highest` then stands in as a lower bound).
-    drift_u : what the pressure probe may drift while dipping.  loss : None without holds or planned time.
+    drift_u : what the pressure probe may drift while dipping.
+    loss : None where unknown, `no_loss` then says why.
     """
 
     film: FilmAxis
@@ -71,6 +72,7 @@ class TargetInputs:
     drift_u: float
     loss: LossMap | None
     supply: Supply | None
+    no_loss: str = ""
 
     @property
     def end(self) -> Quantity:
@@ -109,6 +111,7 @@ def gather_inputs(
     loss: LossMap | None = None,
     supply: Supply | None = None,
     drift_u: float = 0.0,
+    no_loss: str = "no hold is given",
 ) -> TargetInputs:
     """Collect what the isotherm and the sheet say."""
     branch = result.headline
@@ -126,6 +129,7 @@ def gather_inputs(
         drift_u=drift_u,
         loss=loss,
         supply=supply,
+        no_loss=no_loss,
     )
 
 

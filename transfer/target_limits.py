@@ -235,7 +235,7 @@ def _loss(inputs: TargetInputs) -> Rule | LeftOut:
     if limit is None:
         return LeftOut("film loss", "the sheet sets no limit (target.loss)")
     if loss is None:
-        return LeftOut("film loss", "needs holds, and layers, stroke length and speed for the time")
+        return LeftOut("film loss", inputs.no_loss)
 
     def slack(pressure: FloatArray, k: float) -> FloatArray:
         return np.asarray(limit.value - loss.total(pressure, k))

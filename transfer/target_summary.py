@@ -6,7 +6,6 @@ from collections.abc import Sequence
 
 import numpy as np
 
-from isotherm.hold_result import HoldResult
 from isotherm.quantity import Quantity
 from isotherm.result import IsothermResult
 from isotherm.sheet import RunSheet
@@ -121,7 +120,6 @@ def warnings_of(
     inputs: TargetInputs,
     choice: Choice,
     *,
-    holds: Sequence[HoldResult],
     foreseen: Budget | None,
 ) -> tuple[str, ...]:
     """What was assumed, and what the answer would need to say more."""
@@ -138,10 +136,7 @@ def warnings_of(
     if inputs.overshoot is None:
         notes.append("dipping.overshoot not given: none is kept from collapse and transitions")
     if sheet.target.loss is not None and inputs.loss is None:
-        why = "no hold is given"
-        if holds:
-            why = "the holds or the dipping time (layers, stroke length, speed) are not usable"
-        notes.append(f"target.loss cannot be judged: {why}")
+        notes.append(f"target.loss cannot be judged: {inputs.no_loss}")
     if sheet.target.packing_error is not None and inputs.tolerance is None:
         notes.append("target.packing_error cannot be judged without dipping.tolerance")
     notes += _loss_notes(inputs, choice)
