@@ -257,3 +257,14 @@ def test_record_without_a_compression_is_an_error() -> None:
 def test_units_of_wishes_are_quantities() -> None:
     sheet = parse_sheet('[target]\nguard_band = "0.002 N/m"\n')
     assert sheet.target.guard_band == Quantity(2.0, None, "mN/m")
+
+
+def test_loss_rule_left_out_says_what_is_missing() -> None:
+    holds = (steady_hold(25.0, 0.01 / 3600, seed=3),)
+    sheet = parse_sheet('[target]\nloss = "4 %"\n')
+    left = {
+        item.rule: item.why for item in choose_target(plain_film(), sheet, holds=holds).left_out
+    }
+    assert "dipping time is not known" in left["film loss"]
+    none = {item.rule: item.why for item in choose_target(plain_film(), sheet).left_out}
+    assert none["film loss"] == "no hold is given"
