@@ -1,4 +1,4 @@
-"""What a check before spreading found, as frozen data that reads and writes its JSON form."""
+"""What a check before spreading found, as frozen data that writes and reads its JSON form."""
 
 from __future__ import annotations
 
@@ -20,6 +20,7 @@ __all__ = ["CheckCurve", "CheckItem", "CheckResult", "load_check", "verdict_of"]
 FloatArray = NDArray[np.float64]
 
 _SCHEMA = "upstroke.check/1"
+_REMEDY = "give the file that `upstroke check --json` wrote"
 
 
 def verdict_of(quantity: Quantity, limit: float) -> str:
@@ -121,34 +122,45 @@ class CheckResult:
         }
 
 
-def _quantity(given: Any, key: str, unit: str, where: str) -> Quantity | None:
-    """Quantity from its JSON form; None stays None."""
-    if given is None:
-        return None
-    try:
-        value, u = given["value"], given.get("u")
-        numbers = [float(value)] + ([float(u)] if u is not None else [])
-    except (KeyError, TypeError, ValueError, AttributeError):
-        numbers = [math.nan]
-        value, u = None, None
-    good = all(math.isfinite(n) for n in numbers) and (u is None or float(u) >= 0)
-    if not good or given.get("unit") != unit:
+def _number(given: Any) -> float | None:
+    """A finite number as float, else None."""
+    good = isinstance(given, int | float) and not isinstance(given, bool) and math.isfinite(given)
+    return float(given) if good else None
+
+
+def _quantity(given: Any, key: str, unit: str | None, where: str) -> Quantity:
+    """Quantity from its JSON form; `unit` None takes any."""
+    fields = given if isinstance(given, dict) else {}
+    value = _number(fields.get("value"))
+    parts = {name: _number(fields.get(name)) for name in ("u", "u_random", "u_systematic")}
+    told = {name for name in parts if fields.get(name) is not None}
+    bad = any(parts[name] is None or (parts[name] or 0.0) < 0 for name in told)
+    if value is None or bad or (unit is not None and fields.get("unit") != unit):
+        expected = f" in {unit}" if unit is not None else ""
         raise UpstrokeError(
-            f"'{key}' is not a quantity in {unit}",
-            where=where,
-            remedy="give the file that `upstroke check --json` wrote",
+            f"'{key}' of the check is not a quantity{expected}", where=where, remedy=_REMEDY
         )
     return Quantity(
-        float(value),
-        None if u is None else float(u),
-        unit,
-        given.get("u_random"),
-        given.get("u_systematic"),
+        value, parts["u"], str(fields.get("unit", "1")), parts["u_random"], parts["u_systematic"]
+    )
+
+
+def _item(given: Any, number: int, where: str) -> CheckItem:
+    if not isinstance(given, dict):
+        raise UpstrokeError(f"item {number} of the check is no item", where=where, remedy=_REMEDY)
+    return CheckItem(
+        name=str(given.get("name", "")),
+        value=_quantity(given.get("value"), f"items[{number}].value", None, where),
+        limit=_number(given.get("limit")),
+        limit_from=str(given.get("limit_from", "")),
+        verdict=str(given.get("verdict", "")),
+        note=str(given.get("note", "")),
+        record=str(given.get("record", "")),
     )
 
 
 def load_check(path: str | Path) -> CheckResult:
-    """Read the JSON that a check wrote, for another analysis to use.
+    """Read the JSON that a check wrote.
 
     Parameters
     ----------
@@ -177,32 +189,15 @@ def load_check(path: str | Path) -> CheckResult:
         data = json.loads(text)
     except (ValueError, RecursionError):
         data = None
-    if not isinstance(data, dict) or data.get("schema") != _SCHEMA:
-        raise UpstrokeError(
-            "not the result of a check",
-            where=where,
-            remedy="give the file that `upstroke check --json` wrote",
-        )
-    items = []
-    for number, given in enumerate(data.get("items") or [], start=1):
-        unit = given["value"].get("unit", "1") if isinstance(given.get("value"), dict) else "1"
-        value = _quantity(given.get("value"), f"items[{number}].value", unit, where)
-        items.append(
-            CheckItem(
-                name=str(given.get("name", "")),
-                value=value if value is not None else Quantity(math.nan, None, unit),
-                limit=given.get("limit"),
-                limit_from=str(given.get("limit_from", "")),
-                verdict=str(given.get("verdict", "")),
-                note=str(given.get("note", "")),
-                record=str(given.get("record", "")),
-            )
-        )
+    items = data.get("items", []) if isinstance(data, dict) else None
+    if not isinstance(data, dict) or data.get("schema") != _SCHEMA or not isinstance(items, list):
+        raise UpstrokeError("not the result of a check", where=where, remedy=_REMEDY)
+    zero, drift, notes = (data.get(key) for key in ("zero_offset", "drift_rate", "warnings"))
     return CheckResult(
-        items=tuple(items),
-        zero_offset=_quantity(data.get("zero_offset"), "zero_offset", "mN/m", where),
-        drift_rate=_quantity(data.get("drift_rate"), "drift_rate", "mN/m/h", where),
+        items=tuple(_item(one, i, where) for i, one in enumerate(items, start=1)),
+        zero_offset=None if zero is None else _quantity(zero, "zero_offset", "mN/m", where),
+        drift_rate=None if drift is None else _quantity(drift, "drift_rate", "mN/m/h", where),
         title=str(data.get("title", "")),
-        warnings=tuple(str(w) for w in data.get("warnings") or []),
+        warnings=tuple(str(one) for one in notes) if isinstance(notes, list) else (),
         path=where,
     )

@@ -43,7 +43,9 @@ def held(
         "nucleation": -np.expm1(-math.log(2) * (t / (0.4 * t[-1])) ** 2.5),
     }[law]
     ringing = overshoot * np.exp(-t / 60.0) * np.cos(t / 30.0)
-    area = np.concatenate([160.0 - 0.2 * ramp, 100.0 * (1.0 - loss * share) * (1 - ringing / 150.0)])
+    area = np.concatenate(
+        [160.0 - 0.2 * ramp, 100.0 * (1.0 - loss * share) * (1 - ringing / 150.0)]
+    )
     pressure = np.concatenate([30.0 * (ramp / 300.0) ** 3, 30.0 + ringing])
     time = np.concatenate([ramp, 300.0 + t])
     return table(
@@ -53,7 +55,9 @@ def held(
     )
 
 
-@pytest.mark.parametrize("law", ["constant", "desorption", "dissolution", "relaxation", "nucleation"])
+@pytest.mark.parametrize(
+    "law", ["constant", "desorption", "dissolution", "relaxation", "nucleation"]
+)
 def test_each_law_is_recognised_and_its_loss_found(law: str) -> None:
     result = analyse_hold(hold_record(held(law=law), RunSheet()))
     (hold,) = result.holds
@@ -243,9 +247,7 @@ def test_a_plain_compression_holds_nothing() -> None:
     area = np.linspace(200.0, 50.0, n)
     pressure = np.interp(area, [50.0, 60.0, 90.0, 200.0], [50.0, 10.0, 9.5, 0.0])
     rng = np.random.default_rng(2)
-    made = table(
-        time=np.arange(n) * 1.0, area=area, pressure=pressure + 0.02 * rng.normal(size=n)
-    )
+    made = table(time=np.arange(n) * 1.0, area=area, pressure=pressure + 0.02 * rng.normal(size=n))
     with pytest.raises(UpstrokeError, match="no hold found"):
         hold_record(made, RunSheet())
 

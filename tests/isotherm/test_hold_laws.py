@@ -31,7 +31,9 @@ def test_half_of_the_change_at_the_half_time() -> None:
     assert "instantaneous" in nucleation_type(1.4)
 
 
-def synthetic(name: str, noise: float = 1e-3, seed: int = 0, n: int = 4000) -> tuple[np.ndarray, np.ndarray]:
+def synthetic(
+    name: str, noise: float = 1e-3, seed: int = 0, n: int = 4000
+) -> tuple[np.ndarray, np.ndarray]:
     rng = np.random.default_rng(seed)
     t = np.linspace(0.0, 7200.0, n)
     g = growth(name, t, np.array([2000.0]), X)[:, 0]
