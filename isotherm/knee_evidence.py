@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from dataclasses import dataclass
 from typing import Final
 
@@ -40,12 +41,15 @@ class Verdict:
     smooth_rss: float
 
 
-def judge_knee(x: FloatArray, y: FloatArray, sigma: FloatArray) -> Verdict | None:
+def judge_knee(
+    x: FloatArray, y: FloatArray, sigma: FloatArray, *, slopes: bool = False
+) -> Verdict | None:
     """The best single rounded knee in a window against the best smooth polynomial.
 
     Parameters
     ----------
     x, y, sigma : (n,) window of nodes, x increasing.
+    slopes : whether the moduli beside the knee are wanted; NaN otherwise.
 
     Returns
     -------
@@ -86,7 +90,7 @@ def judge_knee(x: FloatArray, y: FloatArray, sigma: FloatArray) -> Verdict | Non
     wider = coarse.width * (np.array([0.55, 1.0, 1.6]) if n >= 16 else np.array([1.0]))
     fine = fitter.best(np.repeat(shifts, wider.size), np.tile(wider, shifts.size))
     best = fine if fine is not None and fine.bic < coarse.bic else coarse
-    before, after = fitter.slopes(best, powers)
+    before, after = fitter.slopes(best, powers) if slopes else (math.nan, math.nan)
     knee = Candidate(
         float(centre + half * best.at),
         float(half * best.width),
@@ -125,55 +129,48 @@ class _HingeFitter:
     floor: float
 
     def best(self, at: FloatArray, width: FloatArray) -> _Hinge | None:
-        """The hinge of lowest BIC among (g,) positions and widths."""
+        """The hinge of lowest BIC among (g,) positions and widths, beside degrees 1, 2 and 3."""
         n = self.t.size
+        degrees = [d for d in (1, 2, 3) if n >= d + 5]
+        if not degrees:
+            return None
         hinge = _rounded(self.t[:, None] - at, width)
         h1 = hinge * self.weight[:, None]
         h2 = hinge * h1
-        k1, k2 = self.q[:, :4].T @ h1, self.q[:, :4].T @ h2
-        n11, n22, n12 = (np.einsum("ij,ij->j", u, v) for u, v in ((h1, h1), (h2, h2), (h1, h2)))
-        t1, t2 = h1.T @ self.target, h2.T @ self.target
-        total = float(self.target @ self.target)
+        basis = self.q[:, : degrees[-1] + 1]
+        k1, k2 = basis.T @ h1, basis.T @ h2
+        t1, t2 = self.target @ h1, self.target @ h2
+        n11 = np.einsum("ij,ij->j", h1, h1)
+        n12 = np.einsum("ij,ij->j", h1, h2)
+        n22 = np.einsum("ij,ij->j", h2, h2)
+        # one row a degree: what is left of the columns and of the target beside its polynomial
+        a = self.along[: degrees[-1] + 1, None]
+        rows = slice(1, None)
+        s11 = n11 - np.cumsum(k1 * k1, axis=0)[rows]
+        s12 = n12 - np.cumsum(k1 * k2, axis=0)[rows]
+        s22 = n22 - np.cumsum(k2 * k2, axis=0)[rows]
+        r1 = t1 - np.cumsum(a * k1, axis=0)[rows]
+        r2 = t2 - np.cumsum(a * k2, axis=0)[rows]
+        rss0 = float(self.target @ self.target) - np.cumsum(a[:, 0] ** 2)[rows]
+        sound = s11 > 1e-9 * n11
+        one = np.where(sound, r1 * r1 / np.where(sound, s11, 1.0), 0.0)
+        det = s11 * s22 - s12 * s12
+        sound &= det > 1e-7 * s11 * s22
+        both = (r1 * r1 * s22 - 2.0 * r1 * r2 * s12 + r2 * r2 * s11) / np.where(sound, det, 1.0)
+        both = np.where(sound, both, 0.0)
+        log_n = math.log(n)
         best: _Hinge | None = None
-        for degree in (1, 2, 3):
-            if n < degree + 5:
-                break
-            a = self.along[: degree + 1]
-            u1, u2 = k1[: degree + 1], k2[: degree + 1]
-            rss0 = total - float(a @ a)
-            s11 = n11 - np.einsum("ij,ij->j", u1, u1)
-            r1 = t1 - a @ u1
-            sound = s11 > 1e-9 * n11
-            gain = np.where(sound, r1**2 / np.where(sound, s11, 1.0), 0.0)
-            best = self._better(best, gain, rss0, at, width, degree, False)
-            if n < degree + 8:
-                continue
-            s22 = n22 - np.einsum("ij,ij->j", u2, u2)
-            s12 = n12 - np.einsum("ij,ij->j", u1, u2)
-            r2 = t2 - a @ u2
-            det = s11 * s22 - s12**2
-            sound &= det > 1e-7 * s11 * s22
-            both = (r1**2 * s22 - 2 * r1 * r2 * s12 + r2**2 * s11) / np.where(sound, det, 1.0)
-            best = self._better(best, np.where(sound, both, 0.0), rss0, at, width, degree, True)
+        for curved, gains in ((False, one), (True, both)):
+            chosen = gains.argmax(axis=1)
+            for row, degree in enumerate(degrees):
+                if curved and n < degree + 8:
+                    continue
+                i = int(chosen[row])
+                left = max(float(rss0[row]) - float(gains[row, i]), 0.0)
+                bic = n * math.log(left + self.floor) + (degree + 4 + int(curved)) * log_n
+                if best is None or bic < best.bic:
+                    best = _Hinge(float(at[i]), float(width[i]), degree, curved, bic, left)
         return best
-
-    def _better(
-        self,
-        best: _Hinge | None,
-        gain: FloatArray,
-        rss0: float,
-        at: FloatArray,
-        width: FloatArray,
-        degree: int,
-        curved: bool,
-    ) -> _Hinge:
-        n = self.t.size
-        i = int(np.argmax(gain))
-        left = max(rss0 - float(gain[i]), 0.0) + self.floor
-        bic = float(n * np.log(left) + (degree + 4 + int(curved)) * np.log(n))
-        if best is not None and best.bic <= bic:
-            return best
-        return _Hinge(float(at[i]), float(width[i]), degree, curved, bic, left - self.floor)
 
     def slopes(self, hinge: _Hinge, powers: FloatArray) -> tuple[float, float]:
         """Slopes just left and right of the hinge, per unit of t."""

@@ -91,14 +91,14 @@ class _Pruning:
     def run(self, knots: list[int]) -> list[Candidate]:
         found = list(knots)
         for _ in range(ROUNDS):
-            knees = self._drop(found)
+            self._drop(found)
             if not self._add(found):
                 break
         else:
-            knees = self._drop(found)
-        return knees
+            self._drop(found)
+        return self._knees([0, *found, self.x.size])
 
-    def _drop(self, found: list[int]) -> list[Candidate]:
+    def _drop(self, found: list[int]) -> None:
         """Merge and drop until every knee left beats a smooth curve; `found` is changed in place."""
         while self._merge(found):
             pass
@@ -116,11 +116,20 @@ class _Pruning:
             scores = [np.inf if u else s for s, u in zip(scores, unclear, strict=True)]
             worst = int(np.argmin(scores))
             if scores[worst] >= EVIDENCE:
-                return [v.knee for v in verdicts if v is not None]
+                return
             del found[worst]
             while self._merge(found):
                 pass
-        return []
+
+    def _knees(self, stops: list[int]) -> list[Candidate]:
+        """The knees found, with the moduli beside them."""
+        out = []
+        for k in range(len(stops) - 2):
+            a, b = self.window(stops, k, k + 2)
+            verdict = judge_knee(self.x[a:b], self.y[a:b], self.sigma[a:b], slopes=True)
+            if verdict is not None:
+                out.append(verdict.knee)
+        return out
 
     def _adequate(self, rss: float, a: int, b: int) -> bool:
         """Whether a weighted residual sum over nodes a to b is about what the noise leaves."""
