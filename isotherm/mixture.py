@@ -103,7 +103,7 @@ def analyse_mixture(
 def _pressures(
     results: Sequence[IsothermResult], pressures: Sequence[float] | None, warnings: list[str]
 ) -> tuple[float, ...]:
-    ranges = [pressure_range(r.headline) for r in results]
+    ranges = [pressure_range(r.headline, where=r.source.path) for r in results]
     low, high = max(r[0] for r in ranges), min(r[1] for r in ranges)
     wanted = _USUAL_PRESSURES if pressures is None else tuple(sorted(set(pressures)))
     usable = tuple(p for p in wanted if low <= p <= high)

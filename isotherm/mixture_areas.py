@@ -188,7 +188,7 @@ def composition_areas(
     common factor on all areas cannot create an excess area.
     """
     wanted = np.asarray(pressures, dtype=np.float64)
-    lowest = max(pressure_range(r.headline)[0] for r in results)
+    lowest = max(pressure_range(r.headline, where=r.source.path)[0] for r in results)
     top = float(wanted.max())
     span = max(top - lowest, 1e-9)
     # finer towards low pressure, where areas change fastest

@@ -151,7 +151,7 @@ def _grid(
     warnings: list[str],
 ) -> FloatArray:
     """Pressures every kept run has, evenly spaced."""
-    ranges = [pressure_range(r.headline) for r in results]
+    ranges = [pressure_range(r.headline, where=r.source.path) for r in results]
     low = max(ranges[i][0] for i in np.flatnonzero(kept))
     highs = np.array([ranges[i][1] for i in np.flatnonzero(kept)])
     high = float(highs.min())

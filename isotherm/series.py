@@ -53,7 +53,9 @@ class AreaSamples:
     softness: FloatArray
 
 
-def _rising(branch: Branch) -> tuple[FloatArray, FloatArray, FloatArray, FloatArray]:
+def _rising(
+    branch: Branch, where: str = ""
+) -> tuple[FloatArray, FloatArray, FloatArray, FloatArray]:
     """Area, pressure, u and modulus of the curve up to its collapse or highest pressure."""
     curve = branch.curve
     good = np.isfinite(curve.area) & np.isfinite(curve.pressure)
@@ -67,14 +69,18 @@ def _rising(branch: Branch) -> tuple[FloatArray, FloatArray, FloatArray, FloatAr
     if stop < 3:
         raise UpstrokeError(
             "fewer than three points rise to the highest pressure",
+            where=where,
             remedy="leave this run out of the series",
         )
     return area[:stop], pressure[:stop], u[:stop], modulus[:stop]
 
 
-def pressure_range(branch: Branch) -> tuple[float, float]:
-    """Lowest and highest surface pressure (mN/m) at which `branch` has a definite area."""
-    _, pressure, _, _ = _rising(branch)
+def pressure_range(branch: Branch, *, where: str = "") -> tuple[float, float]:
+    """Lowest and highest surface pressure (mN/m) at which `branch` has a definite area.
+
+    Raises `UpstrokeError`, naming the run by `where`, when fewer than three points rise.
+    """
+    _, pressure, _, _ = _rising(branch, where)
     low = max(_FLOOR_IN_NOISE * branch.noise, float(pressure[0]))
     return low, float(pressure.max())
 

@@ -123,8 +123,8 @@ def expansivities(
     there is a mixture of two phases.
     """
     wanted = np.array(sorted(set(_USUAL_PRESSURES if pressures is None else pressures)))
+    tops = [pressure_range(r.headline, where=r.source.path)[1] for r in results]
     samples = [area_against_pressure(r.headline, wanted) for r in results]
-    tops = [pressure_range(r.headline)[1] for r in results]
     found = []
     for column, pressure in enumerate(wanted):
         sides: dict[str, list[int]] = {}

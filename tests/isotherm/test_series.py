@@ -66,8 +66,8 @@ def test_too_short_a_curve_is_refused() -> None:
     two = type(curve)(
         *(getattr(curve, n)[:2] for n in ("area", "pressure", "u_pressure", "modulus", "u_modulus"))
     )
-    with pytest.raises(UpstrokeError, match="three points"):
-        pressure_range(type(branch)(**{**branch.__dict__, "curve": two}))
+    with pytest.raises(UpstrokeError, match=r"run\.csv: fewer than three points"):
+        pressure_range(type(branch)(**{**branch.__dict__, "curve": two}), where="run.csv")
 
 
 def test_names_are_unique() -> None:
