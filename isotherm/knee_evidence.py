@@ -131,7 +131,7 @@ class _HingeFitter:
     def best(self, at: FloatArray, width: FloatArray) -> _Hinge | None:
         """The hinge of lowest BIC among (g,) positions and widths, beside degrees 1, 2 and 3."""
         n = self.t.size
-        degrees = [d for d in (1, 2, 3) if n >= d + 5]
+        degrees = [d for d in (1, 2, 3) if n >= d + 5 and d < self.q.shape[1]]
         if not degrees:
             return None
         hinge = _rounded(self.t[:, None] - at, width)
