@@ -63,6 +63,10 @@ _register(
     mixture="Excess area and Gibbs energy of mixtures, miscibility.",
     temperature="Slope and heat of the transition, critical point, trends.",
 )
+_register(
+    "All of it",
+    report="One page for a sample: its checks, isotherms, holds, target and build.",
+)
 
 
 class LazyGroup(TyperGroup):

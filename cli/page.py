@@ -124,7 +124,7 @@ def page_bytes(
     # only this very script may run, whatever a file name, a title or a header tries
     digest = base64.b64encode(hashlib.sha256(script.encode()).digest()).decode()
     policy = (
-        f"default-src 'none'; script-src 'sha256-{digest}'; style-src 'unsafe-inline'; "
+        f"default-src 'none'; script-src 'sha256-{digest}'; style-src 'unsafe-inline'; img-src data:; "
         "base-uri 'none'; form-action 'none'"
     )
     html = f"""<!doctype html>
@@ -173,7 +173,7 @@ def _article(section: Section, number: int, *, heading: bool) -> str:
     )
     parts = [
         f'<article id="part-{number}" aria-label="{safe(section.title)}">',
-        f"<h2>{safe(section.title)}</h2>" if heading else "",
+        f'<h2 class="title">{safe(section.title)}</h2>' if heading else "",
         head("Question"),
         f'<p class="question">{safe(question_of(payload))}</p>',
         head("Answer"),

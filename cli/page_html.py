@@ -73,6 +73,7 @@ def picture_html(picture: Picture, name: str, *, only_on_screen: bool) -> str:
         Whether another figure shows the same on paper.
     """
     kind = "narrow" if picture.narrow else "wide"
+    kind += " cursor" if picture.cursor else ""
     kind += " on-screen" if only_on_screen else ""
     # `<` cannot stand in a script element: `</script` would end it
     data = json.dumps(picture.data(), ensure_ascii=True, separators=(",", ":"))

@@ -13,7 +13,7 @@ if TYPE_CHECKING:
     from isotherm.result import IsothermResult
     from isotherm.sheet import RunSheet
 
-__all__ = ["isotherm_picture", "result_pictures", "strokes_picture"]
+__all__ = ["isotherm_picture", "limits_picture", "result_pictures", "strokes_picture"]
 
 PAPER = (4.3, 4.5)  # inches: at the width of a phone its letters have the size of the page's
 FLAT_PAPER = (4.3, 3.0)
@@ -42,14 +42,15 @@ def isotherm_picture(result: IsothermResult, sheet: RunSheet | None = None) -> P
         lower.plot(curve.area, curve.modulus, color=SECOND)
         for point in _found(result):
             upper.plot([point[0]], [point[1]], marker="o", color=ACCENT, markersize=5)
+        upper.set_xlim(*_frame(result))
         scale_modulus(lower, float(np.nanmax(curve.modulus)))
         upper.tick_params(labelbottom=False)
         upper.set_ylabel("surface pressure Π (mN/m)")
         lower.set_ylabel("modulus (mN/m)")
         lower.set_xlabel("area per molecule A (nm²)")
-        kept = np.unique(
-            np.linspace(0, curve.area.size - 1, min(curve.area.size, MOST_POINTS)).round()
-        ).astype(np.int64)
+        inside = np.flatnonzero(curve.area <= upper.get_xlim()[1])
+        step = np.linspace(0, inside.size - 1, min(inside.size, MOST_POINTS)).round()
+        kept = inside[np.unique(step).astype(np.int64)]
         x, y = place(upper, curve.area[kept], curve.pressure[kept])
         said = _readings(result, sheet, kept)
         name = f"{result.headline.direction} {result.headline.cycle}"
@@ -60,6 +61,16 @@ def isotherm_picture(result: IsothermResult, sheet: RunSheet | None = None) -> P
             narrow=True,
             cursor=True,
         )
+
+
+def _frame(result: IsothermResult) -> tuple[float, float]:
+    """Horizontal limits, nm^2: a long gas tail is cut so that the rise has room."""
+    area, rise = result.headline.curve.area, result.headline.lift_off
+    left, right = float(area.min()), float(area.max())
+    if rise is not None:
+        right = min(right, rise.value + 0.6 * (rise.value - left))
+    room = 0.03 * (right - left)
+    return left - room, right + room
 
 
 def _found(result: IsothermResult) -> list[tuple[float, float]]:
@@ -101,7 +112,7 @@ def _readings(result: IsothermResult, sheet: RunSheet | None, kept: Any) -> tupl
             parts.append(f"strokes left {film.strokes_left[i]:.0f}")
         if curve.trough_area is not None:
             parts.append(f"trough area {curve.trough_area[i]:.1f} cm²")
-        said.append("; ".join(parts))
+        said.append("\n".join(parts))
     return tuple(said)
 
 
@@ -161,7 +172,57 @@ def _stroke_text(stroke: dict[str, Any]) -> str:
     return f"{text}; {flags}" if flags else text
 
 
+def limits_picture(payload: dict[str, Any]) -> Picture | None:
+    """Draw the pressures each rule allows, the window and the recommendation; None without limits."""
+    limits = [rule for rule in payload.get("limits") or [] if isinstance(rule, dict)]
+    if not limits:
+        return None
+    from matplotlib.figure import Figure
+
+    from isotherm.figures_style import ACCENT, BAND_SHADED, INK, style
+
+    known = [
+        end for rule in limits for pair in rule["intervals"] for end in pair if end is not None
+    ]
+    with style():
+        figure = Figure(figsize=(PAPER[0], 1.0 + 0.3 * len(limits)))
+        edge = 0.45 / (1.0 + 0.3 * len(limits))
+        axes = figure.add_axes((0.36, edge, 0.61, 0.95 - edge))
+        axes.set_xlim(min([0.0, *known]) - 1.0, max([1.0, *known]) + 1.0)
+        low, high = axes.get_xlim()
+        said, places = [], []
+        for row, rule in enumerate(limits):
+            for start, stop in rule["intervals"]:
+                start, stop = (low if start is None else start, high if stop is None else stop)
+                axes.plot(
+                    [start, stop], [row, row], linewidth=7, solid_capstyle="butt",
+                    color=ACCENT if rule["binding"] else INK,
+                )  # fmt: skip
+                places.append((0.5 * (start + stop), row))
+                said.append(f"{rule['label']}: {start:.1f} to {stop:.1f} mN/m\n{rule['reason']}")
+        window, best = payload.get("window"), payload.get("recommended")
+        if window:
+            ends = [
+                low if window[0] is None else window[0],
+                high if window[1] is None else window[1],
+            ]
+            axes.axvspan(*ends, facecolor=BAND_SHADED, zorder=0)
+        if best:
+            axes.axvline(best["value"], color=ACCENT, linewidth=1.2, linestyle=(0, (5, 2)))
+        axes.set_ylim(len(limits) - 0.5, -0.5)
+        axes.set_yticks(range(len(limits)), [str(rule["label"]) for rule in limits])
+        axes.set_xlabel("surface pressure Π (mN/m)")
+        x, y = place(axes, *np.array(places, dtype=np.float64).reshape(-1, 2).T)
+        return picture_of(
+            figure,
+            "Pressures each rule allows (those that bind in the second colour), the window all of them "
+            "leave, and the recommended pressure (dashed).",
+            series=[Series("", x, y, tuple(said))] if said else [],
+            narrow=True,
+        )
+
+
 def result_pictures(payload: dict[str, Any]) -> tuple[Picture, ...]:
     """Draw what a result's JSON form alone allows."""
-    picture = strokes_picture(payload)
-    return () if picture is None else (picture,)
+    drawn = (strokes_picture(payload), limits_picture(payload) if "binding" in payload else None)
+    return tuple(picture for picture in drawn if picture is not None)
