@@ -7,7 +7,15 @@ from typing import Annotated
 
 import typer
 
-from cli.options import ColumnOption, CsvOption, ForceOption, JsonOption, ReportOption, SheetOption
+from cli.options import (
+    ColumnOption,
+    CsvOption,
+    FigureOption,
+    ForceOption,
+    JsonOption,
+    ReportOption,
+    SheetOption,
+)
 
 __all__ = ["app"]
 
@@ -27,6 +35,7 @@ def check(
     column: ColumnOption = None,
     json: JsonOption = None,
     csv: CsvOption = None,
+    figure: FigureOption = None,
     report: ReportOption = None,
     force: ForceOption = False,
 ) -> None:
@@ -48,10 +57,11 @@ def check(
     if not given and sheet is None:
         raise typer.BadParameter("give a record of the bare subphase, or a sheet with [check]")
     inputs = [*given, *([sheet] if sheet else [])]
-    plan = plan_outputs(OutputChoice(json, csv, report=report, force=force), inputs)
+    plan = plan_outputs(OutputChoice(json, csv, figure, report, force), inputs)
 
     from cli.check_text import check_rows, check_text
     from isotherm.check import read_check
+    from isotherm.check_figure import figure_check
 
     result = read_check(given, load_sheet(sheet, column))
     deliver_one(
@@ -60,4 +70,5 @@ def check(
         record_settings("check", sheet, column),
         text=lambda width: check_text(result, width),
         rows=lambda: check_rows(result),
+        figure=lambda: figure_check(result),
     )

@@ -11,6 +11,7 @@ from cli.options import (
     CheckOption,
     ColumnOption,
     CsvOption,
+    FigureOption,
     ForceOption,
     JsonOption,
     ReportOption,
@@ -44,6 +45,7 @@ def hold(
     column: ColumnOption = None,
     json: JsonOption = None,
     csv: CsvOption = None,
+    figure: FigureOption = None,
     report: ReportOption = None,
     force: ForceOption = False,
 ) -> None:
@@ -54,7 +56,7 @@ def hold(
 
     \b
     Examples:
-      upstroke hold held30.csv --sheet run.toml
+      upstroke hold held30.csv --sheet run.toml --figure held.svg
       upstroke hold held30.csv held35.csv -s run.toml --over "4 h" --json held.json
     """
     from cli.film import record_settings
@@ -67,7 +69,7 @@ def hold(
 
     seconds = None if planned is None else read_time(planned, option="--over")
     inputs = [*records, *(path for path in (sheet, check) if path is not None)]
-    plan = plan_outputs(OutputChoice(json, csv, report=report, force=force), inputs)
+    plan = plan_outputs(OutputChoice(json, csv, figure, report, force), inputs)
     run_sheet = load_sheet(sheet, column)
     before = None if check is None else load_check(check)
     results = [
@@ -82,6 +84,7 @@ def hold(
             text=lambda: _text(results),
             json=lambda: _json(results, settings),
             csv=lambda: _csv(results),
+            figure=lambda suffix: _figure(results, suffix),
             report=lambda: _report(results, settings),
         )
     )
@@ -123,3 +126,15 @@ def _csv(results: list[HoldResult]) -> bytes:
     from cli.hold_csv import hold_csv
 
     return hold_csv(results)
+
+
+def _figure(results: list[HoldResult], suffix: str) -> bytes:
+    """Draw the holds of all records on one sheet, numbered through."""
+    from dataclasses import replace
+
+    from isotherm.figures_style import figure_bytes
+    from isotherm.hold_figure import figure_hold
+
+    holds = [hold for result in results for hold in result.holds]
+    numbered = tuple(replace(hold, number=n) for n, hold in enumerate(holds, start=1))
+    return figure_bytes(figure_hold(replace(results[0], holds=numbered)), suffix)

@@ -98,3 +98,9 @@ def test_a_file_that_is_no_check_is_refused(
     text = capsys.readouterr().err
     assert "not the result of a check" in text
     assert text.count("\n") == 1
+
+
+def test_the_figure_is_drawn(dirty: Path, tmp_path: Path) -> None:
+    out = tmp_path / "figure.svg"
+    assert run(["check", str(dirty), "--figure", str(out)]) == 0
+    assert out.read_bytes().startswith(b"<?xml")

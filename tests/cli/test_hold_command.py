@@ -73,3 +73,9 @@ def test_a_record_without_a_hold_is_refused(
     assert text.startswith("upstroke: ")
     assert text.count("\n") == 1
     assert "unexpected" not in text
+
+
+def test_the_figure_is_drawn(record: Path, tmp_path: Path) -> None:
+    out = tmp_path / "figure.svg"
+    assert run(["hold", str(record), "--figure", str(out)]) == 0
+    assert out.read_bytes().startswith(b"<?xml")
