@@ -293,4 +293,18 @@ def _spread(
         # what the delay does not explain of the difference between both ways stays in doubt
         bias = 0.5 * abs(float(np.median(own[rising]) - np.median(own[~rising])))
     floor = float(places[1] - places[0]) / np.sqrt(12.0 * len(near))
-    return float(np.sqrt(curvature**2 + scatter**2 + (0.5 * bias) ** 2 + floor**2))
+    parts = (curvature, scatter, 0.5 * bias, floor, _model_doubt(curves, delay))
+    return float(np.sqrt(sum(part**2 for part in parts)))
+
+
+def _model_doubt(curves: list[RemovalCurve], delay: float) -> float:
+    """What the model leaves open, mm, common to all strokes.
+
+    The film does not lag by a pure delay, and area and position of one row were not read at one instant:
+    within a row's time (rectangular) and a quarter of the delay the dipper's way is not known.
+    """
+    speed = float(
+        np.median([abs(c.end - c.start) / max(c.time_end - c.time_start, 1e-9) for c in curves])
+    )
+    row = float(np.median([c.row_seconds for c in curves]))
+    return float(np.hypot(speed * row / np.sqrt(12.0), 0.25 * speed * delay))

@@ -23,7 +23,8 @@ class RemovalCurve:
     """Film gone since the dwell before, at the set point and with creep taken out.
 
     reading : (b,) mm. removed : (b,) cm^2. variance : (b,) cm^4, independent part. time : (b,) s.
-    time_start, time_end : s. bin_width : mm, 0 for single rows. total : cm^2 between the two dwells, u_total its standard uncertainty (cm^2).
+    time_start, time_end : s. bin_width : mm, 0 for single rows.
+    row_seconds : s between rows. total : cm^2 between the two dwells, u_total its standard uncertainty (cm^2).
     """
 
     move: int
@@ -40,6 +41,7 @@ class RemovalCurve:
     time_start: float
     time_end: float
     bin_width: float
+    row_seconds: float
 
 
 def removal_curve(
@@ -72,6 +74,7 @@ def removal_curve(
     way = motion.moves[move]
     rows = slice(way.first, way.last + 1)
     t, x = time[rows], position[rows]
+    row_seconds = (way.end - way.start) / max(t.size, 1)
     off = pressure[rows] - nodes.target[before]
     at_target = area[rows] * np.exp(fit.compressibility * off)
     removed = film_area(nodes, fit, before, t) - at_target
@@ -109,4 +112,5 @@ def removal_curve(
         time_start=way.start,
         time_end=way.end,
         bin_width=width,
+        row_seconds=row_seconds,
     )
