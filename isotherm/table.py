@@ -76,7 +76,7 @@ def read_table(
         role is missing, or a unit is unknown or missing.
     """
     where = str(path)
-    data = read_bytes(path)
+    original = data = read_bytes(path)
     sha256 = digest(data)
     warnings: list[str] = []
     if is_workbook(data):
@@ -100,7 +100,14 @@ def read_table(
     numeric = [one.column for one in taken if text.block.kinds[one.column] != "C"]
     clocks = [one.column for one in taken if text.block.kinds[one.column] == "C"]
     numbers = read_numbers(
-        text.data, text.start, text.block.first + 1, text.block, numeric, clocks, text.encoding
+        text.data,
+        text.start,
+        text.block.first + 1,
+        text.block,
+        numeric,
+        clocks,
+        text.encoding,
+        path=where if text.data is original else "",
     )
     lines_report(numbers, header, text, where, warnings)
     values, columns = _convert(numbers, taken, needs, where, warnings)

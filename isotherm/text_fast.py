@@ -7,10 +7,10 @@ from typing import Any, Final
 
 import numpy as np
 
-from isotherm.text_cells import MISSING
+from isotherm.text_cells import MISSING, to_number
 from isotherm.text_rows import Numbers, Wanted
 
-__all__ = ["read_fast"]
+__all__ = ["read_fast", "read_fast_file"]
 
 _SAMPLE: Final = 8192  # bytes looked at for quotes and blanks between cells
 _MISSING_CELLS: Final = sorted(
@@ -27,40 +27,86 @@ def read_fast(
     Every line makes a row, a blank one too, so that line numbers are right. To be called with warnings as
     errors: pandas warns where it reads a row otherwise than written.
     """
-    import pandas as pd
-
     layout, columns = wanted.block.layout, wanted.block.columns
-    blank_separated = layout.delimiter == " "
-    sample = data[start : start + _SAMPLE]
-    options: dict[str, Any] = {
-        "sep": r"\s+" if blank_separated else layout.delimiter,
-        "header": None,
-        "names": range(columns),
-        "index_col": False,
-        "dtype": {c: (object if c in wanted.clocks else np.float64) for c in wanted.read},
-        "na_values": _MISSING_CELLS,
-        "keep_default_na": False,
-        "decimal": layout.decimal,
-        "skip_blank_lines": False,
-        "engine": "c",
-        "quoting": 0 if b'"' in sample else 3,
-        # costs a third of the time, so only where the rows need it
-        "skipinitialspace": not blank_separated and layout.delimiter.encode() + b" " in sample,
-        "encoding_errors": "replace",
-    }
+    options = _options(data[start : start + _SAMPLE], wanted)
     if len(wanted.read) < columns:
         options["usecols"] = wanted.read
         # pandas drops surplus cells in silence when it reads some columns only
-        if not blank_separated and not _rectangular(data, start, stop, layout.delimiter, columns):
+        if layout.delimiter != " " and not _rectangular(
+            data, start, stop, layout.delimiter, columns
+        ):
             return None
     if stop == len(data):  # shares the bytes instead of copying them
         buffer = io.BytesIO(data)
         buffer.seek(start)
     else:
         buffer = io.BytesIO(data[start:stop])
+    return _read(buffer, options, first_line, wanted)
+
+
+def read_fast_file(
+    path: str, data: bytes, start: int, first_line: int, wanted: Wanted
+) -> Numbers | None:
+    """Read all lines of the file `path` from line `first_line` on; None when any is not regular.
+
+    A file pandas opens itself it may read on several cores. `data` are the same bytes, read before: the
+    first and the last row are compared with them, lest the file has changed meanwhile.
+    """
+    options = _options(data[start : start + _SAMPLE], wanted)
+    if options["quoting"] == 0:
+        return None  # a lone quote further up would make pandas skip other lines than meant
+    numbers = _read(path, {**options, "skiprows": first_line - 1}, first_line, wanted)
+    if numbers is None or not len(numbers.lines):
+        return None
+    ends = (
+        (0, data[start : start + _SAMPLE].splitlines()[0]),
+        (-1, data[max(start, len(data) - _SAMPLE) :].splitlines()[-1]),
+    )
+    for row, raw in ends:
+        cells = wanted.block.layout.split(raw.decode(wanted.encoding, "replace"))
+        for column, values in numbers.columns.items():
+            cell = (
+                to_number(cells[column], wanted.block.layout.decimal)
+                if column < len(cells)
+                else None
+            )
+            # the last bit may be rounded otherwise
+            if cell is not None and not np.isclose(
+                values[row], cell, rtol=1e-12, atol=0, equal_nan=True
+            ):
+                return None
+    return numbers
+
+
+def _options(sample: bytes, wanted: Wanted) -> dict[str, Any]:
+    """How pandas is to read the rows, of which `sample` is the beginning."""
+    delimiter = wanted.block.layout.delimiter
+    return {
+        "sep": r"\s+" if delimiter == " " else delimiter,
+        "header": None,
+        "names": range(wanted.block.columns),
+        "index_col": False,
+        "dtype": {c: (object if c in wanted.clocks else np.float64) for c in wanted.read},
+        "na_values": _MISSING_CELLS,
+        "keep_default_na": False,
+        "decimal": wanted.block.layout.decimal,
+        "skip_blank_lines": False,
+        "engine": "c",
+        "quoting": 0 if b'"' in sample else 3,
+        # costs a third of the time, so only where the rows need it
+        "skipinitialspace": delimiter != " " and delimiter.encode() + b" " in sample,
+        "encoding_errors": "replace",
+    }
+
+
+def _read(
+    source: io.BytesIO | str, options: dict[str, Any], first_line: int, wanted: Wanted
+) -> Numbers | None:
+    import pandas as pd
+
     try:
-        frame = pd.read_csv(buffer, **options)
-    except (ValueError, OverflowError, Warning, RecursionError):
+        frame = pd.read_csv(source, **options)
+    except (ValueError, OverflowError, Warning, RecursionError, OSError):
         return None  # whatever it is, the tolerant reader names it
     count = len(frame)
     return Numbers(

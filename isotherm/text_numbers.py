@@ -2,9 +2,7 @@
 
 from __future__ import annotations
 
-import os
 import sys
-import threading
 import warnings
 from collections.abc import Iterator, Sequence
 from typing import Final
@@ -12,7 +10,7 @@ from typing import Final
 import numpy as np
 
 from isotherm.text_cells import to_number
-from isotherm.text_fast import read_fast
+from isotherm.text_fast import read_fast, read_fast_file
 from isotherm.text_layout import Block
 from isotherm.text_lines import read_lines, read_regular
 from isotherm.text_rows import Numbers, Wanted
@@ -25,9 +23,6 @@ _SMALL_WITH_PANDAS: Final = 100_000
 # Where the fast parser refuses the whole, it is tried on pieces of this size, so that a few odd lines
 # among a million rows cost little.
 _PIECE: Final = 1 << 18
-# Bytes worth a thread of its own; more than four threads wait for each other.
-_PART: Final = 4_000_000
-_MOST_PARTS: Final = 4
 _FOOTER: Final = 8192  # bytes at the end searched for text below the rows
 
 
@@ -39,6 +34,8 @@ def read_numbers(
     numeric: Sequence[int],
     clocks: Sequence[int],
     encoding: str,
+    *,
+    path: str = "",
 ) -> Numbers:
     """Read the wanted columns of all rows from byte `start` on.
 
@@ -56,6 +53,8 @@ def read_numbers(
         Columns wanted (0-based): numbers, and clock times left as text.
     encoding : str
         Of `data`.
+    path : str
+        The file that holds just these bytes, "" where none does.
     """
     wanted = Wanted.of(block, numeric, clocks, encoding)
     small = _SMALL_WITH_PANDAS if "pandas" in sys.modules else _SMALL
@@ -66,7 +65,11 @@ def read_numbers(
     with warnings.catch_warnings():
         # pandas warns of rows it reads otherwise than written; here that is refused instead
         warnings.simplefilter("error")
-        whole = _in_parts(data, start, stop, first_line, wanted)
+        whole = None
+        if path and stop == len(data):
+            whole = read_fast_file(path, data, start, first_line, wanted)
+        if whole is None:
+            whole = read_fast(data, start, stop, first_line, wanted)
         if whole is None:
             return _without_blanks(_in_pieces(data, start, first_line, wanted))
     if stop < len(data):
@@ -75,49 +78,11 @@ def read_numbers(
     return _without_blanks(whole)
 
 
-def _cores() -> int:
-    if hasattr(os, "sched_getaffinity"):
-        return len(os.sched_getaffinity(0))
-    return os.cpu_count() or 1
-
-
 def _line_end(data: bytes, start: int, near: int, stop: int) -> int:
     """The end of the line that holds byte `near`."""
     mark = b"\n" if data.find(b"\n", start, stop) >= 0 else b"\r"
     found = data.find(mark, near, stop)
     return stop if found < 0 else found + 1
-
-
-def _in_parts(
-    data: bytes, start: int, stop: int, first_line: int, wanted: Wanted
-) -> Numbers | None:
-    """Read regular rows, a part on each core (the parser lets go of the interpreter's lock)."""
-    count = max(1, min(_cores(), _MOST_PARTS, (stop - start) // _PART))
-    if count == 1:
-        return read_fast(data, start, stop, first_line, wanted)
-    cuts = [start]
-    for part in range(1, count):
-        cuts.append(_line_end(data, start, start + (stop - start) * part // count, stop))
-    cuts.append(stop)
-    parts: list[Numbers | None] = [None] * count
-
-    def work(part: int) -> None:
-        parts[part] = read_fast(data, cuts[part], cuts[part + 1], 0, wanted)
-
-    threads = [threading.Thread(target=work, args=(part,)) for part in range(1, count)]
-    for thread in threads:
-        thread.start()
-    work(0)
-    for thread in threads:
-        thread.join()
-    read = [part for part in parts if part is not None]
-    if len(read) < count:
-        return None
-    line = first_line
-    for one in read:  # every line is a row here, blank ones too
-        one.lines = one.lines + line
-        line += len(one.lines)
-    return _joined(read, wanted)
 
 
 def _in_pieces(data: bytes, start: int, first_line: int, wanted: Wanted) -> Numbers:

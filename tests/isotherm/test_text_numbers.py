@@ -10,7 +10,7 @@ import pytest
 
 from isotherm import text_numbers
 from isotherm.table import Table, read_table
-from isotherm.text_fast import read_fast
+from isotherm.text_fast import read_fast, read_fast_file
 from isotherm.text_layout import find_block
 from isotherm.text_lines import read_lines, read_regular
 from isotherm.text_rows import Wanted
@@ -27,14 +27,12 @@ def _rows(count: int, seed: int = 3) -> list[str]:
 
 
 def _both(
-    monkeypatch: pytest.MonkeyPatch, path: Path, *, piece: int = 1 << 12, part: int = 1 << 13
+    monkeypatch: pytest.MonkeyPatch, path: Path, *, piece: int = 1 << 12
 ) -> tuple[Table, Table]:
-    """The table by the fast way (pieces and parts made small) and line by line."""
+    """The table by the fast way (pieces made small) and line by line."""
     monkeypatch.setattr(text_numbers, "_SMALL", 0)
     monkeypatch.setattr(text_numbers, "_SMALL_WITH_PANDAS", 0)
     monkeypatch.setattr(text_numbers, "_PIECE", piece)
-    monkeypatch.setattr(text_numbers, "_PART", part)
-    monkeypatch.setattr(text_numbers, "_cores", lambda: 3)
     fast = read_table(path)
     monkeypatch.setattr(text_numbers, "_SMALL", 1 << 40)
     monkeypatch.setattr(text_numbers, "_SMALL_WITH_PANDAS", 1 << 40)
@@ -160,3 +158,30 @@ def test_the_decimal_mark_may_come_late(mark: str, tmp_path: Path) -> None:
     table = read_table(path)
     assert len(table.lines) == 120
     assert table.values["area"][-1] == 210.5
+
+
+def test_a_file_that_changes_while_it_is_read_is_not_mixed(tmp_path: Path) -> None:
+    data = ("\n".join([_HEADER, *_rows(200)]) + "\n").encode()
+    lines = data.decode().splitlines()
+    block = find_block(lines, complete=True)
+    assert block is not None
+    wanted = Wanted.of(block, (0, 1, 2), (), "utf-8")
+    path = tmp_path / "run.csv"
+    start = len(lines[0]) + 1
+    path.write_bytes(data)
+    with warnings.catch_warnings():
+        warnings.simplefilter("error")
+        assert read_fast_file(str(path), data, start, 2, wanted) is not None
+        path.write_bytes(data + b"999.5,1.0,2.0\n")
+        assert read_fast_file(str(path), data, start, 2, wanted) is None
+        path.unlink()
+        assert read_fast_file(str(path), data, start, 2, wanted) is None
+
+
+def test_a_quote_in_the_text_above_does_not_hide_rows(
+    tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    path = tmp_path / "run.csv"
+    path.write_text("\n".join(['film 5" off', "", _HEADER, *_rows(900)]), encoding="utf-8")
+    fast, slow = _both(monkeypatch, path)
+    assert fast.lines.tolist() == slow.lines.tolist() == list(range(4, 904))
