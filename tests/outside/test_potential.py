@@ -13,9 +13,10 @@ def test_helmholtz_factor() -> None:
     """ΔV/mV = 37.67 (μ/mD)/(A/Å²) (arithmetic); ε0 from scipy.constants, 1 D = 3.33564e-30 C m."""
     assert pytest.approx(37.67, abs=0.005) == 100.0 / MILLIDEBYE_PER_MV_NM2
     debye = 3.33564e-30
-    assert pytest.approx(
-        constants.epsilon_0 * 1e-18 * 1e-3 / (debye * 1e-3), rel=1e-5
-    ) == MILLIDEBYE_PER_MV_NM2
+    assert (
+        pytest.approx(constants.epsilon_0 * 1e-18 * 1e-3 / (debye * 1e-3), rel=1e-5)
+        == MILLIDEBYE_PER_MV_NM2
+    )
 
 
 def test_noise_of_the_moment_against_plain_statistics() -> None:
