@@ -55,7 +55,9 @@ def read_fast_file(
     options = _options(data[start : start + _SAMPLE], wanted)
     if options["quoting"] == 0:
         return None  # a lone quote further up would make pandas skip other lines than meant
-    numbers = _read(path, {**options, "skiprows": first_line - 1}, first_line, wanted)
+    # numbers may begin with blanks anyway; only a missing cell after blanks needs the slower setting
+    options |= {"skiprows": first_line - 1, "skipinitialspace": False}
+    numbers = _read(path, options, first_line, wanted)
     if numbers is None or not len(numbers.lines):
         return None
     ends = (
