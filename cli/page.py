@@ -30,6 +30,7 @@ if TYPE_CHECKING:
 
 __all__ = ["Section", "one_page", "page_bytes", "section_of"]
 
+OBTAINED = "How each number was obtained"
 COVERAGE = (
     "± is the expanded uncertainty U = 2u (k = 2, coverage about 95 %). Names of phases are customary; "
     "the modulus beside a name is the measurement."
@@ -118,8 +119,11 @@ def page_bytes(
     for n, picture in enumerate(shared, 1):
         parts.append(picture_html(picture, f"all-{n}", only_on_screen=False))
     for n, section in enumerate(sections, 1):
-        parts.append(_article(section, n, heading=several))
+        parts.append(_article(section, n, several=several))
     kinds = dict.fromkeys(kind_of(s.payload) for s in sections)
+    if several:
+        used = dict.fromkeys(method for kind in kinds for method in methods_for(kind))
+        parts.append(f"<section><h2>{OBTAINED}</h2>{methods_html(used)}</section>")
     script, style = _script(), _asset("page.css")
     # only this very script may run, whatever a file name, a title or a header tries
     digest = base64.b64encode(hashlib.sha256(script.encode()).digest()).decode()
@@ -159,9 +163,9 @@ def page_bytes(
     return html.encode("utf-8", "backslashreplace")
 
 
-def _article(section: Section, number: int, *, heading: bool) -> str:
+def _article(section: Section, number: int, *, several: bool) -> str:
     payload = section.payload
-    level = 3 if heading else 2
+    level = 3 if several else 2
 
     def head(text: str) -> str:
         return f"<h{level}>{text}</h{level}>"
@@ -173,7 +177,7 @@ def _article(section: Section, number: int, *, heading: bool) -> str:
     )
     parts = [
         f'<article id="part-{number}" aria-label="{safe(section.title)}">',
-        f'<h2 class="title">{safe(section.title)}</h2>' if heading else "",
+        f'<h2 class="title">{safe(section.title)}</h2>' if several else "",
         head("Question"),
         f'<p class="question">{safe(question_of(payload))}</p>',
         head("Answer"),
@@ -182,8 +186,7 @@ def _article(section: Section, number: int, *, heading: bool) -> str:
         head("Figure") + pictures if pictures else "",
         head("In numbers"),
         *(table_html(table) for table in tables_of(payload)),
-        head("How each number was obtained"),
-        methods_html(methods_for(kind_of(payload))),
+        "" if several else head(OBTAINED) + methods_html(methods_for(kind_of(payload))),
         head("What it was made from"),
         inputs_html(_inputs(payload, section.remarks)),
         settings_html(payload),

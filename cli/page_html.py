@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import json
+import re
 from collections.abc import Iterable, Sequence
 from html import escape
 from typing import Any
@@ -22,6 +23,8 @@ __all__ = [
     "table_html",
     "warnings_html",
 ]
+
+SHORT = 26  # signs of a cell that is not broken
 
 HINT = (
     "Move over the figure, touch it, or give it the focus and use the arrow keys: left and right from "
@@ -53,12 +56,18 @@ def table_html(table: Table) -> str:
     body = []
     for row in table.rows:
         first = f'<th scope="row">{safe(row[0])}</th>'
-        body.append(f"<tr>{first}{''.join(f'<td>{safe(c)}</td>' for c in row[1:])}</tr>")
+        body.append(f"<tr>{first}{''.join(_cell(c) for c in row[1:])}</tr>")
     return (
         f'<div class="scroll" role="region" tabindex="0" aria-label="{safe(table.caption)}"><table>'
         f"<caption>{safe(table.caption)}</caption><thead><tr>{head}</tr></thead>"
         f"<tbody>{''.join(body)}</tbody></table></div>"
     )
+
+
+def _cell(text: str) -> str:
+    # a number and its uncertainty stay on one line
+    kind = ' class="short"' if len(text) <= SHORT else ""
+    return f"<td{kind}>{safe(text)}</td>"
 
 
 def picture_html(picture: Picture, name: str, *, only_on_screen: bool) -> str:
@@ -113,7 +122,8 @@ def warnings_html(warnings: Sequence[str], level: int) -> str:
 def methods_html(methods: Iterable[Method]) -> str:
     """Return how the numbers were obtained, with the sources."""
     parts = [
-        f'<dt>{safe(m.name)}</dt><dd>{safe(m.text)} <span class="from">Source: {safe(m.source)}</span></dd>'
+        f"<dt>{safe(m.name)}</dt><dd>{_formulae(safe(m.text))} "
+        f'<span class="from">Source: {_formulae(safe(m.source))}</span></dd>'
         for m in methods
     ]
     return (
@@ -122,20 +132,21 @@ def methods_html(methods: Iterable[Method]) -> str:
     )
 
 
+def _formulae(escaped: str) -> str:
+    """Set A_t and x^1.256 as print does."""
+    low = re.sub(r"(?<=\w)_([A-Za-z0-9]+)", r"<sub>\1</sub>", escaped)
+    return re.sub(r"\^(-?[\d.]*\d|x)", r"<sup>\1</sup>", low)
+
+
 def inputs_html(inputs: Sequence[tuple[str, str, str]]) -> str:
     """Return the files that were read, each with its hash and a remark."""
     if not inputs:
         return ""
-    rows = "".join(
-        f"<tr><th scope='row'>{safe(path)}</th><td><code>{safe(digest)}</code></td>"
-        f"<td>{safe(remark)}</td></tr>"
-        for path, digest, remark in inputs
-    )
-    head = "".join(f'<th scope="col">{c}</th>' for c in ("file", "SHA-256", "remark"))
-    return (
-        '<div class="scroll" role="region" tabindex="0" aria-label="Inputs"><table>'
-        f"<caption>Inputs</caption><thead><tr>{head}</tr></thead><tbody>{rows}</tbody></table></div>"
-    )
+    items = []
+    for path, digest, remark in inputs:
+        said = f", {safe(remark)}" if remark else ""
+        items.append(f"<li><b>{safe(path)}</b>{said}<br>SHA-256 <code>{safe(digest)}</code></li>")
+    return f'<p class="caption">Inputs</p><ul class="inputs">{"".join(items)}</ul>'
 
 
 def settings_html(payload: dict[str, Any]) -> str:

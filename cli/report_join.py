@@ -51,8 +51,11 @@ class Entry:
 
     @property
     def title(self) -> str:
-        """Its own title, else its file."""
-        return str(self.payload.get("title") or self.path.name)
+        """Its own title and the file it is about."""
+        named = str((self.payload.get("source") or {}).get("path") or self.path)
+        file = named.replace("\\", "/").rpartition("/")[2]
+        own = self.payload.get("title")
+        return f"{own}, {file}" if own else file
 
 
 @dataclass(frozen=True)
@@ -197,7 +200,9 @@ def join_results(entries: Sequence[Entry], title: str | None) -> Dossier:
     if len(versions) > 1:
         warnings.append(f"made by different versions of upstroke: {', '.join(sorted(versions))}")
     together = _pressures(ordered)
-    own = title or next((e.title for e in reversed(ordered)), "Sample")
+    own = title or next(
+        (str(e.payload["title"]) for e in reversed(ordered) if e.payload.get("title")), "Sample"
+    )
     return Dossier(own, tuple(ordered), tuple(together), tuple(dict.fromkeys(warnings)))
 
 

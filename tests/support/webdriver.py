@@ -20,8 +20,14 @@ from typing import Any
 
 CHROMIUM = next((p for p in map(shutil.which, ("chromium", "chromium-browser")) if p), None)
 DRIVER = shutil.which("chromedriver")
-ELEMENT = "element-6066-11e4-a52e-4f735466cecf"  # the protocol's name for a reference to an element
-KEYS = {"right": "\ue014", "left": "\ue012", "up": "\ue013", "down": "\ue015", "home": "\ue011", "end": "\ue010"}
+KEYS = {
+    "right": "\ue014",
+    "left": "\ue012",
+    "up": "\ue013",
+    "down": "\ue015",
+    "home": "\ue011",
+    "end": "\ue010",
+}
 
 
 def missing() -> str:
@@ -117,7 +123,12 @@ class Browser:
         ]
         if touch:
             steps += [{"type": "pointerDown", "button": 0}, {"type": "pointerUp", "button": 0}]
-        source = {"type": "pointer", "id": kind, "parameters": {"pointerType": kind}, "actions": steps}
+        source = {
+            "type": "pointer",
+            "id": kind,
+            "parameters": {"pointerType": kind},
+            "actions": steps,
+        }
         self._call("POST", f"{self._session}/actions", {"actions": [source]})
 
     def press(self, *names: str) -> None:
@@ -136,7 +147,8 @@ class Browser:
     def whole_picture(self, path: Path) -> None:
         """Save the whole page, as high as it is."""
         shot = self.command(
-            "Page.captureScreenshot", {"format": "png", "captureBeyondViewport": True, "fromSurface": True}
+            "Page.captureScreenshot",
+            {"format": "png", "captureBeyondViewport": True, "fromSurface": True},
         )
         path.write_bytes(base64.b64decode(shot["data"]))
 
