@@ -29,7 +29,8 @@ FloatArray = NDArray[np.float64]
 
 # Nodes whose -2 ln L lies further than this above the best are beyond 4 sigma and carry nothing.
 _DEEPEST = 18.0
-_REFINEMENTS = 8
+_REFINEMENTS = 12
+_NOISE_SHAPES = 9
 _COARSE = (41, 10)  # nodes in log time and exponent
 _FINE = (31, 17)
 _RESOLVED = (11, 60)  # nodes inside the peak that resolve it: one shape parameter, two
@@ -102,8 +103,21 @@ def _axes(
     return np.exp(mesh_time.ravel()), mesh_exponent.ravel()
 
 
+def _likely_noise(law: Law, hold: WhitenedHold, nodes: Nodes) -> NDArray[np.int64]:
+    """Covariances worth keeping, judged at the likeliest shapes found so far."""
+    every = np.arange(hold.grid.share.size)
+    best = np.argsort(nodes.deviance.min(axis=0))[:_NOISE_SHAPES]
+    tried = solve_nodes(law, hold, nodes.time_constant[best], nodes.exponent[best], every)
+    profile = tried.deviance.min(axis=1)
+    return every[profile < profile.min() + _DEEPEST / 2.0]
+
+
 def _search(law: Law, hold: WhitenedHold) -> Nodes:
-    """Narrow the grid of shapes until the peak of the likelihood is resolved."""
+    """Narrow the grid of shapes until the peak of the likelihood is resolved.
+
+    The covariances are chosen anew at every step: on a coarse grid the misfit of the nearest shape looks
+    like slow noise, and keeping what that suggests would widen every u.
+    """
     blocks = hold.blocks
     every = np.arange(hold.grid.share.size)
     span = float(blocks.time[-1])
@@ -111,27 +125,26 @@ def _search(law: Law, hold: WhitenedHold) -> Nodes:
     spacing = float(np.median(np.diff(blocks.time)))
     low = np.array([np.log(2.0 * spacing), EXPONENT_BOUNDS[0]])
     high = np.array([np.log(30.0 * span), EXPONENT_BOUNDS[1]])
-    nodes = solve_nodes(law, hold, *_axes(law, low, high, _COARSE), every)
+    counts = _COARSE
+    nodes = solve_nodes(law, hold, *_axes(law, low, high, counts), every)
     if law.times == 0:
         return nodes
-    profile = nodes.deviance.min(axis=1)
-    which = every[profile < profile.min() + _DEEPEST / 2.0]
-    counts = _COARSE
     needed = _RESOLVED[1] if law.exponent else _RESOLVED[0]
+    which = every
     for _ in range(_REFINEMENTS):
+        before, which = which, _likely_noise(law, hold, nodes)
         depth = nodes.deviance.min(axis=0) - nodes.deviance.min()
         inside = depth < _DEEPEST
-        if int(inside.sum()) >= needed:
+        resolved = int(inside.sum()) >= needed
+        if resolved and np.array_equal(before, which):
             break
-        at = np.stack([np.log(nodes.time_constant), nodes.exponent], axis=1)[inside]
-        step = (high - low) / (np.array(counts) - 1)
-        low, high = np.maximum(at.min(axis=0) - step, low), np.minimum(at.max(axis=0) + step, high)
-        counts = _FINE
+        if not resolved:
+            at = np.stack([np.log(nodes.time_constant), nodes.exponent], axis=1)[inside]
+            step = (high - low) / (np.array(counts) - 1)
+            low = np.maximum(at.min(axis=0) - step, low)
+            high = np.minimum(at.max(axis=0) + step, high)
+            counts = _FINE
         nodes = solve_nodes(law, hold, *_axes(law, low, high, counts), which)
-    else:
-        return nodes
-    if counts is _COARSE:
-        nodes = solve_nodes(law, hold, nodes.time_constant[inside], nodes.exponent[inside], which)
     return nodes
 
 
