@@ -94,8 +94,8 @@ def _worker(
     return inputs, dict(outcomes), found
 
 
-def _by_coverage(folder: Path) -> None:
-    """Hand the reader to atheris, which picks inputs by the code they reach."""
+def _by_coverage(folder: Path, seconds: float) -> None:
+    """Hand the reader to atheris, which picks inputs by the code they reach, from the same seeds."""
     import atheris
 
     path = Path(tempfile.mkdtemp()) / "input"
@@ -108,7 +108,12 @@ def _by_coverage(folder: Path) -> None:
             raise RuntimeError(problem)
 
     atheris.instrument_all()
-    atheris.Setup([sys.argv[0], f"-artifact_prefix={folder}/"], one)
+    corpus = folder / "corpus"
+    corpus.mkdir(exist_ok=True)
+    for number, seed in enumerate(seed_inputs()):
+        (corpus / f"seed-{number}").write_bytes(seed)
+    limits = ["-max_len=4000", f"-max_total_time={int(min(seconds, 1e8))}"]
+    atheris.Setup([sys.argv[0], f"-artifact_prefix={folder}/", *limits, str(corpus)], one)
     atheris.Fuzz()
 
 
@@ -126,7 +131,7 @@ def main() -> int:
     options = parser.parse_args()
     options.findings.mkdir(parents=True, exist_ok=True)
     if options.coverage:
-        _by_coverage(options.findings)
+        _by_coverage(options.findings, options.minutes * 60.0)
         return 0
     begin = time.monotonic()
     share = -(-options.inputs // options.jobs)
