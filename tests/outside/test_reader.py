@@ -1,4 +1,4 @@
-"""The reader against things outside the project: published curves, SciPy's units, pandas' and NumPy's readers."""
+"""The reader against things outside the project: published curves, CODATA units, pandas and NumPy."""
 
 from __future__ import annotations
 
