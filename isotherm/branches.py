@@ -126,6 +126,7 @@ def find_branches(trace: Trace) -> tuple[BranchRows, ...]:
     noise = robust_noise(area)
     branches = []
     cycle = 0
+    turns = [turn for k, turn in enumerate(turns) if k == 0 or turn > max(turns[:k])]
     for first, last in itertools.pairwise(turns):
         direction = "compression" if area[last] < area[first] else "expansion"
         if direction == "compression" or cycle == 0:
@@ -141,10 +142,12 @@ def _turning_points(area: FloatArray, tolerance: float) -> list[int]:
     lowest = np.minimum.accumulate(area)
     if float(np.max(area - lowest)) < tolerance:
         # one compression: it starts at the last row of the initial maximum and ends at the minimum
-        return [int(np.argmax(area)), int(np.argmin(area))]
+        ends = [int(np.argmax(area)), int(np.argmin(area))]
+        return ends if ends[0] < ends[1] else [0, n - 1]
     highest = np.maximum.accumulate(area)
     if float(np.max(highest - area)) < tolerance:
-        return [int(np.argmin(area)), int(np.argmax(area))]
+        ends = [int(np.argmin(area)), int(np.argmax(area))]
+        return ends if ends[0] < ends[1] else [0, n - 1]
     edges = np.unique(np.linspace(0, n, min(n, BLOCKS) + 1).astype(np.int64))
     means = np.add.reduceat(area, edges[:-1]) / np.diff(edges)
     pivots: list[int] = []

@@ -16,6 +16,7 @@ FloatArray = NDArray[np.float64]
 
 SKELETON: Final = 320  # blocks that measure the curve's length
 NODES: Final = 256  # nodes the search works on
+DIGITS: Final = 1e-6  # smallest scatter of a row, as a share of the pressure range
 SPIKE_SIGMAS: Final = 6.0  # a row this far from the median of its neighbours is a spike
 # u of a line through five rows, extended five rows from its middle, and of the row itself, in σ of a row:
 # sqrt(1 + 1/5 + 5²/10).
@@ -161,7 +162,9 @@ def condense(area: FloatArray, pressure: FloatArray, noise: float, nodes: int = 
     step = quantum(pressure)
     crossed = 1.0 + np.abs(np.gradient(mean_pressure)) / step if step > 0 else 1.0
     rounding = step / np.sqrt(12.0) / np.sqrt(crossed) if step > 2.0 * noise else 0.0
-    sigma = np.sqrt(noise**2 / counts + np.square(rounding))
+    # even a reading without scatter is not known to more than its digits
+    least = DIGITS * max(float(np.ptp(pressure)), 1e-9)
+    sigma = np.sqrt(max(noise, least) ** 2 / counts + np.square(rounding))
     return Nodes(
         -np.log(mean_area),
         mean_area,

@@ -22,7 +22,7 @@ __all__ = ["INDIFFERENT", "WIDEST", "choose_degrees", "fit_knees"]
 FloatArray = NDArray[np.float64]
 
 MAX_ITERATIONS: Final = 14
-WIDEST: Final = 0.5  # rounding width, as a share of the shorter neighbouring stretch
+WIDEST: Final = 0.2  # rounding width, as a share of the shorter neighbouring stretch
 CONVERGED: Final = 0.01  # smallest fall of χ² worth another iteration, in units of its mean term
 # Misfits below this share of the pressure range decide nothing: no rounding shape is exact (our choice).
 INDIFFERENT: Final = 5e-5

@@ -20,6 +20,8 @@ FEWEST_NODES: Final = 3  # nodes between two change points
 # 1995, 90, 773, for twice the log Bayes factor).
 EVIDENCE: Final = 10.0
 PENALTY: Final = 4.0  # of a stretch in the first cut, in ln n; lenient, the later tests decide
+HALVINGS: Final = 3  # of a window that one knee does not describe
+SMALLEST_WINDOW: Final = 24  # nodes
 ROUNDS: Final = 4  # of dropping and putting back
 MARGIN: Final = 0.2  # share of a stretch next to a knee that may be rounded by it
 # A model describes a window when its mean squared residual is at most this many times the scatter about
@@ -88,6 +90,21 @@ class _Pruning:
             b -= int(MARGIN * (b - stops[last - 1]))
         return a, b
 
+    def near(self, stops: list[int], k: int) -> tuple[int, int]:
+        """The widest window about knee k, halved up to thrice, that a single knee describes.
+
+        A fluid branch from lift-off to a late transition bends more than the model's polynomial can;
+        its knees are then judged on the part of it that is near.
+        """
+        a, b = self.window(stops, k, k + 2)
+        at = stops[k + 1]
+        for _ in range(HALVINGS):
+            verdict = self.judge(a, b)
+            if b - a < SMALLEST_WINDOW or verdict is None or self._adequate(verdict.knee_rss, a, b):
+                break
+            a, b = at - (at - a + 1) // 2, at + (b - at + 1) // 2
+        return a, b
+
     def run(self, knots: list[int]) -> list[Candidate]:
         found = list(knots)
         for _ in range(ROUNDS):
@@ -104,14 +121,15 @@ class _Pruning:
             pass
         while found:
             stops = [0, *found, self.x.size]
-            verdicts = [self.judge(*self.window(stops, k, k + 2)) for k in range(len(found))]
+            windows = [self.near(stops, k) for k in range(len(found))]
+            verdicts = [self.judge(a, b) for a, b in windows]
             scores = [v.knee.evidence if v is not None else -np.inf for v in verdicts]
             # where neither model describes its window, the window holds more than one knee: keep it
             unclear = [
                 v is not None
                 and v.knee.evidence > -EVIDENCE
-                and not self._adequate(v.smooth_rss, *self.window(stops, k, k + 2))
-                for k, v in enumerate(verdicts)
+                and not self._adequate(v.smooth_rss, *window)
+                for v, window in zip(verdicts, windows, strict=True)
             ]
             scores = [np.inf if u else s for s, u in zip(scores, unclear, strict=True)]
             worst = int(np.argmin(scores))
@@ -125,7 +143,7 @@ class _Pruning:
         """The knees found, with the moduli beside them."""
         out = []
         for k in range(len(stops) - 2):
-            a, b = self.window(stops, k, k + 2)
+            a, b = self.near(stops, k)
             verdict = judge_knee(self.x[a:b], self.y[a:b], self.sigma[a:b], slopes=True)
             if verdict is not None:
                 out.append(verdict.knee)

@@ -141,7 +141,8 @@ def refine_knees(
     area, pressure : (n,) rows the nodes were made of, in their order, nm^2 and mN/m.
     """
     keep = nodes.x <= stop
-    knots = model.knots[model.knots < stop]
+    last = nodes.x[keep][-min(3, int(keep.sum()))]
+    knots = model.knots[model.knots < last]
     x, y, sigma = nodes.x[keep], nodes.pressure[keep], nodes.sigma[keep]
     if not np.all(nodes.count == 1):
         x, y, sigma = _with_rows(nodes, keep, knots, model.widths, area, pressure)

@@ -20,6 +20,7 @@ CONDENSED_BELOW: Final = 250.0
 
 # Our choices, ratios of moduli of neighbouring stretches:
 PLATEAU_RATIO: Final = 0.7  # a plateau is this much softer than both neighbours
+SHORTEST_PLATEAU: Final = 0.01  # of ln A; a shorter one is a glitch of the barrier or the probe
 KINK_RATIO: Final = 1.3  # a kink is a step up by at least this factor
 YIELD_RATIO: Final = (
     0.4  # a film that softens to this share of its stiffest and stays there has collapsed
@@ -116,7 +117,8 @@ def read_stretches(model: KneeModel) -> Reading:
         ):
             end = _plateau_end(stretches, j, last)
             if end is not None:
-                coexistences.append((j, end - 1))
+                if stretches[end].start - here.stop >= SHORTEST_PLATEAU:
+                    coexistences.append((j, end - 1))
                 j = end
                 continue
         elif _is_kink(model, stretches, j):
