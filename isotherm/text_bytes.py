@@ -151,9 +151,7 @@ def decode(data: bytes, *, where: str, whole: bool = True) -> Decoded:
                 "a binary file, not text", where=where, remedy="export the numbers as text"
             )
         return Decoded(_as(data, encoding), encoding)
-    controls = len(sample) - len(sample.translate(None, _CONTROLS))
-    # text holds next to none; a tenth of a percent lets a stray one pass
-    if controls > 2 + len(sample) // 1000:
+    if _has_controls(sample):
         raise UpstrokeError(
             "a binary file, not text", where=where, remedy="export the numbers as text"
         )
@@ -181,8 +179,13 @@ def _unmarked_utf16(sample: bytes) -> str:
     if not odd:
         return ""
     low, high = even.count(0) / len(even), odd.count(0) / len(odd)
-    if high > 0.7 and low < 0.02:
+    if high > 0.7 and low < 0.02 and not _has_controls(even):
         return "utf-16-le"
-    if low > 0.7 and high < 0.02:
+    if low > 0.7 and high < 0.02 and not _has_controls(odd):
         return "utf-16-be"
     return ""
+
+
+def _has_controls(sample: bytes) -> bool:
+    """Whether there are more control characters than text has: a stray one in a thousand may pass."""
+    return len(sample) - len(sample.translate(None, _CONTROLS)) > 2 + len(sample) // 1000

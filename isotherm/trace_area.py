@@ -23,6 +23,10 @@ _CM2_PER_MM2: Final = 1e-2
 # amounts do: half a percent is far above rounding and below any slip.
 _DISAGREEMENT: Final = 0.005
 
+# A straight chain stands on 0.18 to 0.20 nm^2 (Gaines, Insoluble Monolayers, 1966; from memory), and the
+# open end of a compression lies well above; half of that is a slip in the amounts.
+_SMALLEST_MOLECULE: Final = 0.1  # nm^2
+
 
 @dataclass(frozen=True)
 class Areas:
@@ -32,10 +36,6 @@ class Areas:
     trough: FloatArray | None
     relative_u: float | None
     warnings: tuple[str, ...] = field(default=())
-
-
-def _amounts_given(film: Film) -> bool:
-    return film.volume is not None or film.concentration is not None
 
 
 def areas_of(table: Table, sheet: RunSheet) -> Areas:
@@ -56,19 +56,18 @@ def areas_of(table: Table, sheet: RunSheet) -> Areas:
     barriers = "barrier_position" in table.values
     if trough is None and barriers and (own is None or sheet.trough.width is not None):
         trough = trough_area(table, sheet.trough, warnings)
-    if trough is None or (own is not None and not _amounts_given(sheet.film)):
-        if own is None:  # the reader asks for one of the three before it comes to this
-            raise UpstrokeError("no area", where=table.source.path)
-        relative_u = _relative_u(None, None, sheet) if not _amounts_given(sheet.film) else None
-        if _amounts_given(sheet.film):
-            relative_u = _relative_u(_spread_relative_u(sheet.film), None, sheet)
+    amounts = sheet.film.volume is not None or sheet.film.concentration is not None
+    if own is not None and (trough is None or not amounts):
+        relative_u = _spread_relative_u(sheet.film) if amounts else None
         if relative_u is None:
             warnings.append(
                 "the export's own area per molecule is used; the uncertainty of its scale is unknown "
                 "(give [film] volume and concentration with their uncertainties)"
             )
         return Areas(own, trough, relative_u, tuple(warnings))
-    if not _amounts_given(sheet.film):
+    if trough is None:  # the reader asks for one of the three before it comes to this
+        raise UpstrokeError("no area", where=table.source.path)
+    if not amounts:
         raise UpstrokeError(
             "the export gives trough area only, and how many molecules were spread is not known",
             where=table.source.path,
@@ -77,6 +76,12 @@ def areas_of(table: Table, sheet: RunSheet) -> Areas:
         )
     number = molecules_spread(sheet.film)
     area = trough * (NM2_PER_CM2 / number.value)
+    largest = float(np.nanmax(area, initial=-math.inf))
+    if 0 < largest < _SMALLEST_MOLECULE:
+        warnings.append(
+            f"the largest area per molecule is {largest:.3g} nm^2, and no molecule lies on so little: check "
+            "volume, concentration and molar mass in the run sheet, and the unit of the area"
+        )
     if own is not None:
         ratio = _median(own / np.where(area == 0, np.nan, area))
         if math.isfinite(ratio) and abs(ratio - 1.0) > _DISAGREEMENT:

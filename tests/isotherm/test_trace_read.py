@@ -247,3 +247,49 @@ def test_a_long_run_reads_like_a_short_one(tmp_path: Path) -> None:
     )
     assert later.area == pytest.approx(base.area, rel=1e-12)
     assert later.pressure == pytest.approx(base.pressure, rel=1e-12)
+
+
+def test_the_exports_own_area_takes_its_uncertainty_from_the_sheet(tmp_path: Path) -> None:
+    header = "Area per molecule (nm^2),Pressure (mN/m)"
+    columns = [_RUN.molecular_area, _RUN.pressure]
+    trace = _trace(tmp_path, header, columns, _FILM)
+    assert trace.area.tolist() == _RUN.molecular_area.tolist()
+    assert trace.area_relative_u == pytest.approx(math.hypot(0.01, 0.01))
+    # amounts that do not suffice for a number of molecules leave it unknown
+    assert _trace(tmp_path, header, columns, '[film]\nvolume = "50 µL"').area_relative_u is None
+
+
+def test_trough_area_is_kept_beside_the_exports_own_area(tmp_path: Path) -> None:
+    header = "Area (cm^2),Area per molecule (nm^2),Pressure (mN/m)"
+    trace = _trace(tmp_path, header, [_RUN.area, _RUN.molecular_area, _RUN.pressure])
+    assert trace.area.tolist() == _RUN.molecular_area.tolist()
+    assert trace.trough_area is not None
+    assert trace.trough_area.tolist() == _RUN.area.tolist()
+
+
+def test_amounts_that_leave_no_room_for_a_molecule_are_warned_of(tmp_path: Path) -> None:
+    sheet = _FILM.replace("50 ± 0.5 µL", "5 mL")
+    trace = _trace(tmp_path, "Area (cm^2),Pressure (mN/m)", [_RUN.area, _RUN.pressure], sheet)
+    assert any("no molecule lies on so little" in w for w in trace.warnings)
+
+
+def test_a_time_column_without_times_is_left_aside(tmp_path: Path) -> None:
+    trace = _trace(
+        tmp_path,
+        "Time (s),Area per molecule (nm^2),Pressure (mN/m)",
+        [np.full(40, np.nan), _RUN.molecular_area, _RUN.pressure],
+    )
+    assert trace.time is None
+    assert len(trace.area) == 40
+    assert any("holds no time" in w for w in trace.warnings)
+
+
+def test_barriers_beside_tension(tmp_path: Path) -> None:
+    # positions that rise as the tension falls count from the open end
+    with pytest.raises(UpstrokeError, match="largest_area"):
+        _trace(
+            tmp_path,
+            "Barrier position (mm),Surface tension (mN/m)",
+            [300.0 - _RUN.area, 72.0 - _RUN.pressure],
+            _FILM + _WIDTH + '[subphase]\ntension = "72 mN/m"',
+        )
