@@ -95,7 +95,8 @@ def _remarks(fitted: _Fitted, drifting: str, duration: float, planned: float | N
             "the laws"
         )
     if blocks.spikes:
-        notes.append(f"{blocks.spikes} rows far off their neighbours left out")
+        rows = "1 row" if blocks.spikes == 1 else f"{blocks.spikes} rows"
+        notes.append(f"{rows} far off their neighbours left out")
     return notes
 
 

@@ -29,6 +29,8 @@ __all__ = [
 
 FloatArray = NDArray[np.float64]
 
+_GONE = 1e-3  # part of the film below which an extrapolated law has used it up
+
 
 @dataclass(frozen=True)
 class Moments:
@@ -76,7 +78,8 @@ def law_loss(fit: LawFit, seconds: float) -> Moments:
     """Relative loss b g(t)/y0 of one law over `seconds` since the arrival."""
     g = growth(fit.name, np.array([seconds]), fit.time_constant, fit.exponent)[0]
     loss = fit.drop * g / fit.level
-    return node_moments(fit, loss, -loss / fit.level, g / fit.level)
+    # extrapolated further than there is film, all of it is lost
+    return node_moments(fit, np.minimum(loss, 1.0), -loss / fit.level, g / fit.level)
 
 
 def law_rate(fit: LawFit, seconds: float) -> Moments:
@@ -84,7 +87,9 @@ def law_rate(fit: LawFit, seconds: float) -> Moments:
     at = np.array([seconds])
     g = growth(fit.name, at, fit.time_constant, fit.exponent)[0]
     slope = growth_rate(fit.name, at, fit.time_constant, fit.exponent)[0]
-    level = fit.level - fit.drop * g
+    left = fit.level - fit.drop * g
+    there = left > _GONE * fit.level  # no film, no rate
+    level = np.where(there, left, np.inf)
     rate = fit.drop * slope / level
     return node_moments(fit, rate, -rate / level, slope * fit.level / level**2)
 

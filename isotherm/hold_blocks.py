@@ -7,17 +7,20 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
-__all__ = ["Blocks", "block_means", "spikes"]
+from isotherm.branches import robust_noise
+
+__all__ = ["RESOLUTION", "Blocks", "block_means", "spikes"]
 
 FloatArray = NDArray[np.float64]
 
-# A row this many robust standard deviations off its block's median is a spike, not noise: a normal
+# A row this many robust standard deviations off the running median is a spike, not noise: a normal
 # distribution puts 2 in 10^9 rows there, so none of an honest hold is lost.
 _SPIKE_SIGMAS = 6.0
 # Median absolute deviation of a normal distribution, to its standard deviation.
 _MAD_TO_SIGMA = 1.4826
-# A median needs a few rows; smaller blocks are grouped for the spike test.
-_SMALLEST_GROUP = 9
+_WINDOW = 11  # rows of the running median: it sees past five bad ones
+# No trough reads area or pressure to better than a millionth: smaller scatter is arithmetic (our choice).
+RESOLUTION = 1e-6
 
 
 @dataclass(frozen=True)
@@ -39,31 +42,31 @@ class Blocks:
 
 
 def spikes(level: FloatArray) -> NDArray[np.bool_]:
-    """Mark rows far off their neighbours.
+    """Mark rows far off their neighbours, up to five in a row; a lasting step is not a spike.
 
     Parameters
     ----------
     level : (n,) array
-        Evenly recorded values, any unit.
+        Values in the order recorded, any unit.
 
     Returns
     -------
     (n,) bool array
-        True where a row lies more than six robust standard deviations from its group's median.
+        True where a row lies more than six robust standard deviations from the running median.
     """
-    n = level.size
-    group = max(_SMALLEST_GROUP, n // 2000)
-    if n < 3 * group:
-        return np.zeros(n, dtype=bool)
-    whole = n // group * group
-    folded = level[:whole].reshape(-1, group)
-    centres = np.median(folded, axis=1)
-    middle = (np.arange(centres.size) + 0.5) * group - 0.5
-    residual = level - np.interp(np.arange(n), middle, centres)
-    scale = _MAD_TO_SIGMA * float(np.median(np.abs(residual)))
+    from scipy.ndimage import median_filter
+
+    if level.size < 3 * _WINDOW:
+        return np.zeros(level.size, dtype=bool)
+    residual = np.abs(level - median_filter(level, size=_WINDOW, mode="mirror"))
     # a quantised signal may have half its residuals at zero: the mean absolute value still sees the steps
-    scale = max(scale, float(np.mean(np.abs(residual))))
-    return np.abs(residual) > _SPIKE_SIGMAS * scale if scale > 0 else np.zeros(n, dtype=bool)
+    scale = max(_MAD_TO_SIGMA * float(np.median(residual)), float(np.mean(residual)))
+    # on a steep stretch the median is the row itself: the scatter of second differences knows no slope
+    scale = max(scale, robust_noise(level), RESOLUTION * float(np.median(np.abs(level))))
+    # at the ends there are no neighbours on one side to tell a spike from a slope
+    half = _WINDOW // 2
+    residual[:half] = residual[-half:] = 0.0
+    return np.asarray(residual > _SPIKE_SIGMAS * scale)
 
 
 def block_means(time: FloatArray, level: FloatArray, blocks: int) -> Blocks:

@@ -109,7 +109,7 @@ def _likely_noise(law: Law, hold: WhitenedHold, nodes: Nodes) -> NDArray[np.int6
     best = np.argsort(nodes.deviance.min(axis=0))[:_NOISE_SHAPES]
     tried = solve_nodes(law, hold, nodes.time_constant[best], nodes.exponent[best], every)
     profile = tried.deviance.min(axis=1)
-    return every[profile < profile.min() + _DEEPEST / 2.0]
+    return np.flatnonzero(profile < profile.min() + _DEEPEST / 2.0)
 
 
 def _search(law: Law, hold: WhitenedHold) -> Nodes:

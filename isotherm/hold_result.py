@@ -103,6 +103,12 @@ class Hold:
         return next(law for law in self.laws if law.name == self.chosen)
 
     @property
+    def first_time(self) -> float:
+        """Earliest time since the arrival that the fit saw, s; above 0."""
+        first, second = self.blocks.time[:2].tolist()
+        return max(self.settling_s, float(first), 0.5 * float(second - first))
+
+    @property
     def loss_hold(self) -> Quantity:
         """Relative loss from the arrival to the end of the hold."""
         return self.loss_over(self.duration_s)
@@ -115,8 +121,7 @@ class Hold:
     @property
     def rates(self) -> tuple[tuple[float, Quantity], ...]:
         """Rate of loss at the times that matter: settled, halfway, at the end, at the planned end."""
-        first = max(self.settling_s, float(self.blocks.time[0]))
-        times = [first, 0.5 * self.duration_s, self.duration_s]
+        times = [self.first_time, 0.5 * self.duration_s, self.duration_s]
         if self.planned_time is not None:
             times.append(self.planned_time)
         return tuple((t, self.rate_at(t)) for t in sorted(set(times)))
@@ -138,14 +143,17 @@ class Hold:
 
     def _rate_change(self, seconds: float) -> float:
         """Change of rate from when it settled to `seconds`, 1/s: what a shift of the start costs."""
-        settled = max(self.settling_s, self.arrival_u, float(self.blocks.time[0]))
-        if seconds <= settled:
+        settled = max(self.first_time, self.arrival_u)
+        if self.arrival_u == 0.0 or seconds <= settled:
             return 0.0
         return abs(mean_rate(self.fits, settled).value - mean_rate(self.fits, seconds).value)
 
     def rate_at(self, seconds: float) -> Quantity:
-        """Relative rate of loss -d ln y/dt at `seconds` after the arrival, 1/s, averaged over the laws."""
-        rate = mean_rate(self.fits, seconds)
+        """Relative rate of loss -d ln y/dt at `seconds` after the arrival, 1/s, averaged over the laws.
+
+        Times before the first that was seen are taken there: desorption has no rate at 0.
+        """
+        rate = mean_rate(self.fits, max(seconds, self.first_time))
         systematic = float(np.hypot(rate.value * self.relative_u_systematic, self.drift_u))
         return Quantity.combine(rate.value, "1/s", u_random=rate.u, u_systematic=systematic)
 

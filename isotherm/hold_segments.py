@@ -29,8 +29,13 @@ _PRESSURE_BAND = 1.0
 _AREA_BAND = 1e-3
 # The barrier is travelling, not creeping, above this part of its speed elsewhere in the record.
 _TRAVEL_PART = 0.3
+# A stretch of even pressure crossed at nearly that speed is a compression through a flat part of the
+# isotherm; a film that collapses may creep fast, but not as fast as the barrier drives it.
+_SAME_SPEED = 0.7
 # mN/m: below this there is no film under pressure to hold (waiting for the solvent to evaporate).
 _LEAST_PRESSURE = 1.0
+_MEANS = (1, 9, 41)  # blocks averaged, to look through a controller's hunting
+_CLEARLY = 1.5
 _SHORTEST = 60.0  # s: nothing slower than a controller's settling can be seen in less
 _SHORTEST_PART = 0.05  # of the longest hold: shorter stops are pauses
 _FEWEST_BLOCKS = 8
@@ -114,6 +119,29 @@ def _longest_flat(values: FloatArray, time: FloatArray, band: float) -> tuple[in
         if at[i] - at[first] > best:
             best, found = at[i] - at[first], (first, i)
     return found
+
+
+def _longest_kept(data: _Condensed, first: int, last: int) -> tuple[float, int, int]:
+    """Duration and blocks of the longest stretch between two blocks that keeps pressure or area.
+
+    A controller that hunts is seen through moving means; the longer mean is used only where it makes the
+    stretch clearly longer, because it blurs the ends.
+    """
+    window = slice(first, last + 1)
+    time = data.time[window]
+    a, b = _longest_flat(data.area[window], time, data.area_band)
+    best = (float(time[b] - time[a]), first + a, first + b)
+    for width in _MEANS:
+        if width > time.size // 4:
+            break
+        kernel = np.ones(width) / width
+        smooth = np.convolve(data.pressure[window], kernel, mode="valid")
+        a, b = _longest_flat(smooth, time[: smooth.size], data.pressure_band)
+        b += width - 1
+        duration = float(time[b] - time[a])
+        if duration > (_CLEARLY if width > 1 else 1.0) * best[0]:
+            best = (duration, first + a, first + b)
+    return best
 
 
 def _travel_speed(data: _Condensed, first: int, last: int) -> float:
@@ -250,22 +278,14 @@ def find_stretches(time: FloatArray, area: FloatArray, pressure: FloatArray) -> 
         first, last = free.pop()
         if last - first < _FEWEST_BLOCKS:
             continue
-        window = slice(first, last + 1)
-        spans = []
-        for values, band in (
-            (data.pressure, data.pressure_band),
-            (data.area, data.area_band),
-        ):
-            a, b = _longest_flat(values[window], data.time[window], band)
-            spans.append((data.time[first + b] - data.time[first + a], first + a, first + b))
-        duration, a, b = max(spans)
+        duration, a, b = _longest_kept(data, first, last)
         if duration < max(_SHORTEST, _SHORTEST_PART * longest) or b - a < _FEWEST_BLOCKS:
             continue
         free += [(first, a - 1), (b + 1, last)]
         travel = _travel_speed(data, a, b)
         a, b = _trim_travel(data, a, b, travel)
         crossed = abs(data.area[b] - data.area[a]) / max(data.time[b] - data.time[a], 1e-9)
-        moving = travel > 0 and crossed > _TRAVEL_PART * travel
+        moving = travel > 0 and crossed > _SAME_SPEED * travel
         bare = float(np.median(data.pressure[a : b + 1])) < _LEAST_PRESSURE
         if moving or bare or b - a < _FEWEST_BLOCKS:
             continue

@@ -60,9 +60,9 @@ def settled_after(time: FloatArray, controlled: FloatArray) -> float:
         if scatter == 0.0:
             # a reading that never moves once settled: any other value is a transient
             scatter = 1e-9 * max(abs(centre), 1e-9)
+        # a window that is off says the transient lasts at least to where the window begins
         off = np.flatnonzero(np.abs(means[: first - width + 1]) > _SIGMAS * scatter)
-        for shift in range(width):
-            flagged[off + shift] = True
+        flagged[off] = True
     reach = -1
     for i in np.flatnonzero(flagged).tolist():
         if i - reach > max(_GAP, reach):

@@ -12,7 +12,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
-from isotherm.hold_blocks import Blocks
+from isotherm.hold_blocks import RESOLUTION, Blocks
 from isotherm.hold_models import Law, growth
 from isotherm.hold_noise import NoiseGrid
 
@@ -122,7 +122,7 @@ def solve_nodes(
     mean = s1y / s11
     few = _few_observations(hold.grid.effective[which], law.parameters)[:, None]
     if law.name == "constant":
-        rss = np.maximum(syy - s1y * mean, _TINY)
+        rss = np.maximum(syy - s1y * mean, n * RESOLUTION**2)
         variance = rss / max(n - 1, 1)
         zero = np.zeros_like(mean)
         covariance = np.stack([few * variance / s11, zero, zero], axis=-1)
@@ -151,8 +151,9 @@ def solve_nodes(
         shrunk = s11 - 2.0 * size * s1g + size**2 * sgg
         all_gone = (s1y + s11 - size * (sgy + s1g)) / np.maximum(shrunk, _TINY)
         drop, level = np.where(over, all_gone * size, drop), np.where(over, all_gone - 1.0, level)
+    least = n * RESOLUTION**2
     rss = syy + level**2 * s11 + drop**2 * sgg
-    rss = np.maximum(rss - 2 * level * s1y + 2 * drop * sgy - 2 * level * drop * s1g, _TINY)
+    rss = np.maximum(rss - 2 * level * s1y + 2 * drop * sgy - 2 * level * drop * s1g, least)
     variance = rss / max(n - law.parameters, 1)
     spread_of = few * variance / det
     covariance = np.stack(
