@@ -48,9 +48,11 @@ class Section:
 
     @property
     def title(self) -> str:
-        """What to call it: the run's own title, else the file."""
-        path = (self.payload.get("source") or {}).get("path", "")
-        return self.name or self.payload.get("title") or path or kind_of(self.payload)
+        """What to call it: the run's own title, else its file."""
+        payload = self.payload
+        path = (payload.get("source") or {}).get("path") or payload.get("path") or ""
+        file = str(path).replace("\\", "/").rpartition("/")[2]
+        return str(self.name or payload.get("title") or file or kind_of(payload).capitalize())
 
 
 def section_of(

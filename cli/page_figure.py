@@ -11,6 +11,8 @@ from typing import TYPE_CHECKING, Any
 import numpy as np
 from numpy.typing import NDArray
 
+from cli.page_mathtext import plain_label
+
 if TYPE_CHECKING:
     from matplotlib.axes import Axes
     from matplotlib.figure import Figure
@@ -162,7 +164,7 @@ def _line_series(axes: Axes, label: str, data: FloatArray) -> Series | None:
         )
         for row in kept
     )
-    return Series(label, x, y, said)
+    return Series(plain_label(label), x, y, said)
 
 
 def _shared_label(axes: Axes) -> str:
@@ -174,8 +176,11 @@ def _shared_label(axes: Axes) -> str:
 
 
 def _axis_name(label: str) -> tuple[str, str]:
-    """Split `area per molecule A (nm²)` into its name and unit."""
-    plain = " ".join(label.split())
+    """Split `area per molecule A (nm²)` or `area A / nm²` into its name and unit."""
+    plain = plain_label(label)
+    name, slash, unit = plain.rpartition(" / ")
+    if slash:
+        return name.strip(), unit.strip()
     name, bracket, rest = plain.rpartition("(")
     if bracket and rest.endswith(")"):
         return name.strip(), rest[:-1]

@@ -5,8 +5,18 @@ from __future__ import annotations
 from collections.abc import Callable
 from typing import Any
 
-from cli.page_blocks import Fact, Table, generic_tables, label_of, pair_text, quantity_text, told
+from cli.page_blocks import Fact, Table, generic_tables, pair_text, quantity_text, told
 from cli.page_words_build import audit_answer, audit_tables, transfer_answer, transfer_tables
+from cli.page_words_series import (
+    cycles_answer,
+    fluid_answer,
+    mixture_answer,
+    oscillation_answer,
+    potential_answer,
+    replicates_answer,
+    replicates_tables,
+    temperature_answer,
+)
 
 __all__ = ["answer_of", "kind_of", "question_of", "tables_of"]
 
@@ -230,36 +240,18 @@ def _check_answer(payload: dict[str, Any]) -> list[Fact]:
     ]
 
 
-def _replicates_answer(payload: dict[str, Any]) -> list[Fact]:
-    apart = [run["name"] for run in payload["runs"] if run["outlying"]]
-    facts = [Fact("runs", f"{len(payload['runs'])}"), Fact("standing apart", told(apart or "none"))]
-    return facts + [
-        Fact(label_of(f["name"]), told(f["mean"]), f"mean of {f['n']}")
-        for f in payload["features"][:6]
-    ]
-
-
-def _replicates_tables(payload: dict[str, Any]) -> list[Table]:
-    runs = tuple(
-        (r["name"], told(r["kept"]), told(r["outlying"]), told(r["reasons"]))
-        for r in payload["runs"]
-    )
-    features = tuple(
-        (label_of(f["name"]), told(f["n"]), told(f["mean"]), told(f["s"]))
-        for f in payload["features"]
-    )
-    return [
-        Table("Runs", ("run", "kept", "stands apart", "because"), runs),
-        Table("Features", ("feature", "runs", "mean", "standard deviation"), features),
-    ]
-
-
 ANSWERS: dict[str, Callable[[dict[str, Any]], list[Fact]]] = {
     "isotherm": _isotherm_answer,
     "hold": _hold_answer,
     "target": _target_answer,
     "check": _check_answer,
-    "replicates": _replicates_answer,
+    "cycles": cycles_answer,
+    "fluid": fluid_answer,
+    "mixture": mixture_answer,
+    "oscillation": oscillation_answer,
+    "potential": potential_answer,
+    "replicates": replicates_answer,
+    "temperature": temperature_answer,
     "transfer": transfer_answer,
     "audit": audit_answer,
 }
@@ -267,7 +259,7 @@ TABLES: dict[str, Callable[[dict[str, Any]], list[Table]]] = {
     "isotherm": _isotherm_tables,
     "hold": _hold_tables,
     "target": _target_tables,
-    "replicates": _replicates_tables,
+    "replicates": replicates_tables,
     "transfer": transfer_tables,
     "audit": audit_tables,
 }
