@@ -9,6 +9,7 @@ import typer
 from cli.options import (
     ColumnOption,
     CsvOption,
+    FigureOption,
     ForceOption,
     IsothermOption,
     IsothermSheetOption,
@@ -35,6 +36,7 @@ def transfer(
     column: ColumnOption = None,
     json: JsonOption = None,
     csv: CsvOption = None,
+    figure: FigureOption = None,
     report: ReportOption = None,
     force: ForceOption = False,
 ) -> None:
@@ -56,7 +58,7 @@ def transfer(
     from transfer.log import read_log
 
     inputs = [path for path in (log, sheet, isotherm, isotherm_sheet) if path is not None]
-    plan = plan_outputs(OutputChoice(json, csv, report=report, force=force), inputs)
+    plan = plan_outputs(OutputChoice(json, csv, figure, report=report, force=force), inputs)
     run_sheet = load_sheet(sheet, column)
     film = film_isotherm(isotherm, isotherm_sheet, run_sheet)
     result = analyse_log(read_log(log, run_sheet), run_sheet, isotherm=film)
@@ -66,6 +68,7 @@ def transfer(
             text=lambda: _text(result),
             json=lambda: _json(result, settings),
             csv=lambda: _csv(result),
+            figure=lambda suffix: _figure(result, suffix),
             report=lambda: _report(result, settings),
         )
     )
@@ -91,6 +94,13 @@ def _report(result: TransferResult, settings: dict[str, Any]) -> bytes:
 
     payload = with_provenance(result.to_json(), settings)
     return one_page(payload, pictures=[result_pictures(payload)])
+
+
+def _figure(result: TransferResult, suffix: str) -> bytes:
+    from isotherm.figures_style import figure_bytes
+    from transfer.figures import transfer_figure
+
+    return figure_bytes(transfer_figure(result), suffix)
 
 
 def _csv(result: TransferResult) -> bytes:
