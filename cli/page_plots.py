@@ -13,7 +13,13 @@ if TYPE_CHECKING:
     from isotherm.result import IsothermResult
     from isotherm.sheet import RunSheet
 
-__all__ = ["isotherm_picture", "limits_picture", "result_pictures", "strokes_picture"]
+__all__ = [
+    "evidence_picture",
+    "isotherm_picture",
+    "limits_picture",
+    "result_pictures",
+    "strokes_picture",
+]
 
 PAPER = (4.3, 4.5)  # inches: at the width of a phone its letters have the size of the page's
 FLAT_PAPER = (4.3, 3.0)
@@ -222,7 +228,62 @@ def limits_picture(payload: dict[str, Any]) -> Picture | None:
         )
 
 
+def evidence_picture(payload: dict[str, Any]) -> Picture | None:
+    """Draw every kind of evidence against layers, with the line it should follow; None without any."""
+    kinds = [kind for kind in payload.get("evidence") or [] if len(kind.get("points") or []) > 1]
+    if not kinds:
+        return None
+    from matplotlib.figure import Figure
+
+    from isotherm.figures_style import ACCENT, INK, SECOND, style
+
+    with style():
+        figure = Figure(figsize=(PAPER[0], 2.3 * len(kinds)))
+        panels = np.atleast_1d(figure.subplots(len(kinds), 1, squeeze=True))
+        figure.subplots_adjust(0.17, 0.5 / (2.3 * len(kinds)), 0.97, 0.97, hspace=0.35)
+        series = []
+        for axes, kind in zip(panels, kinds, strict=True):
+            points = [p for p in kind["points"] if None not in (p["layers"], p["value"])]
+            x = np.array([float(p["layers"]) for p in points])
+            y = np.array([float(p["value"]) for p in points])
+            bars = np.array([2.0 * float(p["u"] or 0.0) for p in points])
+            for slope, colour, dash in (
+                (kind.get("increment_per_layer"), INK, "-"),
+                (kind.get("expected_per_layer"), SECOND, (0, (5, 2))),
+            ):
+                foot = kind.get("intercept")
+                if slope and foot and None not in (slope["value"], foot["value"]):
+                    ends = np.array([0.0, float(x.max())])
+                    line = foot["value"] + slope["value"] * ends
+                    axes.plot(ends, line, color=colour, linestyle=dash, linewidth=1.1)
+            axes.errorbar(
+                x, y, yerr=bars, fmt="o", color=ACCENT, markersize=4.5, elinewidth=1.0,
+                markerfacecolor="white",
+            )  # fmt: skip
+            unit = points[0]["unit"] if points else ""
+            name = str(kind.get("label") or kind["kind"])
+            axes.set_ylabel(f"{name[:26]} ({unit})" if unit not in ("", "1") else name[:26])
+            said = tuple(
+                f"{p['layers']:.4g} layers: {_text(float(p['value']), p['u'])} {unit}".strip()
+                for p in points
+            )
+            series.append((name, axes, x, y, said))
+        panels[-1].set_xlabel("layers by the transfer ratios")
+        placed = [Series(n, *place(axes, x, y), said) for n, axes, x, y, said in series]
+        return picture_of(
+            figure,
+            "What was measured against the layers that the ratios add up to; full line fitted, dashed line "
+            "what the sheet lets one expect, bars U = 2u.",
+            series=placed,
+            narrow=True,
+        )
+
+
 def result_pictures(payload: dict[str, Any]) -> tuple[Picture, ...]:
     """Draw what a result's JSON form alone allows."""
-    drawn = (strokes_picture(payload), limits_picture(payload) if "binding" in payload else None)
+    drawn = (
+        strokes_picture(payload),
+        limits_picture(payload) if "binding" in payload else None,
+        evidence_picture(payload),
+    )
     return tuple(picture for picture in drawn if picture is not None)
