@@ -18,20 +18,15 @@ __all__ = [
     "pair_text",
     "quantity_text",
     "told",
+    "unit_text",
 ]
 
 MISSING = "–"
 MOST_ROWS = 200  # of a table nobody wrote for this page
 SKIPPED = {"schema", "settings", "versions", "source", "sources", "warnings", "title", "notes"}
 UNITS = {
-    "nm^2": "nm²",
-    "cm^2": "cm²",
-    "mm^2": "mm²",
     "degC": "°C",
     "1": "",
-    "ng/cm^2": "ng/cm²",
-    "1/nm^2": "1/nm²",
-    "mol/cm^2": "mol/cm²",
     "uL": "µL",
     "s^-0.5": "s⁻⁰·⁵",
 }
@@ -78,7 +73,12 @@ def quantity_text(value: Any, *, factor: float = 1.0, unit: str | None = None) -
         factor * float(value["value"]), None if u is None else abs(factor) * float(u), "1"
     )
     name = value["unit"] if unit is None else unit
-    return f"{format_quantity(known)} {UNITS.get(name, name)}".rstrip()
+    return f"{format_quantity(known)} {unit_text(name)}".rstrip()
+
+
+def unit_text(unit: str) -> str:
+    """Write a fixed unit the way print does."""
+    return UNITS.get(unit, unit.replace("^2", "²").replace("^3", "³"))
 
 
 def pair_text(pair: Any, unit: str = "", digits: int = 1) -> str:

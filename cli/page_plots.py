@@ -6,6 +6,7 @@ from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
+from cli.page_blocks import unit_text
 from cli.page_figure import MOST_POINTS, Picture, Series, picture_of, place
 from isotherm.quantity import Quantity, format_quantity
 
@@ -260,9 +261,9 @@ def evidence_picture(payload: dict[str, Any]) -> Picture | None:
                 x, y, yerr=bars, fmt="o", color=ACCENT, markersize=4.5, elinewidth=1.0,
                 markerfacecolor="white",
             )  # fmt: skip
-            unit = points[0]["unit"] if points else ""
+            unit = unit_text(points[0]["unit"]) if points else ""
             name = str(kind.get("label") or kind["kind"])
-            axes.set_ylabel(f"{name[:26]} ({unit})" if unit not in ("", "1") else name[:26])
+            axes.set_ylabel(f"{name[:26]} ({unit})" if unit else name[:26])
             said = tuple(
                 f"{p['layers']:.4g} layers: {_text(float(p['value']), p['u'])} {unit}".strip()
                 for p in points

@@ -20,7 +20,7 @@ from cli.page_blocks import generic_tables, label_of, pair_text, quantity_text
 from cli.page_figure import picture_of
 from cli.page_html import safe
 from cli.page_methods import all_methods, methods_for
-from cli.page_plots import isotherm_picture, limits_picture, strokes_picture
+from cli.page_plots import evidence_picture, isotherm_picture, limits_picture, strokes_picture
 from cli.page_words import QUESTIONS, answer_of, question_of
 from isotherm.figures_style import style
 
@@ -261,6 +261,19 @@ def test_strokes_show_ratio_with_uncertainty(tmp_path: Path) -> None:
     assert "Strokes" in "".join(outline(report.read_bytes()).text)
     assert strokes_picture({"strokes": []}) is None
     assert limits_picture({"limits": []}) is None
+
+
+def test_evidence_is_drawn_against_layers() -> None:
+    q = {"value": -13.1, "u": 0.1, "unit": "Hz"}
+    kind = {"kind": "resonator_frequency", "label": "crystal", "increment_per_layer": q,
+            "expected_per_layer": q, "intercept": {"value": 0.0, "u": 1.0, "unit": "Hz"},
+            "points": [{"layers": n, "value": -13.0 * n, "u": 1.0, "unit": "Hz"} for n in (2.0, 4.0)],
+            }  # fmt: skip
+    picture = evidence_picture({"evidence": [kind]})
+    assert picture is not None
+    assert picture.series[0].name == "crystal"
+    assert picture.series[0].said == ("2 layers: -26.0 ± 2.0 Hz", "4 layers: -52.0 ± 2.0 Hz")
+    assert evidence_picture({"evidence": []}) is None
 
 
 def test_series_and_single_runs_all_write_a_page(tmp_path: Path) -> None:
