@@ -63,8 +63,12 @@ def read_numbers(
         return regular if regular is not None else read_lines(data[start:], first_line, wanted)
     stop = _without_footer(data, start, wanted)
     with warnings.catch_warnings():
-        # pandas warns of rows it reads otherwise than written; here that is refused instead
-        warnings.simplefilter("error")
+        # its import may warn of its own future, its parser of columns nobody wants
+        warnings.simplefilter("ignore")
+        from pandas.errors import ParserWarning
+
+        # rows it reads otherwise than written are refused instead
+        warnings.simplefilter("error", ParserWarning)
         whole = None
         if path and stop == len(data):
             whole = read_fast_file(path, data, start, first_line, wanted)
