@@ -11,6 +11,7 @@ from importlib.resources import files
 from typing import TYPE_CHECKING, Any
 
 from cli import __version__
+from cli.page_blocks import Table
 from cli.page_figure import Picture, picture_of
 from cli.page_html import (
     facts_html,
@@ -191,10 +192,33 @@ def _article(section: Section, number: int, *, several: bool) -> str:
         "" if several else head(OBTAINED) + methods_html(methods_for(kind_of(payload))),
         head("What it was made from"),
         inputs_html(_inputs(payload, section.remarks)),
+        *(table_html(table) for table in _columns(payload)),
         settings_html(payload),
         "</article>",
     ]
     return "\n".join(part for part in parts if part)
+
+
+def _columns(payload: dict[str, Any]) -> list[Table]:
+    """What each column of the inputs was taken for."""
+    tables = []
+    for source in [payload.get("source"), *(payload.get("sources") or [])]:
+        known = source.get("columns") if isinstance(source, dict) else None
+        if not isinstance(source, dict) or not isinstance(known, dict) or not known:
+            continue
+        rows = sorted(
+            (
+                int(c.get("index") or 0),
+                str(c.get("header")),
+                role.replace("_", " "),
+                str(c.get("unit")),
+            )
+            for role, c in known.items()
+        )
+        cells = tuple((f"{n}", *rest) for n, *rest in rows)
+        caption = f"Columns of {source.get('path')}"
+        tables.append(Table(caption, ("column", "header", "taken for", "unit"), cells))
+    return tables
 
 
 def _warnings(payload: dict[str, Any]) -> list[str]:

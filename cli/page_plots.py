@@ -144,7 +144,7 @@ def strokes_picture(payload: dict[str, Any]) -> Picture | None:
         if limits and None not in limits:
             axes.axhspan(*limits, facecolor=BAND_SHADED, edgecolor="none", zorder=0)
         series = []
-        for way, colour, marker in (("down", INK, "v"), ("up", ACCENT, "^")):
+        for way, colour, marker, face in (("down", INK, "v", INK), ("up", ACCENT, "^", "white")):
             own = [s for s in strokes if s["direction"] == way]
             if not own:
                 continue
@@ -153,7 +153,7 @@ def strokes_picture(payload: dict[str, Any]) -> Picture | None:
             u = np.array([2.0 * float(s["ratio"]["u"] or 0.0) for s in own])
             axes.errorbar(
                 x, y, yerr=u, fmt=marker, color=colour, markersize=4.5, elinewidth=1.0,
-                markerfacecolor="white", label=f"{way}-strokes",
+                markerfacecolor=face, label=f"{way}-strokes",
             )  # fmt: skip
             said = tuple(_stroke_text(s) for s in own)
             series.append((f"{way}-stroke", x, y, said))

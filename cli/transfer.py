@@ -91,9 +91,10 @@ def _report(result: TransferResult, settings: dict[str, Any]) -> bytes:
     from cli.page import one_page
     from cli.page_plots import result_pictures
     from cli.serialise import with_provenance
+    from transfer.figures import transfer_figure
 
     payload = with_provenance(result.to_json(), settings)
-    return one_page(payload, pictures=[result_pictures(payload)])
+    return one_page(payload, lambda: transfer_figure(result), [result_pictures(payload)])
 
 
 def _figure(result: TransferResult, suffix: str) -> bytes:

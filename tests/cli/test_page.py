@@ -6,6 +6,7 @@ import base64
 import hashlib
 import json
 import re
+import tomllib
 from html.parser import HTMLParser
 from pathlib import Path
 from typing import Any
@@ -82,6 +83,7 @@ def test_it_has_question_answer_figure_methods_inputs(page: bytes) -> None:
     assert hashlib.sha256((DEMO / "spacer_isotherm.txt").read_bytes()).hexdigest() in text
     assert hashlib.sha256((DEMO / "spacer.toml").read_bytes()).hexdigest() in text
     assert "version of numpy" in text
+    assert "Trough area" in text
     assert re.search(r"5[34]\.\d ± 0\.\d mN/m", text)
     assert page.count(b"<svg") == 2
 
@@ -117,6 +119,7 @@ def test_nothing_from_a_file_becomes_markup() -> None:
     payload["title"] = HOSTILE
     payload["source"]["path"] = HOSTILE
     payload["source"]["sha256"] = HOSTILE
+    payload["source"]["columns"] = {HOSTILE: {"header": HOSTILE, "unit": HOSTILE, "index": 1}}
     payload["warnings"] = [HOSTILE]
     payload["settings"] = {HOSTILE: HOSTILE}
     payload["versions"] = {HOSTILE: HOSTILE}
@@ -206,6 +209,13 @@ def test_no_section_of_the_methods_page_is_overlooked() -> None:
     text = (Path(__file__).resolve().parents[2] / "cli" / "methods.md").read_text(encoding="utf-8")
     assert len(all_methods()) == len(re.findall(r"^### ", text, re.M))
     assert "—" not in text
+
+
+def test_what_the_page_is_made_of_ships_with_the_package() -> None:
+    root = Path(__file__).resolve().parents[2]
+    project = tomllib.loads((root / "pyproject.toml").read_text(encoding="utf-8"))
+    shipped = project["tool"]["setuptools"]["package-data"]["cli"]
+    assert {"methods.md", "page.css", "page.js"} <= set(shipped)
 
 
 # --- what can be read off ----------------------------------------------------------------------
