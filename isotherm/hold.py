@@ -196,6 +196,12 @@ def analyse_hold(
             )
             continue
         holds.append(_one(record, stretch, len(holds) + 1, planned, known))
+    slowest = [hold for hold in holds if hold.kind == "isochoric"]
+    if slowest and known.drift == 0.0 and known.drift_u == 0.0:
+        share = 10.0 / min(hold.start_level.value for hold in slowest)
+        warnings.append(
+            f"the probe's drift is not known (no check): 0.1 mN/m/h would pass for {share:.1g} %/h"
+        )
     settings = {
         "laws": [law.name for law in holds[0].fits] if holds else [],
         "choice": "simplest law within 2 of the least AICc; constant where the loss is within U",

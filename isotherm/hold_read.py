@@ -76,6 +76,13 @@ def surface_pressure(table: Table, sheet: RunSheet) -> tuple[FloatArray, tuple[s
     tension = table.values["tension"]
     if sheet.subphase.tension is not None:
         return sheet.subphase.tension.value - tension, ()
+    liquid = sheet.subphase.liquid
+    if liquid and "water" not in liquid.casefold():
+        raise UpstrokeError(
+            f"tension recorded, but that of clean '{liquid}' is not known",
+            where=where,
+            remedy="give [subphase] tension as measured on the clean surface",
+        )
     if sheet.subphase.temperature is not None:
         celsius = sheet.subphase.temperature.value
     elif "temperature" in table.values:

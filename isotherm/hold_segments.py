@@ -14,19 +14,13 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
-from isotherm.branches import quantum, robust_noise
-from isotherm.hold_blocks import spikes
+from isotherm.hold_arrival import barrier_arrival, pressure_arrival
+from isotherm.hold_condense import Condensed, condense_record
 
 __all__ = ["Stretch", "find_stretches"]
 
 FloatArray = NDArray[np.float64]
 
-_BLOCKS = 1500
-_SIGMAS = 8.0  # full width of the band within which a quantity counts as kept, in block noise
-# mN/m, full width: controllers keep a few tenths of a mN/m (common practice, no source).
-_PRESSURE_BAND = 1.0
-# Relative, full width: a stopped barrier's reading wanders less than this.
-_AREA_BAND = 1e-3
 # The barrier is travelling, not creeping, above this part of its speed elsewhere in the record.
 _TRAVEL_PART = 0.3
 # A stretch of even pressure crossed at nearly that speed is a compression through a flat part of the
@@ -40,11 +34,6 @@ _SHORTEST = 60.0  # s: nothing slower than a controller's settling can be seen i
 _SHORTEST_PART = 0.05  # of the longest hold: shorter stops are pauses
 _FEWEST_BLOCKS = 8
 _GAP_PART = 0.05  # of a hold: a disturbance no longer than this does not end it
-# mN/m: how far below the set point the approach to it begins, for placing its arrival.
-_APPROACH = 3.0
-# Relative: farther from the area kept than this, the barrier is travelling rather than slowing to its stop.
-_AREA_APPROACH = 5e-3
-_TRAVEL_BLOCKS = 5  # of travel before the stop, for the straight line
 # mN/m: modulus of an ordinary condensed film, to weigh a relative change of area against one of pressure.
 _MODULUS = 100.0
 # mN/m: a drift any trough shows plainly; and how many times the other's it must be to be sure of the kind.
@@ -63,37 +52,6 @@ class Stretch:
     kind: str
     start: int
     stop: int
-
-
-@dataclass(frozen=True)
-class _Condensed:
-    edges: NDArray[np.int64]
-    time: FloatArray
-    area: FloatArray
-    pressure: FloatArray
-    area_band: float
-    pressure_band: float
-    area_noise: float
-
-
-def _condense(time: FloatArray, area: FloatArray, pressure: FloatArray) -> _Condensed:
-    n = time.size
-    edges = np.unique(np.linspace(0, n, min(n, _BLOCKS) + 1).astype(np.int64))
-    good = (~(spikes(area) | spikes(pressure))).astype(float)
-    good[edges[:-1]] += 1e-9  # a block of nothing but spikes keeps a mean
-    counts = np.add.reduceat(good, edges[:-1])
-    means = [np.add.reduceat(x * good, edges[:-1]) / counts for x in (time, area, pressure)]
-    area_noise = robust_noise(means[1])
-    area_floor = max(_AREA_BAND * float(np.median(np.abs(means[1]))), 2.0 * quantum(area))
-    return _Condensed(
-        edges,
-        means[0],
-        means[1],
-        means[2],
-        max(_SIGMAS * area_noise, area_floor),
-        max(_SIGMAS * robust_noise(means[2]), _PRESSURE_BAND, 2.0 * quantum(pressure)),
-        area_noise,
-    )
 
 
 def _longest_flat(values: FloatArray, time: FloatArray, band: float) -> tuple[int, int]:
@@ -121,7 +79,7 @@ def _longest_flat(values: FloatArray, time: FloatArray, band: float) -> tuple[in
     return found
 
 
-def _longest_kept(data: _Condensed, first: int, last: int) -> tuple[float, int, int]:
+def _longest_kept(data: Condensed, first: int, last: int) -> tuple[float, int, int]:
     """Duration and blocks of the longest stretch between two blocks that keeps pressure or area.
 
     A controller that hunts is seen through moving means; the longer mean is used only where it makes the
@@ -144,7 +102,7 @@ def _longest_kept(data: _Condensed, first: int, last: int) -> tuple[float, int, 
     return best
 
 
-def _travel_speed(data: _Condensed, first: int, last: int) -> float:
+def _travel_speed(data: Condensed, first: int, last: int) -> float:
     """Barrier's travelling speed outside first..last, area per second; 0 where it never travels."""
     step = 3
     outside = np.ones(data.time.size, dtype=bool)
@@ -155,7 +113,7 @@ def _travel_speed(data: _Condensed, first: int, last: int) -> float:
     return float(np.quantile(speed[seen], 0.9)) if int(seen.sum()) >= 3 else 0.0
 
 
-def _clear_kind(data: _Condensed, first: int, last: int) -> str:
+def _clear_kind(data: Condensed, first: int, last: int) -> str:
     """Which of the two drifted, if one clearly did; else ""."""
     first += (last - first) // 10  # the settling says nothing
     part = max((last - first) // 4, 1)
@@ -169,7 +127,7 @@ def _clear_kind(data: _Condensed, first: int, last: int) -> str:
     return "isochoric" if by_pressure > _CLEAR_RATIO * by_area else ""
 
 
-def _busy_kind(data: _Condensed, first: int, last: int) -> str:
+def _busy_kind(data: Condensed, first: int, last: int) -> str:
     """Where nothing drifts: a controller keeps the barrier busy, a stopped one only shows its reading."""
     first += (last - first) // 10
     area, pressure = data.area[first : last + 1], data.pressure[first : last + 1]
@@ -182,7 +140,7 @@ def _busy_kind(data: _Condensed, first: int, last: int) -> str:
     return "isobaric" if slow > _BUSY_RATIO * step else "isochoric"
 
 
-def _kinds(data: _Condensed, taken: list[tuple[int, int]]) -> list[str]:
+def _kinds(data: Condensed, taken: list[tuple[int, int]]) -> list[str]:
     """Kind of every stretch; the unclear ones follow the clear ones of the same record."""
     clear = [_clear_kind(data, a, b) for a, b in taken]
     known = [kind for kind in clear if kind]
@@ -192,7 +150,7 @@ def _kinds(data: _Condensed, taken: list[tuple[int, int]]) -> list[str]:
     return [_busy_kind(data, a, b) for a, b in taken]
 
 
-def _trim_travel(data: _Condensed, first: int, last: int, travel: float) -> tuple[int, int]:
+def _trim_travel(data: Condensed, first: int, last: int, travel: float) -> tuple[int, int]:
     """Drop blocks at both ends over which the barrier still, or already, travels."""
     if travel <= 0:
         return first, last
@@ -203,54 +161,6 @@ def _trim_travel(data: _Condensed, first: int, last: int, travel: float) -> tupl
     while last - first > _FEWEST_BLOCKS and speed[first] > limit:
         first += 1
     return first, last
-
-
-def _far_block(
-    blocks: FloatArray, target: float, found: tuple[int, int], floor: int, reach: float
-) -> int:
-    """Last block before the hold that is still on its way to the set point; -1 where there is none."""
-    before = np.flatnonzero(np.abs(blocks[floor : found[0] + 1] - target) > reach)
-    return floor + int(before[-1]) if before.size else -1
-
-
-def _pressure_arrival(
-    data: _Condensed, pressure: FloatArray, found: tuple[int, int], floor: int
-) -> int:
-    """Row at which the pressure first reaches the set point."""
-    first, last = found
-    target = float(np.median(data.pressure[first : last + 1]))
-    # Coming from another hold, the approach may be shorter; a record that begins with its hold begins
-    # within reach, ringing included.
-    step = abs(target - float(data.pressure[floor])) if floor else target
-    reach = max(min(_APPROACH, 0.5 * step), 0.5 * data.pressure_band)
-    far = _far_block(data.pressure, target, found, floor, reach)
-    if far < 0:
-        return int(data.edges[floor])
-    rows = pressure[data.edges[far] : data.edges[last + 1]]
-    side = np.sign(target - data.pressure[far])
-    there = np.flatnonzero(side * (rows - target) >= -robust_noise(rows))
-    return int(data.edges[far] + (there[0] if there.size else 0))
-
-
-def _barrier_arrival(
-    data: _Condensed, time: FloatArray, area: FloatArray, found: tuple[int, int], floor: int
-) -> int:
-    """Row at which the barrier stops: its travel, extended as a straight line, meets the area kept."""
-    first, last = found
-    target = float(np.median(data.area[first : last + 1]))
-    reach = max(data.area_band, _AREA_APPROACH * abs(target))
-    far = _far_block(data.area, target, found, floor, reach)
-    if far < 0:
-        return int(data.edges[floor])
-    begin = int(data.edges[max(floor, far - _TRAVEL_BLOCKS)])
-    stop, limit = int(data.edges[far + 1]), int(data.edges[first + 1])
-    if stop - begin < 3:
-        return min(stop, limit)
-    slope, level = np.polyfit(time[begin:stop] - time[stop - 1], area[begin:stop], 1)
-    if slope == 0.0:
-        return min(stop, limit)
-    meets = time[stop - 1] + (target - level) / slope
-    return int(np.clip(np.searchsorted(time, meets), stop - 1, limit))
 
 
 def find_stretches(time: FloatArray, area: FloatArray, pressure: FloatArray) -> tuple[Stretch, ...]:
@@ -270,7 +180,7 @@ def find_stretches(time: FloatArray, area: FloatArray, pressure: FloatArray) -> 
     tuple of Stretch
         In time order; empty where the record holds nothing.
     """
-    data = _condense(time, area, pressure)
+    data = condense_record(time, area, pressure)
     free = [(0, data.time.size - 1)]
     taken: list[tuple[int, int]] = []
     longest = 0.0
@@ -294,7 +204,7 @@ def find_stretches(time: FloatArray, area: FloatArray, pressure: FloatArray) -> 
     return _placed(data, time, area, pressure, _merged(data, sorted(taken)), longest)
 
 
-def _merged(data: _Condensed, taken: list[tuple[int, int]]) -> list[tuple[int, int]]:
+def _merged(data: Condensed, taken: list[tuple[int, int]]) -> list[tuple[int, int]]:
     """Join stretches of one hold that a knock on the trough has parted."""
     joined: list[tuple[int, int]] = []
     for a, b in taken:
@@ -314,7 +224,7 @@ def _merged(data: _Condensed, taken: list[tuple[int, int]]) -> list[tuple[int, i
 
 
 def _placed(
-    data: _Condensed, time: FloatArray, area: FloatArray, pressure: FloatArray,
+    data: Condensed, time: FloatArray, area: FloatArray, pressure: FloatArray,
     taken: list[tuple[int, int]], longest: float,
 ) -> tuple[Stretch, ...]:  # fmt: skip
     """Give each stretch its kind and the row at which its set point was reached."""
@@ -323,9 +233,9 @@ def _placed(
     taken = [(a, b) for a, b in taken if data.time[b] - data.time[a] >= _SHORTEST_PART * longest]
     for (a, b), kind in zip(taken, _kinds(data, taken), strict=True):
         if kind == "isobaric":
-            start = _pressure_arrival(data, pressure, (a, b), floor)
+            start = pressure_arrival(data, pressure, (a, b), floor)
         else:
-            start = _barrier_arrival(data, time, area, (a, b), floor)
+            start = barrier_arrival(data, time, area, (a, b), floor)
         # the last block may hold the first rows of what follows
         stop = int(data.edges[b + 1] if b + 1 == data.time.size else data.edges[b])
         stretches.append(Stretch(kind, start, stop))

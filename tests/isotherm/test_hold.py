@@ -277,3 +277,73 @@ def test_reading_a_file(tmp_path: Path) -> None:
     assert isinstance(record, HoldRecord)
     assert record.area_unit == "cm^2"
     assert analyse_hold(record).holds[0].chosen == "dissolution"
+
+
+@pytest.mark.parametrize(("swing", "period"), [(1.0, 100.0), (2.0, 60.0), (0.6, 900.0)])
+def test_a_hunting_controller_does_not_break_the_hold_up(swing: float, period: float) -> None:
+    given = held(law="dissolution")
+    values = {role: column.copy() for role, column in given.values.items()}
+    after = values["time"] >= 300.0
+    clock = values["time"][after] - 300.0
+    values["pressure"][after] += swing * np.sin(2.0 * np.pi * clock / period)
+    (hold,) = analyse_hold(hold_record(table(**values), RunSheet())).holds
+    assert hold.kind == "isobaric"
+    assert hold.from_s == pytest.approx(300.0, abs=20.0)
+    assert hold.duration_s == pytest.approx(2 * HOUR, abs=30.0)
+    assert hold.loss_hold.value == pytest.approx(0.1, abs=0.001)
+
+
+def test_no_more_than_all_of_the_film_is_lost() -> None:
+    record = hold_record(held(law="dissolution", loss=0.5), RunSheet())
+    hold = analyse_hold(record, planned_time=20 * HOUR).holds[0]
+    assert hold.loss_planned is not None
+    assert hold.loss_planned.value == pytest.approx(1.0)
+    assert hold.rate_at(20 * HOUR).value == pytest.approx(0.0, abs=1e-12)
+    assert math.isfinite(hold.rate_at(0.0).value)
+
+
+def test_readings_without_scatter_still_have_an_uncertainty() -> None:
+    t = np.arange(0.0, HOUR, 5.0)
+    made = table(time=t, area=100.0 * (1.0 - 0.02 * t / HOUR), pressure=np.full(t.size, 30.0))
+    hold = analyse_hold(hold_record(made, RunSheet())).holds[0]
+    assert hold.chosen == "dissolution"
+    assert hold.loss_hold.u is not None
+    assert 1e-8 < hold.loss_hold.u < 1e-4
+
+
+def test_fast_collapse_is_not_taken_for_a_compression() -> None:
+    t = np.arange(0.0, 900.0, 1.0)
+    ramp = np.arange(0.0, 500.0, 1.0)
+    rng = np.random.default_rng(9)
+    area = np.concatenate([150.0 - 0.1 * ramp, 100.0 * (1.0 - 0.4 * t / 900.0)])
+    pressure = np.concatenate([45.0 * (ramp / 500.0) ** 2, np.full(t.size, 45.0)])
+    made = table(
+        time=np.arange(area.size, dtype=float),
+        area=area + 0.02 * rng.normal(size=area.size),
+        pressure=pressure + 0.03 * rng.normal(size=area.size),
+    )
+    (hold,) = analyse_hold(hold_record(made, RunSheet())).holds
+    assert hold.loss_hold.value == pytest.approx(0.4, abs=0.005)
+
+
+def test_other_liquids_need_their_own_tension() -> None:
+    given = held()
+    made = table(
+        time=given.values["time"],
+        area=given.values["area"],
+        tension=63.0 - given.values["pressure"],
+    )
+    glycerol = Subphase(liquid="glycerol", temperature=Quantity(20.0, None, "degC"))
+    with pytest.raises(UpstrokeError, match="glycerol"):
+        hold_record(made, RunSheet(subphase=glycerol))
+    told = replace(glycerol, tension=Quantity(63.0, 0.1, "mN/m"))
+    hold = analyse_hold(hold_record(made, RunSheet(subphase=told))).holds[0]
+    assert hold.pressure.value == pytest.approx(30.0, abs=0.1)
+
+
+def test_unknown_drift_of_the_probe_is_said() -> None:
+    record = hold_record(isochoric(), RunSheet())
+    assert any("drift is not known" in text for text in analyse_hold(record).warnings)
+    checked = CheckResult(items=(), drift_rate=Quantity(0.0, 0.05, "mN/m/h"))
+    told = analyse_hold(record, check=checked).warnings
+    assert not any("drift is not known" in text for text in told)
