@@ -43,14 +43,21 @@ def _listing(cells: Sequence[HeaderCell], columns: Sequence[int]) -> str:
     return f"{shown} and {len(columns) - _MOST_SHOWN} more" if len(columns) > _MOST_SHOWN else shown
 
 
-def _line(role: str, column: int, cells: Sequence[HeaderCell], *, unit: str = "") -> str:
+def _which(column: int, cells: Sequence[HeaderCell]) -> str:
+    """How the run sheet names a column: by its header where no other has the same."""
+    text = cells[column].text.replace("\\", "\\\\").replace('"', '\\"')
+    alone = sum(other.text == cells[column].text for other in cells) == 1
+    return f'header = "{text}"' if text and alone and len(text) <= 80 else f"index = {column + 1}"
+
+
+def _line(role: str, column: int, cells: Sequence[HeaderCell]) -> str:
     """The lines to add to the run sheet."""
-    cell = cells[column]
-    alone = cell.text and sum(other.text == cell.text for other in cells) == 1
-    text = cell.text.replace("\\", "\\\\").replace('"', '\\"')
-    which = f'header = "{text}"' if alone and len(text) <= 80 else f"index = {column + 1}"
-    extra = f' and unit = "{unit}"' if unit else ""
-    return f'[[columns]] with role = "{role}", {which}{extra}'
+    return f'[[columns]] with role = "{role}", {_which(column, cells)}'
+
+
+def _others(columns: Sequence[int], cells: Sequence[HeaderCell]) -> str:
+    """The other columns that could have been meant."""
+    return "".join(f" (or {_which(column, cells)})" for column in columns[:2])
 
 
 def wanted_roles(needs: Sequence[str]) -> set[str]:
@@ -101,7 +108,8 @@ def assign_roles(
                 f"{len(columns)} columns could be the {role.replace('_', ' ')}: "
                 f"{_listing(cells, columns)}",
                 where=where,
-                remedy=f"say which in the run sheet: {_line(role, columns[0], cells)}",
+                remedy=f"say which in the run sheet: {_line(role, columns[0], cells)}"
+                f"{_others(columns[1:], cells)}",
             )
         taken += [Assigned(role, column, cells[column], cells[column].unit) for column in columns]
         fixed.add(role)

@@ -2,22 +2,19 @@
 
 from __future__ import annotations
 
-import math
-from dataclasses import dataclass, field
 from pathlib import Path
 from typing import Final
 
 import numpy as np
 from numpy.typing import NDArray
 
-from isotherm.constants import ZERO_CELSIUS
 from isotherm.errors import UpstrokeError
-from isotherm.sheet import RunSheet, Subphase
+from isotherm.sheet import RunSheet
 from isotherm.table import Table, read_table
 from isotherm.trace import Trace
 from isotherm.trace_area import areas_of
 from isotherm.trace_order import time_order
-from isotherm.water import surface_tension, surface_tension_slope
+from isotherm.trace_pressure import pressures_of
 
 __all__ = ["FEWEST_ROWS", "read_trace", "trace_from_table"]
 
@@ -25,20 +22,7 @@ FloatArray = NDArray[np.float64]
 
 # A straight line through each of two branches, a knee between them and a spread to judge it by.
 FEWEST_ROWS: Final = 8
-_ROOM: Final = 20.0  # degC, where only an upper bound for pressure hangs on it
 _NEEDS: Final = ("molecular_area|area|barrier_position", "pressure|tension")
-_AQUEOUS: Final = (
-    "water",
-    "wasser",
-    "buffer",
-    "aqueous",
-    "saline",
-    "pbs",
-    "h2o",
-    "eau",
-    "agua",
-    "brine",
-)
 
 
 def read_trace(
@@ -64,21 +48,12 @@ def read_trace(
     return trace_from_table(read_table(path, known, needs=(*_NEEDS, *needs)), known)
 
 
-@dataclass(frozen=True)
-class _Pressure:
-    values: FloatArray
-    u: float | None
-    gamma: float | None
-    kelvin: float | None
-    warnings: tuple[str, ...] = field(default=())
-
-
 def trace_from_table(table: Table, sheet: RunSheet) -> Trace:
     """Build the trace of a table that has an area and a pressure or tension (see `read_trace`)."""
     where = table.source.path
     warnings = list(table.warnings)
     areas = areas_of(table, sheet)
-    pressure = _pressure(table, sheet)
+    pressure = pressures_of(table, sheet)
     warnings += [*areas.warnings, *pressure.warnings]
     time = table.values.get("time")
     if time is not None and not np.isfinite(time).any():
@@ -162,62 +137,3 @@ def _check_range(
                 where=where,
                 remedy=f"check which column is the {name}, or record a compression",
             )
-
-
-def _pressure(table: Table, sheet: RunSheet) -> _Pressure:
-    """Surface pressure as recorded, or from tension; with the tension of the clean subphase."""
-    warnings: list[str] = []
-    celsius = _celsius(table, sheet)
-    kelvin = None if celsius is None else celsius + ZERO_CELSIUS
-    given = sheet.subphase.tension
-    scale = sheet.trough.pressure_uncertainty
-    u = None if scale is None else scale.value
-    recorded = table.values.get("pressure")
-    aqueous = _is_aqueous(sheet.subphase)
-    if recorded is not None:
-        gamma = given.value if given is not None else None
-        if gamma is None and aqueous:
-            gamma = surface_tension((_ROOM if celsius is None else celsius) + ZERO_CELSIUS)
-        return _Pressure(recorded, u, gamma, kelvin, tuple(warnings))
-    tension = table.values["tension"]
-    if given is not None:
-        clean, clean_u = given.value, given.u
-    else:
-        if not aqueous or kelvin is None:
-            what = "its temperature" if aqueous else f"the tension of '{sheet.subphase.liquid}'"
-            raise UpstrokeError(
-                f"the export gives tension, and {what} is not known",
-                where=table.source.path,
-                remedy='add to the run sheet under [subphase]: tension = "72.7 ± 0.1 mN/m" as measured on '
-                'the clean surface, or for water temperature = "20.0 ± 0.2 degC"',
-            )
-        clean = surface_tension(kelvin)
-        known = sheet.subphase.temperature
-        clean_u = None
-        if known is not None and known.u is not None:
-            clean_u = abs(surface_tension_slope(kelvin)) * known.u
-        warnings.append(
-            f"pressure is {clean:.2f} mN/m (pure water at {kelvin - ZERO_CELSIUS:.1f} degC) less the "
-            "tension; the clean subphase's own tension is not in the run sheet"
-        )
-    if clean_u is not None:
-        u = clean_u if u is None else math.hypot(u, clean_u)
-    return _Pressure(clean - tension, u, clean, kelvin, tuple(warnings))
-
-
-def _is_aqueous(subphase: Subphase) -> bool:
-    liquid = subphase.liquid.casefold()
-    return not liquid or any(word in liquid for word in _AQUEOUS)
-
-
-def _celsius(table: Table, sheet: RunSheet) -> float | None:
-    """Temperature of the run, degC: the mean of the recorded, else the sheet's."""
-    recorded = table.values.get("temperature")
-    if recorded is not None:
-        finite = recorded[np.isfinite(recorded)]
-        if len(finite):
-            middle = float(np.median(finite))
-            if -25.0 < middle < 150.0:
-                return middle
-    given = sheet.subphase.temperature
-    return None if given is None else given.value
