@@ -8,9 +8,11 @@ from __future__ import annotations
 
 import base64
 import json
+import os
 import shutil
 import socket
 import subprocess
+import tempfile
 import time
 import urllib.error
 import urllib.request
@@ -43,8 +45,13 @@ class Browser:
         with socket.socket() as free:
             free.bind(("127.0.0.1", 0))
             port = free.getsockname()[1]
+        # what the browser leaves behind goes with this folder
+        self._folder = tempfile.TemporaryDirectory(ignore_cleanup_errors=True)
         self._server = subprocess.Popen(
-            [str(DRIVER), f"--port={port}"], stdout=subprocess.DEVNULL, stderr=subprocess.DEVNULL
+            [str(DRIVER), f"--port={port}"],
+            stdout=subprocess.DEVNULL,
+            stderr=subprocess.DEVNULL,
+            env={**os.environ, "TMPDIR": self._folder.name},
         )
         self._root = f"http://127.0.0.1:{port}"
         options: dict[str, Any] = {
@@ -80,6 +87,7 @@ class Browser:
         finally:
             self._server.terminate()
             self._server.wait(timeout=20)
+            self._folder.cleanup()
 
     def _wait_for_server(self) -> None:
         for _ in range(200):
