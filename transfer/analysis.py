@@ -28,6 +28,10 @@ __all__ = ["analyse_log"]
 
 FloatArray = NDArray[np.float64]
 
+# After a stroke the last of the film still leaves the water line and the controller still settles: the
+# first seconds of a dwell (at most a quarter of it) are left out.
+_SETTLING = 10.0
+
 
 def analyse_log(
     log: DippingLog, sheet: RunSheet, *, isotherm: IsothermResult | None = None
@@ -93,7 +97,7 @@ def analyse_log(
         target if target is not None and abs(h.pressure - target) <= held.band else h.pressure
         for h in held.holds
     )
-    nodes = build_nodes(log.time, log.area, log.pressure, motion, held, targets)
+    nodes = build_nodes(log.time, log.area, log.pressure, motion, held, targets, settling=_SETTLING)
     reference = target if target is not None else longest.pressure
     known = known_compressibility(sheet, isotherm, reference)
     warnings.extend(known.warnings)

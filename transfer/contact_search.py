@@ -191,9 +191,7 @@ def _stretch_misfit(
     sign = 1.0 if reads == "depth" else -1.0
     x = _delayed(stretch.curve, delay)[stretch.rows]
     if stretch.deep_end is None:
-        cover = geometry.mean_coated(
-            sign * (x[None, :] - grid[:, None]), stretch.curve.bin_width
-        )
+        cover = geometry.mean_coated(sign * (x[None, :] - grid[:, None]), stretch.curve.bin_width)
     else:
         cover = np.abs(x - stretch.deep_end)[None, :] * np.ones((grid.size, 1))
     w, y = stretch.weight, stretch.y
@@ -301,10 +299,10 @@ def _model_doubt(curves: list[RemovalCurve], delay: float) -> float:
     """What the model leaves open, mm, common to all strokes.
 
     The film does not lag by a pure delay, and area and position of one row were not read at one instant:
-    within a row's time (rectangular) and a quarter of the delay the dipper's way is not known.
+    the dipper's way within a fifth of a row's time and a quarter of the delay is not known.
     """
     speed = float(
         np.median([abs(c.end - c.start) / max(c.time_end - c.time_start, 1e-9) for c in curves])
     )
     row = float(np.median([c.row_seconds for c in curves]))
-    return float(np.hypot(speed * row / np.sqrt(12.0), 0.25 * speed * delay))
+    return float(np.hypot(0.2 * speed * row, 0.25 * speed * delay))

@@ -84,7 +84,7 @@ def dwell_rows(
         first = max(stay.first, held.holds[hold].first)
         last = min(stay.last, held.holds[hold].last)
         if settling > 0 and rest > 0 and first == stay.first and last > first:
-            wait = min(settling, 0.4 * float(time[last] - time[first]))
+            wait = min(settling, 0.25 * float(time[last] - time[first]))
             first = int(np.searchsorted(time, time[first] + wait))
         node_of[first : last + 1] = k
     rows = np.flatnonzero((node_of >= 0) & held.steady)

@@ -27,6 +27,12 @@ _REST_FACTOR = 4.0
 _REST_ROWS = 3
 # Part of a move's way, at each end, that the line to its start or end goes through.
 _END_PART = 0.15
+# Readings enough to see the encoder's lattice.
+_MOST_LATTICE = 20_000
+# A perfectly quiet reading still counts as being at a level within this part of the dead band.
+_LEAST_PART = 0.05
+# Changes of up to this many steps show whether there are steps at all.
+_FEW_STEPS = 12.0
 # Groups of rows that the dead band is walked along, at most.
 _MOST_WALKED = 40_000
 
@@ -80,8 +86,8 @@ def position_noise(position: FloatArray) -> tuple[float, float]:
     Returns
     -------
     tuple of float
-        Noise from the median absolute second difference (a steady move leaves none), and the smallest
-        change ever seen between rows (the encoder step where there is one).
+        Noise from the median absolute second difference (a steady move leaves none), and the encoder step
+        (0 where the reading has none).
     """
     # stretches spread over a long log are enough
     if position.size > 4 * _MOST_WALKED:
@@ -92,10 +98,20 @@ def position_noise(position: FloatArray) -> tuple[float, float]:
         pieces = position[None, :]
     second = pieces[:, 2:] - 2.0 * pieces[:, 1:-1] + pieces[:, :-2]
     noise = 1.4826 * float(np.median(np.abs(second))) / np.sqrt(6.0) if second.size else 0.0
-    change = np.abs(np.diff(pieces, axis=1)).ravel()
-    change = change[change > 1e-9]
-    step = float(np.quantile(change, 0.01)) if change.size else 0.0
-    return noise, step
+    return noise, _encoder_step(pieces.ravel())
+
+
+def _encoder_step(position: FloatArray) -> float:
+    """Spacing of the readings' lattice, mm, or 0 where they lie on none."""
+    some = position[:: max(1, position.size // _MOST_LATTICE)]
+    gaps = np.diff(np.unique(np.round(some, 6)))
+    gaps = gaps[gaps > 2e-6]
+    if gaps.size < 3:
+        return 0.0
+    step = float(np.quantile(gaps, 0.05))
+    # an encoder's readings differ by whole steps; a smooth reading's do not
+    few = gaps[gaps < _FEW_STEPS * step] / step
+    return step if float(np.mean(np.abs(few - np.round(few)) < 0.1)) > 0.9 else 0.0
 
 
 def find_motion(time: FloatArray, position: FloatArray) -> Motion:
@@ -160,7 +176,14 @@ def _runs(
     rests = _merge(_gaps(time, position, events), position, band, noise, step)
     interval = float(np.median(np.diff(time)))
     moves = [
-        _move(time, position, before, after, max(3.0 * noise, min(step, band)), interval)
+        _move(
+            time,
+            position,
+            before,
+            after,
+            max(3.0 * noise, min(step, band), _LEAST_PART * band),
+            interval,
+        )
         for before, after in pairwise(rests)
     ]
     trimmed = []
@@ -257,7 +280,7 @@ def _rest(
     if rows.size == 0:
         return Rest(after, until - 1, float(position[min(after, position.size - 1)]), step)
     middle = float(np.median(rows))
-    inside = rows[np.abs(rows - middle) <= max(3.5 * noise, min(step, band))]
+    inside = rows[np.abs(rows - middle) <= max(3.5 * noise, min(step, band), _LEAST_PART * band)]
     level = float(np.mean(inside)) if inside.size else middle
     # rounding to the encoder's step leaves a uniform error that averaging cannot remove
     rounding = step / np.sqrt(12.0) if noise < step else 0.0
