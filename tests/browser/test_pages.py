@@ -163,6 +163,20 @@ def test_the_cursor_follows_a_finger(phone: Browser, pages: Path) -> None:
     assert _area(phone.run(SAID, 0)) > _area(first) + 0.02
 
 
+def test_a_finger_draws_the_cursor_along_without_moving_the_page(
+    phone: Browser, pages: Path
+) -> None:
+    phone.open(pages / "isotherm.html")
+    left, top, width, height = _plot(phone)
+    scrolled = phone.run("return [scrollX, scrollY];")
+    middle = top + 0.3 * height
+    phone.drag((left + 0.35 * width, middle), (left + 0.65 * width, middle))
+    end = _area(phone.run(SAID, 0))
+    phone.point(left + 0.35 * width, middle, touch=True)
+    assert end > _area(phone.run(SAID, 0)) + 0.02
+    assert phone.run("return [scrollX, scrollY];") == scrolled
+
+
 def test_the_cursor_follows_the_keys(desk: Browser, pages: Path) -> None:
     desk.open(pages / "isotherm.html")
     assert (

@@ -139,6 +139,18 @@ class Browser:
         }
         self._call("POST", f"{self._session}/actions", {"actions": [source]})
 
+    def drag(self, start: tuple[float, float], end: tuple[float, float]) -> None:
+        """Draw a finger from one place of the window to another, and leave it there."""
+        steps: list[dict[str, Any]] = [
+            {"type": "pointerMove", "duration": 0, "x": round(start[0]), "y": round(start[1])},
+            {"type": "pointerDown", "button": 0},
+            {"type": "pointerMove", "duration": 200, "x": round(end[0]), "y": round(end[1])},
+        ]
+        touch = {"pointerType": "touch"}
+        source = {"type": "pointer", "id": "touch", "parameters": touch, "actions": steps}
+        self._call("POST", f"{self._session}/actions", {"actions": [source]})
+        self._call("DELETE", f"{self._session}/actions")
+
     def press(self, *names: str) -> None:
         """Press keys, one after another."""
         steps = []
