@@ -41,7 +41,7 @@ def _record(curve: CheckCurve, axes: Axes) -> None:
     tidy(axes, label, PRESSURE_LABEL, PurePath(curve.record).name)
     low, high = axes.get_ylim()
     axes.set_ylim(low, high + 0.4 * (high - low))
-    axes.legend(frameon=False, fontsize=8, loc="upper right")
+    axes.legend(framealpha=0.9, edgecolor="none", fontsize=8, loc="upper right")
 
 
 def _items(items: list[CheckItem], axes: Axes) -> None:

@@ -75,6 +75,8 @@ def _draw(hold: Hold, area_unit: str, top: Axes, bottom: Axes) -> None:
     unit = area_unit.replace("^2", "$^2$") if isobaric else "mN m$^{-1}$"
     symbol = "area $A$" if isobaric else r"pressure $\Pi$"
     tidy(top, "", f"{symbol} / {unit}", _title(hold))
+    reach = 1.15 * max(2.0 * hold.noise, float(np.abs(residual).max()))
+    bottom.set_ylim(-reach, 1.9 * reach)  # room for the remark above the data
     note(bottom, "shaded: ± 2 standard deviations", top=True)
     tidy(bottom, "time since arrival / h", f"residual / {unit}")
     top.set_xlim(0.0, end)
