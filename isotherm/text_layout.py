@@ -104,7 +104,8 @@ def row_kinds(line: str, layout: Layout) -> list[str] | None:
             if texts < 0:
                 return None
         kinds.append(kind)
-    return kinds if "N" in kinds else None
+    # a row without any reading goes with others, though it begins none
+    return kinds if "N" in kinds or "E" in kinds else None
 
 
 def merge_kinds(have: list[str], more: list[str]) -> list[str] | None:
@@ -152,7 +153,8 @@ def _with_rows_above(lines: Sequence[str], block: Block) -> Block:
     first, kinds = block.first, list(block.kinds)
     while first > 0:
         more = row_kinds(lines[first - 1], block.layout)
-        merged = merge_kinds(kinds, more) if more is not None and len(more) == len(kinds) else None
+        alike = more is not None and "N" in more and len(more) == len(kinds)
+        merged = merge_kinds(kinds, more) if more is not None and alike else None
         if merged is None:
             break
         first, kinds = first - 1, merged
@@ -163,8 +165,7 @@ def _with_rows_above(lines: Sequence[str], block: Block) -> Block:
         if not line.strip():
             continue
         more = row_kinds(line, block.layout)
-        alike = more is not None and len(more) == len(kinds) and merge_kinds(kinds, more)
-        if alike:
+        if more is not None and len(more) == len(kinds) and merge_kinds(kinds, more):
             last = number if last is None else last
             start = number
         elif last is not None:

@@ -3,13 +3,17 @@
 from __future__ import annotations
 
 import math
+from typing import Final
 
 import numpy as np
 
 from isotherm.text_cells import MISSING, to_number
 from isotherm.text_rows import Numbers, SkippedLine, Unreadable, Wanted
 
-__all__ = ["read_lines", "read_regular"]
+__all__ = ["BLANK_LINE", "read_lines", "read_regular"]
+
+# A line of nothing else is blank: separators, and the end-of-file marks some programs write.
+BLANK_LINE: Final = b" \t\r\n;,|\x1a\0"
 
 
 def read_regular(data: bytes, first_line: int, wanted: Wanted) -> Numbers | None:
@@ -63,7 +67,7 @@ def read_lines(data: bytes, first_line: int, wanted: Wanted) -> Numbers:
     out = Numbers({}, {}, np.empty(0, np.int64))
     for number, raw in enumerate(data.splitlines(), first_line):
         line = raw.decode(wanted.encoding, "replace")
-        if not line.strip(" \t;,|\x1a\0"):
+        if not raw.strip(BLANK_LINE):
             continue
         cells = layout.split(line)
         while len(cells) > most and not cells[-1]:

@@ -12,7 +12,7 @@ import numpy as np
 from isotherm.text_cells import to_number
 from isotherm.text_fast import read_fast, read_fast_file
 from isotherm.text_layout import Block
-from isotherm.text_lines import read_lines, read_regular
+from isotherm.text_lines import BLANK_LINE, read_lines, read_regular
 from isotherm.text_rows import Numbers, Wanted
 
 __all__ = ["read_numbers"]
@@ -75,11 +75,11 @@ def read_numbers(
         if whole is None:
             whole = read_fast(data, start, stop, first_line, wanted)
         if whole is None:
-            return _without_blanks(_in_pieces(data, start, first_line, wanted))
+            return _in_pieces(data, start, first_line, wanted)
     if stop < len(data):
         tail = read_lines(data[stop:], first_line + len(whole.lines), wanted)
         whole.skipped, whole.skipped_count = tail.skipped, tail.skipped_count
-    return _without_blanks(whole)
+    return _without_blanks(whole, data, start)
 
 
 def _line_end(data: bytes, start: int, near: int, stop: int) -> int:
@@ -100,6 +100,7 @@ def _in_pieces(data: bytes, start: int, first_line: int, wanted: Wanted) -> Numb
             line += len(data[low:high].splitlines())
         else:
             line += len(piece.lines)
+            piece = _without_blanks(piece, data, low)
         pieces.append(piece)
     return _joined(pieces, wanted)
 
@@ -142,8 +143,11 @@ def _joined(pieces: list[Numbers], wanted: Wanted) -> Numbers:
     return out
 
 
-def _without_blanks(numbers: Numbers) -> Numbers:
-    """Drop the rows the fast parser made of blank lines: no column has anything."""
+def _without_blanks(numbers: Numbers, data: bytes, start: int) -> Numbers:
+    """Drop the rows the fast parser made of blank lines; those it made of missing cells are rows.
+
+    numbers : just as it was read from the lines at byte `start`, a row for each.
+    """
     empty = np.ones(len(numbers.lines), dtype=bool)
     for values in numbers.columns.values():
         empty &= np.isnan(values)
@@ -151,6 +155,15 @@ def _without_blanks(numbers: Numbers) -> Numbers:
             return numbers
     for cells in numbers.clocks.values():
         empty &= np.array([not cell for cell in cells], dtype=bool)
+    rows = np.flatnonzero(empty)
+    mark = 10 if data.find(b"\n", start) >= 0 else 13  # line feed, or carriage return alone
+    ends = start + np.flatnonzero(np.frombuffer(data, dtype=np.uint8)[start:] == mark)
+    begins = np.concatenate([[start], ends + 1])
+    ends = np.concatenate([ends, [len(data)]])
+    longer = rows[ends[rows] - begins[rows] > 1]  # the rest have no cell
+    for row in longer.tolist():
+        if data[begins[row] : ends[row]].strip(BLANK_LINE):
+            empty[row] = False
     keep = ~empty
     numbers.columns = {c: values[keep] for c, values in numbers.columns.items()}
     numbers.clocks = {
