@@ -9,13 +9,10 @@ import numpy as np
 
 from isotherm.quantity import COVERAGE_FACTOR
 from transfer.target_inputs import TargetInputs
-from transfer.target_intervals import Edge, Interval, Window, common, where_allowed
+from transfer.target_intervals import Interval, Window, common, where_allowed
 from transfer.target_limits import Rule, Rules, rules_of
 
 __all__ = ["Choice", "Deepest", "Margin", "choose", "deepest", "margin_of"]
-
-# An end this close to the end of what is known was put there by it (mN/m; edges are found far finer).
-_SAME = 1e-6
 
 
 @dataclass(frozen=True)
@@ -63,9 +60,9 @@ def choose(inputs: TargetInputs) -> Choice:
     """Find the pressures that obey every rule, and the one farthest from breaking any.
 
     Every rule ends at pressures that already hold its uncertainty, so that margins of all rules are
-    distances on one axis. Within a window the smallest margin is largest in the middle; where one end is only
-    the end of what is known (no hold at a higher pressure), at that end. Of several windows the one with the
-    largest such margin counts.
+    distances on one axis, and within a window the smallest margin is largest in the middle. The end of what
+    is known (no hold at a higher pressure) counts as a limit: what has not been seen is no safer. Of several
+    windows the one with the largest such margin counts.
 
     Parameters
     ----------
@@ -79,15 +76,15 @@ def choose(inputs: TargetInputs) -> Choice:
     low, high = inputs.film.lowest, inputs.film.highest
     allowed = tuple(_allowed(rule, low, high) for rule in rules.applied)
     windows = common(allowed, low, high)
-    best = deepest(windows, rules.applied)
+    best = deepest(windows)
     if best is None:
         return Choice(rules, allowed, windows, None, None, None)
     return Choice(rules, allowed, windows, best.pressure, best.window, best.margin)
 
 
-def deepest(windows: Sequence[Window], rules: Sequence[Rule]) -> Deepest | None:
+def deepest(windows: Sequence[Window]) -> Deepest | None:
     """The pressure with the largest smallest margin in any of the windows; None where there is none."""
-    found = [_deepest(window, rules) for window in windows]
+    found = [_deepest(window) for window in windows]
     return max(found, key=lambda item: item.margin, default=None)
 
 
@@ -124,15 +121,6 @@ def _allowed(rule: Rule, low: float, high: float) -> tuple[Interval, ...]:
     return where_allowed(lambda pressure: rule.slack(pressure, COVERAGE_FACTOR), low, high)
 
 
-def _deepest(window: Window, rules: Sequence[Rule]) -> Deepest:
+def _deepest(window: Window) -> Deepest:
     low, high = window.low.pressure, window.high.pressure
-    below, above = _danger(window.low, rules), _danger(window.high, rules)
-    if below and not above:
-        return Deepest(high, window.width, window)
-    if above and not below:
-        return Deepest(low, window.width, window)
     return Deepest(0.5 * (low + high), 0.5 * window.width, window)
-
-
-def _danger(edge: Edge, rules: Sequence[Rule]) -> bool:
-    return edge.rule < 0 or abs(edge.pressure - rules[edge.rule].known_to) > _SAME

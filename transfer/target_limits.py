@@ -39,7 +39,6 @@ class Rule:
     reason : why, with the numbers it came from.
     slack : of (n,) pressures and k, to (n,) in `unit`; NaN where nothing is known.
     demand : what it asks for in `unit` (distance, limit, film); relaxations are told as parts of it.
-    known_to : pressure above which nothing is known, mN/m; an end there is no danger to keep away from.
     at : pressures of the feature it guards, mN/m.
     """
 
@@ -49,7 +48,6 @@ class Rule:
     slack: Callable[[FloatArray, float], FloatArray]
     unit: str
     demand: float
-    known_to: float = np.inf
     at: tuple[float, ...] = ()
 
 
@@ -244,9 +242,7 @@ def _loss(inputs: TargetInputs) -> Rule | LeftOut:
         f"at most {100 * limit.value:.2g} % lost over {_hours(loss.planned)}; not known above "
         f"{loss.pressure[-1]:.1f} mN/m, the highest pressure held"
     )
-    return Rule(
-        "film loss", "film loss", reason, slack, "1", limit.value, known_to=float(loss.pressure[-1])
-    )
+    return Rule("film loss", "film loss", reason, slack, "1", limit.value)
 
 
 def _film(inputs: TargetInputs) -> Rule | LeftOut:

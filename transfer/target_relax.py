@@ -131,9 +131,8 @@ def relaxations(inputs: TargetInputs, choice: Choice) -> tuple[Relaxation, ...]:
 
 def _without(choice: Choice, rule: int, inputs: TargetInputs, pressure: float) -> float:
     """The pressure the remaining rules would recommend."""
-    rules = [r for j, r in enumerate(choice.rules.applied) if j != rule]
     allowed = [a for j, a in enumerate(choice.allowed) if j != rule]
-    best = deepest(common(allowed, inputs.film.lowest, inputs.film.highest), rules)
+    best = deepest(common(allowed, inputs.film.lowest, inputs.film.highest))
     return pressure if best is None else best.pressure
 
 

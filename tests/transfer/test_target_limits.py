@@ -203,7 +203,7 @@ def test_loss_rule_ends_where_the_interpolated_loss_reaches_the_limit() -> None:
     assert result.recommended.value == pytest.approx(middle, abs=0.1)
 
 
-def test_loss_is_not_known_above_the_highest_hold_but_that_is_no_danger() -> None:
+def test_loss_is_not_known_above_the_highest_hold_and_that_is_a_limit() -> None:
     text = (
         STACK + '[dipping]\nstroke_length = "25 mm"\nspeed = "5 mm/min"\n[target]\nloss = "4 %"\n'
     )
@@ -211,8 +211,10 @@ def test_loss_is_not_known_above_the_highest_hold_but_that_is_no_danger() -> Non
     result = choose_target(plain_film(), parse_sheet(text), holds=holds)
     held = holds[0].holds[0].pressure.value
     assert result.recommended is not None
-    # the pressure that was held, not the middle of what is known
-    assert result.recommended.value == pytest.approx(held, abs=1e-4)
+    assert result.window is not None
+    assert result.window[1] == pytest.approx(held, abs=1e-3)
+    # deepest inside all limits, the end of what is known among them
+    assert result.recommended.value == pytest.approx(sum(result.window) / 2, abs=1e-4)
     assert "not known above" in limit_of(result, "film loss").reason
 
 
