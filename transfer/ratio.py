@@ -117,10 +117,10 @@ def transfer_ratios(
     per_area = 1.0 / safe
     known = np.where(np.isfinite(fit.mean_variance), fit.mean_variance, 0.0)
     dwell = (by_mean * known) @ by_mean.T
-    film = by_film @ fit.covariance @ by_film.T
+    by_fit = by_film @ fit.covariance @ by_film.T
     outer = np.outer(per_area, per_area)
     level = np.diag((ratio * u_level * per_area) ** 2)
-    random = (dwell + film) * outer + level
+    random = (dwell + by_fit) * outer + level
     shape_part, contact_part = ratio * u_shape * per_area, ratio * by_contact * per_area
     systematic = np.outer(shape_part, shape_part) + np.outer(contact_part, contact_part)
     by_creep = by_film[:, :terms]
@@ -130,7 +130,7 @@ def transfer_ratios(
         coated=coated,
         u_coated=np.sqrt(u_shape**2 + by_contact**2 + u_level**2),
         removed=removed,
-        u_removed=np.sqrt(np.diag(dwell + film)),
+        u_removed=np.sqrt(np.diag(dwell + by_fit)),
         ratio=ratio,
         uncorrected=raw * per_area,
         random_covariance=random,

@@ -24,7 +24,7 @@ class RemovalCurve:
 
     reading : (b,) mm. removed : (b,) cm^2. variance : (b,) cm^4, independent part. time : (b,) s.
     time_start, time_end : s. bin_width : mm, 0 for single rows.
-    row_seconds : s between rows. total : cm^2 between the two dwells, u_total its standard uncertainty (cm^2).
+    row_seconds : s between rows. total : cm^2 between the two dwells, u_total its u (cm^2).
     """
 
     move: int
