@@ -10,6 +10,8 @@ __all__ = ["COVERAGE_FACTOR", "Quantity", "format_quantity", "json_number"]
 
 # Expanded uncertainty U = k u; k = 2 covers about 95 % for a normal distribution (GUM, JCGM 100:2008, 6.2).
 COVERAGE_FACTOR = 2.0
+# Digits a printed value has at most.
+MOST_DIGITS = 7
 
 
 def json_number(value: float | None) -> float | None:
@@ -95,4 +97,10 @@ def format_quantity(quantity: Quantity, *, factor: float = COVERAGE_FACTOR) -> s
     if places <= 0:
         step = 10.0**-places
         return f"{round(value / step) * step:.0f} ± {math.ceil(expanded / step - 0.05) * step:.0f}"
-    return f"{value:.{places}f} ± {expanded:.{places}f}"
+    spread = f"{expanded:.{places}f}"
+    if value:
+        most = MOST_DIGITS - 1 - math.floor(math.log10(abs(value)))
+        if places > most:  # nothing in this trade is known to more digits, whatever a formula says
+            places, spread = max(most, 0), f"{expanded:.1g}"
+    text = f"{value:.{places}f}"
+    return f"{text.lstrip('-') if float(text) == 0 else text} ± {spread}"
