@@ -13,7 +13,8 @@ __all__ = ["Crowded", "crowded_export"]
 _OTHERS = (
     "Barrier speed (mm/min)", "Target pressure (mN/m)", "Relative area (%)", "Cycle", "Room temperature (°C)",
     "Compression modulus (mN/m)", "State", "Comment", "Relative humidity (%)", "Pressure change (mN/m)",
-    "Step", "Note", "Dipper speed (mm/min)", "Area rate (cm²/min)", "Probe signal (counts)", "Set position (mm)",
+    "Step", "Note", "Dipper speed (mm/min)", "Area rate (cm²/min)",
+    "Probe signal (counts)", "Set position (mm)",
 )  # fmt: skip
 _TEXTS = ("State", "Comment", "Note")
 _CLOCKS = ("Clock", "Timestamp")
