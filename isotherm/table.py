@@ -14,7 +14,7 @@ from isotherm.sheet import RunSheet
 from isotherm.source import ColumnSource, Source
 from isotherm.table_cell import HeaderCell
 from isotherm.table_header import Header, find_header
-from isotherm.table_report import gaps_report, lines_report
+from isotherm.table_report import gaps_report, lines_report, within_reach
 from isotherm.table_roles import (
     Assigned,
     assign_roles,
@@ -24,7 +24,6 @@ from isotherm.table_roles import (
 )
 from isotherm.table_units import column_conversion
 from isotherm.text_bytes import digest, is_workbook, read_bytes
-from isotherm.text_clock import clock_seconds
 from isotherm.text_find import TextRows, find_rows
 from isotherm.text_numbers import read_numbers
 from isotherm.text_rows import Numbers
@@ -188,6 +187,8 @@ def _convert(
         named = f"{where}, column {describe(one.column, one.cell)}"
         header = one.cell.text
         if one.column in numbers.clocks:
+            from isotherm.text_clock import clock_seconds
+
             values[one.role] = clock_seconds(
                 numbers.clocks[one.column], where=named, form=one.cell.clock
             )
@@ -205,7 +206,7 @@ def _convert(
             warnings.append(warning)
         if convert is None:
             continue
-        converted = convert(raw)
+        converted = within_reach(convert(raw), one, numbers.lines, warnings)
         if one.role in values:  # the second barrier
             both = np.column_stack([values[one.role], converted])
             values[one.role] = both

@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import csv
 import re
 from collections.abc import Sequence
 from dataclasses import dataclass, field
@@ -32,6 +31,8 @@ class Layout:
         if self.delimiter == " ":
             return line.replace('"', " ").split() if self.quoted else line.split()
         if '"' in line:
+            import csv
+
             try:
                 cells = next(
                     csv.reader([line], delimiter=self.delimiter, skipinitialspace=True), []

@@ -10,7 +10,6 @@ from typing import Final
 import numpy as np
 
 from isotherm.text_cells import to_number
-from isotherm.text_fast import read_fast, read_fast_file
 from isotherm.text_layout import Block
 from isotherm.text_lines import BLANK_LINE, read_lines, read_regular
 from isotherm.text_rows import Numbers, Wanted
@@ -69,6 +68,8 @@ def read_numbers(
 
         # rows it reads otherwise than written are refused instead
         warnings.simplefilter("error", ParserWarning)
+        from isotherm.text_fast import read_fast, read_fast_file
+
         whole = None
         if path and stop == len(data):
             whole = read_fast_file(path, data, start, first_line, wanted)
@@ -91,6 +92,8 @@ def _line_end(data: bytes, start: int, near: int, stop: int) -> int:
 
 def _in_pieces(data: bytes, start: int, first_line: int, wanted: Wanted) -> Numbers:
     """Read rows with odd lines among them: the fast parser on what is regular, line by line elsewhere."""
+    from isotherm.text_fast import read_fast
+
     pieces = []
     line = first_line
     for low, high in _pieces(data, start):
