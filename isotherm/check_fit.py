@@ -14,6 +14,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
+from isotherm.errors import UpstrokeError
 from isotherm.hold_fit import aicc
 from isotherm.hold_noise import NOISE_PARAMETERS, NoiseGrid, noise_grid
 from isotherm.quantity import Quantity
@@ -26,6 +27,9 @@ _HINGES = 24
 _HOUR = 3600.0
 # Time and area run so closely together above this correlation that drift and rise cannot be told apart.
 _TELLABLE = 0.95
+_INDEPENDENT = (
+    1e-10  # least eigenvalue of scaled normal equations that rounding leaves sure of its sign
+)
 _WORTH = 18.0  # -2 ln weight beyond which a node carries nothing
 
 
@@ -62,10 +66,25 @@ class _Described:
     deviance: float
 
 
+def _told_apart(columns: FloatArray) -> NDArray[np.bool_]:
+    """Which of (i, m, p) sets of columns are independent, (i,)."""
+    size = np.sqrt(np.einsum("iap,iap->ip", columns, columns))
+    scaled = columns / np.where(size > 0, size, 1.0)[:, None, :]
+    least = np.linalg.eigvalsh(np.einsum("iap,iaq->ipq", scaled, scaled))[:, 0]
+    return np.asarray(least > _INDEPENDENT)
+
+
 def _solve(
     columns: FloatArray, y: FloatArray, grid: NoiseGrid, hinges: FloatArray, parameters: int
 ) -> _Described:
     """Generalised least squares of y on (i, m, p) columns for every covariance."""
+    kept = _told_apart(columns)
+    if not kept.any():
+        raise UpstrokeError(
+            "time and area of the bare record change together in every way: nothing can be told apart",
+            remedy="record a bare compression at constant speed, with a row at least every few seconds",
+        )
+    columns, hinges = columns[kept], hinges[kept]
     n = y.size
     p = columns.shape[2]
     wx = np.einsum("jab,ibp->jiap", grid.whitener, columns, optimize=True)

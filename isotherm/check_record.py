@@ -21,6 +21,9 @@ FloatArray = NDArray[np.float64]
 
 _BLOCKS = 96
 _FEWEST_ROWS = 24
+_FEWEST_TIMES = (
+    8  # a level, a drift and a rise are told apart, with rows left to judge the noise by
+)
 # Barriers that change the area by less than this part of it stand still.
 _MOVING = 0.05
 
@@ -113,6 +116,12 @@ def bare_record(table: Table, sheet: RunSheet) -> BareRecord:
 
     times = means(time - time[0])
     fresh = np.concatenate([[True], np.diff(times) > 0])
+    if int(fresh.sum()) < _FEWEST_TIMES:
+        raise UpstrokeError(
+            f"the rows have only {int(fresh.sum())} different times",
+            where=table.source.path,
+            remedy="check which column is the time, or export it with more digits",
+        )
     areas = None if area is None else means(area)[fresh]
     if areas is not None and np.ptp(areas) < _MOVING * float(areas.max()):
         areas = None

@@ -162,6 +162,9 @@ def _mean_modulus(view: BranchView, start: float, stop: float, rise: float) -> t
     total = float(w.sum())
     centre = float((w * x).sum()) / total
     spread = float((w * (x - centre) ** 2).sum())
+    if not spread > 0:  # areas too close to tell apart
+        length = max(stop - start, 1e-12)
+        return rise / length, math.sqrt(2.0) * float(np.max(nodes.sigma)) / length
     slope = float((w * (x - centre) * y).sum()) / spread
     residual = y - float((w * y).sum()) / total - slope * (x - centre)
     scale = max(1.0, float((w * residual**2).sum()) / (count - 2))

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
+from typing import Final
 
 import numpy as np
 from numpy.typing import NDArray
@@ -14,7 +15,12 @@ from isotherm.table_roles import Assigned, describe
 from isotherm.text_find import TextRows
 from isotherm.text_rows import Numbers
 
-__all__ = ["gaps_report", "lines_report"]
+__all__ = ["gaps_report", "lines_report", "within_reach"]
+
+# No reading is larger in the fixed units (mm, cm^2, mN/m ...): it is what stands for "missing" somewhere, or
+# an overflow, and its square could not be added up. A time may count nanoseconds since 1970 (2e18).
+LARGEST: Final = 1e9
+LARGEST_TIME: Final = 1e19
 
 
 def lines_report(
@@ -85,3 +91,21 @@ def gaps_report(
                 line = int(numbers.lines[int(np.argmax(mask))])
                 cells = "1 cell is" if count == 1 else f"{count} cells are"
                 warnings.append(f"column {named}: {cells} {word} (first, line {line})")
+
+
+def within_reach(
+    values: NDArray[np.float64], one: Assigned, lines: NDArray[np.int64], warnings: list[str]
+) -> NDArray[np.float64]:
+    """Return the column, (n,) in its fixed unit, with what no instrument reads taken as missing."""
+    largest = LARGEST_TIME if one.role == "time" else LARGEST
+    beyond = np.abs(values) > largest  # missing cells compare false
+    beyond &= np.isfinite(values)
+    count = int(np.count_nonzero(beyond))
+    if not count:
+        return values
+    cells = "1 cell is" if count == 1 else f"{count} cells are"
+    warnings.append(
+        f"column {describe(one.column, one.cell)}: {cells} beyond anything an instrument reads (first, "
+        f"line {int(lines[int(np.argmax(beyond))])}: {float(values[beyond][0]):.3g}) and taken as missing"
+    )
+    return np.asarray(np.where(beyond, np.nan, values), dtype=np.float64)

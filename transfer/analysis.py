@@ -101,6 +101,12 @@ def analyse_log(
     reference = target if target is not None else longest.pressure
     known = known_compressibility(sheet, isotherm, reference)
     warnings.extend(known.warnings)
+    if nodes.time.size == 0:
+        raise UpstrokeError(
+            "no dwell has rows enough to fit the film's creep",
+            where=where,
+            remedy="record more rows while the dipper rests, or check the pressure and position columns",
+        )
     starts = np.asarray([log.time[hold.first] for hold in held.holds], dtype=np.float64)
     fit = fit_film(nodes, starts, prior=known.value, prior_u=known.u)
     inflation = variance_inflation(nodes, fit)

@@ -142,6 +142,8 @@ def _fit(
     scale = max(1.0, float(residual**2 @ weight) / freedom)
     slopes = np.asarray(solution[:-1], dtype=np.float64)
     covariance = np.asarray(inverse[:-1, :-1] * scale, dtype=np.float64)
+    if not (np.isfinite(covariance).all() and (np.diag(covariance) > 0).all()):
+        return None  # inverted by rounding alone
     if direction == "up":
         slopes, covariance = slopes[::-1], covariance[::-1, ::-1]
     return edges, slopes, covariance

@@ -175,7 +175,10 @@ def _fill(
                 continue
             t = time[rows] - turn
             own = t - t.mean()
-            pull = -t.mean() * own / float(own @ own) + 1.0 / rows.size
+            spread = float(own @ own)
+            if not spread > 0:  # times too close to draw a line through
+                continue
+            pull = -t.mean() * own / spread + 1.0 / rows.size
             parts.append(
                 (
                     float(pull @ np.log(area[rows])),

@@ -229,7 +229,8 @@ def _settle(
         near = slice(max(0, first - 2), last + 3)
         rising = position[min(move.last, position.size - 1)] > position[move.first]
         rows = position[near]
-        row = max(0, first - 2) + int(rows.argmax() if rising else rows.argmin())
+        if rows.size:
+            row = max(0, first - 2) + int(rows.argmax() if rising else rows.argmin())
     span = position[move.first : move.last + 1]
     speed = (
         abs(float(span[-1] - span[0])) / max(move.end - move.start, interval) if span.size else 0
