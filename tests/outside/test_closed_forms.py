@@ -93,6 +93,7 @@ def test_constants_are_those_of_scipy() -> None:
     assert constants.Avogadro == AVOGADRO
     assert constants.Boltzmann == BOLTZMANN
     assert constants.elementary_charge == ELEMENTARY_CHARGE
-    assert pytest.approx(constants.R, rel=1e-12) == GAS_CONSTANT
+    # tables before 2022 print R with ten digits
+    assert pytest.approx(constants.R, rel=1e-9) == GAS_CONSTANT
     assert pytest.approx(constants.value("Faraday constant"), rel=1e-9) == FARADAY
     assert pytest.approx(constants.epsilon_0, rel=1e-9) == EPSILON_0
