@@ -55,6 +55,7 @@ _register(
     "A film on a substrate",
     target="Dipping pressure, what binds it, and the film budget.",
     transfer="Transfer ratio of every stroke, deposition type, layers.",
+    audit="The build against its design: accepted or rejected, and why.",
 )
 _register(
     "Series of runs",

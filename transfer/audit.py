@@ -81,6 +81,7 @@ class AuditResult:
         findings lists what fails and what is undecided; checks lists everything judged.
         """
         out = self.result.to_json()
+        out["schema"] = "upstroke.audit/1"
         out["verdict"] = self.verdict
         out["undecided"] = len(self.undecided)
         out["findings"] = [f.to_json() for f in (*self.failed, *self.undecided)]
