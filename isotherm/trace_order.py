@@ -12,6 +12,8 @@ __all__ = ["TimeOrder", "time_order"]
 
 # A recorder restarts a few times in one file at most; more backward steps than this are rows out of order.
 _MOST_RESTARTS: Final = 20
+# A clock set back begins within this part of the stretch before it.
+_NEAR_START: Final = 0.1
 
 
 @dataclass(frozen=True)
@@ -56,8 +58,11 @@ def time_order(time: NDArray[np.float64]) -> TimeOrder:
 
 
 def _restarts(time: NDArray[np.float64], starts: NDArray[np.intp], ends: NDArray[np.intp]) -> bool:
-    """Whether the stretches between backward steps overlap in time: sorting would shuffle them together."""
+    """Whether every stretch after a backward step begins about where the first did: its clock was set back.
+
+    Sorting would shuffle such stretches together. A row out of order goes back a little only.
+    """
     if np.any(ends - starts < 3):
         return False
-    order = np.argsort(time[starts], kind="stable")
-    return bool(np.any(time[starts[order][1:]] < time[ends[order][:-1]]))
+    first, spans = time[starts[0]], time[ends] - time[starts]
+    return bool(np.all(np.abs(time[starts[1:]] - first) < _NEAR_START * spans[:-1]))

@@ -293,3 +293,29 @@ def test_barriers_beside_tension(tmp_path: Path) -> None:
             [300.0 - _RUN.area, 72.0 - _RUN.pressure],
             _FILM + _WIDTH + '[subphase]\ntension = "72 mN/m"',
         )
+
+
+def test_many_steps_back_are_rows_out_of_order_not_recordings(tmp_path: Path) -> None:
+    # pairs of rows exchanged all along: far more steps back than a recorder starts again
+    order = np.arange(320).reshape(-1, 2)[:, ::-1].ravel()
+    time, area = np.arange(320) * 1.0, np.linspace(1.0, 0.3, 320)
+    trace = _trace(
+        tmp_path,
+        "Time (s),Area per molecule (nm^2),Pressure (mN/m)",
+        [time[order], area[order], (40.0 - 40.0 * area)[order]],
+    )
+    assert trace.time is not None
+    assert trace.time.tolist() == time.tolist()
+    assert trace.area.tolist() == area.tolist()
+    assert any("160 rows were out of order" in w for w in trace.warnings)
+
+
+def test_one_row_out_of_order_is_sorted(tmp_path: Path) -> None:
+    order = np.r_[0:10, 11, 10, 12:40]
+    trace = _trace(
+        tmp_path,
+        "Time (s),Area per molecule (nm^2),Pressure (mN/m)",
+        [_RUN.time[order], _RUN.molecular_area[order], _RUN.pressure[order]],
+    )
+    assert trace.area.tolist() == _RUN.molecular_area.tolist()
+    assert any("1 row was out of order" in w for w in trace.warnings)

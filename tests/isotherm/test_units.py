@@ -156,7 +156,9 @@ def test_any_unit_may_be_the_target() -> None:
 
 def test_an_area_per_molecule_is_one_even_in_large_units() -> None:
     assert parse_unit("cm^2/molecule")[0].per_molecule
+    assert parse_unit("cm^2 molecule^-1")[0].per_molecule
     assert not parse_unit("cm^2")[0].per_molecule
+    assert not parse_unit("cm^2 molecule")[0].per_molecule
     assert dimension_fits("m^2/mol", "molecular_area")
     assert not dimension_fits("m^2/mol", "area")
 
