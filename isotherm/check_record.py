@@ -123,7 +123,7 @@ def bare_record(table: Table, sheet: RunSheet) -> BareRecord:
             remedy="check which column is the time, or export it with more digits",
         )
     areas = None if area is None else means(area)[fresh]
-    if areas is not None and np.ptp(areas) < _MOVING * float(areas.max()):
+    if areas is not None and np.ptp(areas) <= _MOVING * float(np.abs(areas).max()):
         areas = None
     return BareRecord(
         path=table.source.path,
