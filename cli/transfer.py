@@ -20,6 +20,7 @@ from cli.options import (
 )
 
 if TYPE_CHECKING:
+    from transfer.expected_stack import ExpectedStack
     from transfer.result import TransferResult
 
 __all__ = ["app"]
@@ -55,6 +56,7 @@ def transfer(
     from cli.inputs import load_sheet
     from cli.outputs import OutputChoice, Renderers, plan_outputs
     from transfer.analysis import analyse_log
+    from transfer.expected_stack import expected_stack
     from transfer.log import read_log
 
     inputs = [path for path in (log, sheet, isotherm, isotherm_sheet) if path is not None]
@@ -62,38 +64,48 @@ def transfer(
     run_sheet = load_sheet(sheet, column)
     film = film_isotherm(isotherm, isotherm_sheet, run_sheet)
     result = analyse_log(read_log(log, run_sheet), run_sheet, isotherm=film)
+    shows = expected_stack(result, run_sheet, isotherm=film)
     settings = film_settings("transfer", sheet, column, film, isotherm_sheet)
     plan.deliver(
         Renderers(
-            text=lambda: _text(result),
-            json=lambda: _json(result, settings),
+            text=lambda: _text(result, shows),
+            json=lambda: _json(result, shows, settings),
             csv=lambda: _csv(result),
             figure=lambda suffix: _figure(result, suffix),
-            report=lambda: _report(result, settings),
+            report=lambda: _report(result, shows, settings),
         )
     )
 
 
-def _text(result: TransferResult) -> str:
+def _text(result: TransferResult, shows: ExpectedStack) -> str:
+    from cli.evidence_text import expected_block
     from cli.terminal import terminal_width
     from cli.transfer_text import transfer_text
 
-    return transfer_text(result, terminal_width())
+    width = terminal_width()
+    return transfer_text(result, width, expected_block(shows, width))
 
 
-def _json(result: TransferResult, settings: dict[str, Any]) -> bytes:
-    from cli.serialise import json_bytes, with_provenance
+def _payload(
+    result: TransferResult, shows: ExpectedStack, settings: dict[str, Any]
+) -> dict[str, Any]:
+    from cli.serialise import with_provenance
 
-    return json_bytes(with_provenance(result.to_json(), settings))
+    return with_provenance({**result.to_json(), "expected": shows.to_json()}, settings)
 
 
-def _report(result: TransferResult, settings: dict[str, Any]) -> bytes:
+def _json(result: TransferResult, shows: ExpectedStack, settings: dict[str, Any]) -> bytes:
+    from cli.serialise import json_bytes
+
+    return json_bytes(_payload(result, shows, settings))
+
+
+def _report(result: TransferResult, shows: ExpectedStack, settings: dict[str, Any]) -> bytes:
     from cli.page import one_page
     from cli.page_plots import result_pictures
-    from cli.serialise import with_provenance
     from transfer.figures import transfer_figure
 
-    payload = with_provenance(result.to_json(), settings)
+    payload = _payload(result, shows, settings)
     return one_page(payload, lambda: transfer_figure(result), [result_pictures(payload)])
 
 

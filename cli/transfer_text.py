@@ -46,14 +46,15 @@ STROKES = [
 PERCENT_PER_HOUR = 100.0 * 3600.0
 
 
-def transfer_text(result: TransferResult, width: int) -> str:
-    """Return the printed form, laid out for `width` columns."""
+def transfer_text(result: TransferResult, width: int, expected: str = "") -> str:
+    """Return the printed form, laid out for `width` columns; `expected` stands below the summary."""
     blocks = [
         heading(result.title or "Transfer", width),
         source_block(result.source, width),
         paragraph(_said(result), width),
         strokes_block(result, width),
         summary_block(result, width),
+        *([expected] if expected else []),
         paragraph(
             "raw: the ratio without the corrections for loss of film and for pressure. Π: mean "
             f"pressure while the stroke ran. {COVERAGE_NOTE}",
