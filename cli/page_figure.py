@@ -123,7 +123,7 @@ def _all_series(figure: Figure) -> tuple[Series, ...]:
         for container in axes.containers:
             lines = getattr(container, "lines", None)
             if lines and lines[0] is not None:
-                named[lines[0]] = str(container.get_label())
+                named[lines[0]] = str(container.get_label() or "")
         for line in axes.get_lines():
             if line.get_transform() != axes.transData or not line.get_visible():
                 continue
