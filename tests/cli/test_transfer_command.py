@@ -76,3 +76,12 @@ def test_a_trace_that_is_no_log_is_refused_in_one_line(
     assert text.startswith("upstroke: ")
     assert text.count("\n") == 1
     assert "unexpected" not in text
+
+
+def test_what_the_stack_should_show_is_in_the_json(capsys: pytest.CaptureFixture[str]) -> None:
+    demo = Path(__file__).resolve().parents[2] / "demo"
+    log, sheet = str(demo / "build_good.txt"), str(demo / "build_good.toml")
+    assert run(["transfer", log, "--sheet", sheet, "--json", "-"]) == 0
+    expected = json.loads(capsys.readouterr().out)["expected"]
+    assert expected["designed"]["layers"]["value"] == 20
+    assert expected["built"]["layers"]["value"] == pytest.approx(19.84, abs=0.3)
