@@ -120,8 +120,8 @@ def _header(text: TextRows, warnings: list[str]) -> Header:
     block = text.block
     header = find_header(text.lines, block)
     numbers = [c for c, kind in enumerate(block.kinds) if kind == "N"]
-    known = [header.cells[c] for c in numbers if header.cells and header.cells[c].roles]
-    if known and all(cell.unit or cell.clock for cell in known):
+    told = header.cells and all(header.cells[c].roles and header.cells[c].unit for c in numbers)
+    if told:
         return header
     cells = columns_from_text(text.lines[max(0, block.first - 20) : block.first], len(numbers))
     if cells:

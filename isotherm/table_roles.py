@@ -11,7 +11,7 @@ from isotherm.errors import UpstrokeError
 from isotherm.sheet import ColumnHint
 from isotherm.sheet_schema import ROLES
 from isotherm.table_cell import HeaderCell
-from isotherm.table_words import ROLE_DIMENSION, roles_of
+from isotherm.table_words import ROLE_DIMENSION, is_derived, roles_of
 from isotherm.units import dimension_fits, is_unit
 
 __all__ = ["Assigned", "assign_roles", "columns_from_text", "describe", "wanted_roles"]
@@ -257,6 +257,8 @@ def columns_from_text(lines: Sequence[str], columns: int) -> list[HeaderCell]:
             if not is_unit(unit):
                 continue
             words = re.split(r"[,;.]", line[: match.start()][-80:])[-1].split()
+            if is_derived(" ".join(words[-4:])):
+                continue
             for count in range(1, min(4, len(words)) + 1):
                 name = " ".join(words[-count:]).lstrip("#%;*!> ")
                 if len(roles_of(name, unit)) == 1:

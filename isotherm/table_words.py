@@ -9,7 +9,7 @@ from typing import Final
 
 from isotherm.units import dimension_fits, parse_unit
 
-__all__ = ["ROLE_DIMENSION", "plain_words", "roles_of"]
+__all__ = ["ROLE_DIMENSION", "is_derived", "plain_words", "roles_of"]
 
 ROLE_DIMENSION: Final[dict[str, str]] = {
     "time": "time",
@@ -126,6 +126,11 @@ def plain_words(name: str) -> str:
     return " ".join(re.findall(r"[^\W\d_]+", name))
 
 
+def is_derived(name: str) -> bool:
+    """Whether a name is of something about a quantity (its target, rate, scatter), not of its readings."""
+    return not _EXCLUDING.isdisjoint(plain_words(name).split())
+
+
 def roles_of(name: str, unit: str | None) -> tuple[str, ...]:
     """Roles a column of this name may play; only those its unit can express when it has one that is known.
 
@@ -153,7 +158,7 @@ def _by_name(name: str) -> tuple[str, ...]:
     if words in _SYMBOLS:
         return _SYMBOLS[words]
     tokens = words.split()
-    if not tokens or _EXCLUDING.intersection(tokens):
+    if not tokens or is_derived(name):
         return ()
     if "delta" in tokens and tokens[-1:] != ["v"]:
         return ()  # a change of something, of which only the potential is recorded as one
