@@ -108,9 +108,9 @@ def _solve(
     freedom = np.maximum(grid.effective - p, 3.0)
     variance = rss / max(n - p, 1) * (freedom / (freedom - 2.0))[:, None]
     flat = log_weight.ravel()
-    kept = np.flatnonzero(flat > flat.max() - _WORTH / 2.0)
-    weight = np.exp(flat[kept] - flat.max())
-    row, column = np.unravel_index(kept, deviance.shape)
+    worth = np.flatnonzero(flat > flat.max() - _WORTH / 2.0)
+    weight = np.exp(flat[worth] - flat.max())
+    row, column = np.unravel_index(worth, deviance.shape)
     return _Described(
         score=0.0,
         parameters=parameters + NOISE_PARAMETERS,
