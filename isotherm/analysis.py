@@ -11,7 +11,7 @@ from numpy.typing import NDArray
 from isotherm import features
 from isotherm.branch_view import BranchView
 from isotherm.branches import BranchRows, find_branches, steady_area
-from isotherm.condense import Nodes, condense, despike, row_noise
+from isotherm.condense import DENSE, Nodes, condense, despike, row_noise
 from isotherm.errors import UpstrokeError
 from isotherm.knee_model import KneeModel
 from isotherm.knees import find_knees, refine_knees
@@ -19,6 +19,7 @@ from isotherm.modulus import LocalFit, local_regression
 from isotherm.molecular_area import NM2_PER_CM2
 from isotherm.phases import Reading, read_stretches
 from isotherm.result import Branch, Curve, IsothermResult
+from isotherm.sparse_fit import read_sparse
 from isotherm.tangent import limiting_area
 from isotherm.trace import Trace
 from isotherm.zero import Zero, find_zero
@@ -116,7 +117,10 @@ def _branch(trace: Trace, rows: BranchRows, at: tuple[float, ...]) -> Branch:
     if rows.paused:
         warnings.append(f"{rows.paused} rows left out while the barrier stood still")
     nodes = condense(area, pressure, noise)
-    model = find_knees(nodes)
+    read = read_sparse(nodes) if nodes.x.size < DENSE else None
+    if read is not None:
+        nodes = replace(nodes, sigma=read.sigma)
+    model = find_knees(nodes, read)
     reading = read_stretches(model)
     stop = _fit_until(model, reading, nodes)
     model = refine_knees(model, nodes, area, pressure, stop)

@@ -86,6 +86,8 @@ def fit_knees(
     iterations: int = MAX_ITERATIONS,
     widest: float = WIDEST,
     converged: float = CONVERGED,
+    knot_u: FloatArray | None = None,
+    bound: float = HUBER,
 ) -> KneeModel:
     """Fit knots, widths and polynomials together (Levenberg-Marquardt, Huber weights).
 
@@ -95,6 +97,8 @@ def fit_knees(
     knots, widths : (K,) starting values. degrees : K + 1 polynomial degrees.
     iterations : at most so many. widest : largest rounding, a share of the shorter neighbour.
     converged : smallest fall of χ² worth another iteration.
+    knot_u : (K,) standard uncertainty of `knots` where they are known beforehand (few points).
+    bound : of the scaled residual, beyond which a point counts less.
 
     Returns
     -------
@@ -111,6 +115,8 @@ def fit_knees(
     floor = np.maximum(np.minimum(0.1 * spacing, 0.02 * room), 1e-9)
     widths = np.clip(widths, floor, widest * room)
     prior_mean = np.log(np.maximum(room, 1e-9)) + PRIOR_LOG_WIDTH
+    known = np.zeros(k) if knot_u is None else knot_u**-2.0
+    anchors = knots.copy()
     weight = 1.0 / sigma
     start = coordinates(x, knots, widths, 0.5 * float(x[0] + x[-1]))[0]
     start_design = design_matrix(start, degrees, scales) * weight[:, None]
@@ -127,9 +133,10 @@ def fit_knees(
         design = design_matrix(g, degrees, scales)
         return (y - design @ c) * weight, design, g, rise, broaden
 
-    def cost(residual: FloatArray, w: FloatArray) -> float:
+    def cost(residual: FloatArray, kn: FloatArray, w: FloatArray) -> float:
         prior = (np.log(w) - prior_mean) / PRIOR_LOG_WIDTH_SIGMA
-        return float(np.sum(huber * residual**2) + np.sum(prior**2))
+        moved = float(known @ (kn - anchors) ** 2)
+        return float(np.sum(huber * residual**2) + np.sum(prior**2)) + moved
 
     residual, design, g, rise, broaden = evaluate(coefficients, knots, widths)
     normal = np.eye(p + 2 * k)
@@ -137,16 +144,18 @@ def fit_knees(
     for _ in range(iterations):
         if robust:
             scale = max(1.0, 1.4826 * float(np.median(np.abs(residual))))
-            huber = np.minimum(1.0, HUBER * scale / np.maximum(np.abs(residual), 1e-12))
+            huber = np.minimum(1.0, bound * scale / np.maximum(np.abs(residual), 1e-12))
         slopes = slopes_of(g, degrees, scales, coefficients)
         jacobian, _ = jacobian_of(design, slopes, rise, broaden)
         jacobian *= weight[:, None]
         weighted = jacobian * huber[:, None]
         normal = weighted.T @ jacobian
         right = weighted.T @ residual
+        normal[p : p + k, p : p + k] += np.diag(known)
+        right[p : p + k] -= known * (knots - anchors)
         normal[p + k :, p + k :] += np.eye(k) / PRIOR_LOG_WIDTH_SIGMA**2
         right[p + k :] -= (np.log(widths) - prior_mean) / PRIOR_LOG_WIDTH_SIGMA**2
-        now = cost(residual, widths)
+        now = cost(residual, knots, widths)
         accepted = False
         # unit diagonal: the parameters differ by many orders of magnitude
         unit = 1.0 / np.sqrt(np.maximum(np.diag(normal), 1e-300))
@@ -162,7 +171,7 @@ def fit_knees(
             if np.all(np.diff(edges) > 0.02 * np.minimum(gaps, 1.0)):
                 trial = coefficients + step[:p]
                 r, d, gr, ri, br = evaluate(trial, new_knots, new_widths)
-                if cost(r, new_widths) <= now:
+                if cost(r, new_knots, new_widths) <= now:
                     accepted = True
                     break
             damping *= 8.0
@@ -171,7 +180,7 @@ def fit_knees(
                 break
             robust, damping = True, 1e-3
             continue
-        gain = now - cost(r, new_widths)
+        gain = now - cost(r, new_knots, new_widths)
         coefficients, knots, widths = trial, new_knots, new_widths
         residual, design, g, rise, broaden = r, d, gr, ri, br
         damping = max(damping * 0.2, 1e-9)
@@ -198,6 +207,7 @@ def fit_knees(
         float(x[0]),
         float(x[-1]),
         1.0 / PRIOR_LOG_WIDTH_SIGMA**2,
+        knot_precision=None if knot_u is None else known,
     )
     return model
 

@@ -39,6 +39,8 @@ class KneeModel:
     rss : weighted sum of squares; dof : n - parameters; inflation : factor put on the covariance.
     start, stop : first and last x of the fit. prior_precision : of the ln widths.
     knot_doubt : (K,) standard uncertainty of each knee's x beyond the covariance, as a convention.
+    roles : what each knee is, where that was told before the fit (few points); else None.
+    knot_precision : (K,) precision of what was known of the knots' x beforehand; else None.
     """
 
     knots: FloatArray
@@ -54,6 +56,8 @@ class KneeModel:
     stop: float
     prior_precision: float = 0.0
     knot_doubt: FloatArray | None = None
+    roles: tuple[str, ...] | None = None
+    knot_precision: FloatArray | None = None
 
     def pressure(self, x: FloatArray) -> FloatArray:
         """Fitted pressure at (n,) x, mN/m."""

@@ -23,6 +23,7 @@ FloatArray = NDArray[np.float64]
 SHAPE_SIGMA: Final = 0.5  # of the mixture between softplus (0) and the other roundings (about ±1)
 # of the next polynomial term, as a share of the pressure that the stretch covers
 DEGREE_SIGMA: Final = 0.1
+LEVEL: Final = 5.0  # mN/m; modulus that a stretch taken for level may have
 # A rounded knee's place is a convention: extended how far, from where? Our choice, a standard uncertainty
 # of this share of the rounding's width, on its area alone (the pressure there carries its own).
 WIDTH_SHARE: Final = 0.25
@@ -30,13 +31,19 @@ FEWEST: Final = 6  # points from which a stretch has a scatter of its own
 
 
 def with_model_doubt(
-    model: KneeModel, x: FloatArray, y: FloatArray, sigma: FloatArray
+    model: KneeModel,
+    x: FloatArray,
+    y: FloatArray,
+    sigma: FloatArray,
+    *,
+    last_bend: float | None = None,
 ) -> KneeModel:
     """The model with its covariance widened by nuisance parameters.
 
     Parameters
     ----------
     x, y, sigma : (n,) the points `model` was fitted to.
+    last_bend : prior of the last stretch's next polynomial term, where it is not `DEGREE_SIGMA`.
     """
     terms = model_terms(model, x)
     residual = y - terms.design @ model.coefficients
@@ -54,15 +61,21 @@ def with_model_doubt(
     for j, degree in enumerate(model.degrees):
         along = terms.g[j] / max(float(lengths[j]), 1e-12)
         # zero at both ends of the stretch: it bends the branch and leaves its meeting points alone
-        extra.append(along ** (degree + 1) - along**degree)
+        extra.append(along ** (degree + 1) - along**degree if degree else along)
     cover = [max(float(np.ptp(terms.parts[j])), 1e-6) for j in range(k + 1)]
     jacobian = np.concatenate([terms.jacobian, shapes.T, np.stack(extra, axis=1)], axis=1)
     jacobian *= root[:, None]
     normal = jacobian.T @ jacobian
     prior = np.zeros(normal.shape[0])
+    if model.knot_precision is not None:
+        prior[p : p + k] = model.knot_precision
     prior[p + k : p + 2 * k] = model.prior_precision
     prior[p + 2 * k : p + 3 * k] = 1.0 / SHAPE_SIGMA**2
-    prior[p + 3 * k :] = 1.0 / (DEGREE_SIGMA * np.array(cover)) ** 2
+    share = np.full(k + 1, DEGREE_SIGMA)
+    if last_bend is not None:
+        share[-1] = last_bend
+    extent = np.where(np.array(model.degrees) > 0, share * np.array(cover), LEVEL * lengths)
+    prior[p + 3 * k :] = extent**-2.0
     normal[np.diag_indices_from(normal)] += prior
     unit = 1.0 / np.sqrt(np.maximum(np.diag(normal), 1e-300))
     inverse = np.linalg.pinv(normal * unit[:, None] * unit, rcond=1e-12, hermitian=True)

@@ -14,7 +14,7 @@ from isotherm.knee_fit import INDIFFERENT, WIDEST, choose_degrees, fit_knees
 from isotherm.knee_model import KneeModel
 from isotherm.knee_search import search
 from isotherm.knee_uncertainty import with_model_doubt
-from isotherm.sparse import sparse_candidates, sparse_degrees
+from isotherm.sparse_fit import SparseRead, read_sparse, refine_sparse, sparse_model
 
 __all__ = ["find_knees", "refine_knees"]
 
@@ -23,7 +23,6 @@ FloatArray = NDArray[np.float64]
 HIGHEST_DEGREE: Final = 5  # of a stretch; a fluid branch from lift-off to collapse needs about 4
 MODEST_DEGREE: Final = 3  # of the first fit
 CLOSEST: Final = 2e-3  # share of the branch's range of ln A that two knees are apart at least
-SPARSE_WIDEST: Final = 0.12  # few points: a wide rounding and a curved stretch look the same
 COARSE: Final = 10  # iterations of a fit that will be refined
 ROUNDS: Final = 2  # of enriching shapes
 NODES_PER_DEGREE: Final = 8  # nodes a stretch must have for each degree
@@ -32,18 +31,21 @@ ROWS_PER_KNEE: Final = 120  # rows, or means of neighbouring rows, a knee is ref
 NEIGHBOURHOOD: Final = 4  # nodes each side of a knee that are replaced by rows
 
 
-def find_knees(nodes: Nodes) -> KneeModel:
+def find_knees(nodes: Nodes, read: SparseRead | None = None) -> KneeModel:
     """Find and fit the knees of one branch on its nodes.
+
+    Parameters
+    ----------
+    read : the nodes as a figure, where they are few and were read already.
 
     Returns
     -------
     KneeModel
         With no knots where the branch is one smooth curve.
     """
+    if nodes.x.size < DENSE:
+        return sparse_model(nodes, read_sparse(nodes) if read is None else read)
     x, y, sigma = nodes.x, nodes.pressure, nodes.sigma
-    if x.size < DENSE:
-        candidates = _in_order(sparse_candidates(x, y, sigma), x)
-        return _fit(x, y, sigma, candidates, sparse_degrees(candidates, x))
     candidates = _in_order(search(x, y, sigma), x)
     model = _fit(x, y, sigma, candidates)
     scatter = sigma * np.sqrt(max(model.inflation, 1.0))
@@ -78,15 +80,13 @@ def _fit(
     y: FloatArray,
     sigma: FloatArray,
     candidates: list[Candidate],
-    highest: tuple[int, ...] | None = None,
 ) -> KneeModel:
     knots = np.array([c.x for c in candidates])
     widths = np.array([c.width for c in candidates])
     edges = np.concatenate([[x[0] - 1.0], knots, [x[-1] + 1.0]])
     inside = np.diff(np.searchsorted(x, edges))
-    if highest is None:
-        highest = tuple(int(np.clip(c // NODES_PER_DEGREE, 1, HIGHEST_DEGREE)) for c in inside)
-    widest = WIDEST if x.size >= DENSE else SPARSE_WIDEST
+    highest = tuple(int(np.clip(c // NODES_PER_DEGREE, 1, HIGHEST_DEGREE)) for c in inside)
+    widest = WIDEST
     # modest shapes first: a rich polynomial would explain a rounding that the knee has yet to fit
     modest = tuple(min(h, MODEST_DEGREE) for h in highest)
     degrees = choose_degrees(x, y, sigma, knots, widths, modest)
@@ -140,6 +140,8 @@ def refine_knees(
     ----------
     area, pressure : (n,) rows the nodes were made of, in their order, nm^2 and mN/m.
     """
+    if nodes.x.size < DENSE:
+        return refine_sparse(model, nodes, stop)
     keep = nodes.x <= stop
     last = nodes.x[keep][-min(3, int(keep.sum()))]
     knots = model.knots[model.knots < last]
@@ -147,9 +149,8 @@ def refine_knees(
     if not np.all(nodes.count == 1):
         x, y, sigma = _with_rows(nodes, keep, knots, model.widths, area, pressure)
     k = knots.size
-    widest = WIDEST if x.size >= DENSE else SPARSE_WIDEST
     degrees = model.degrees[: k + 1]
-    fitted = fit_knees(x, y, sigma, knots, model.widths[:k], degrees, widest=widest)
+    fitted = fit_knees(x, y, sigma, knots, model.widths[:k], degrees)
     return with_model_doubt(fitted, x, y, sigma)
 
 

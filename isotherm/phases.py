@@ -31,6 +31,11 @@ BASELINE_RISE: Final = (
 BASELINE_SHARE: Final = 0.02
 SHARP: Final = 1.5  # a kink's rounding (4 widths) may take this share of the shorter neighbour
 
+OPEN_NOTE: Final = (
+    "the trace stops on a plateau that follows a liquid-expanded branch: called a "
+    "coexistence; compress further to tell it from a collapse"
+)
+
 
 @dataclass(frozen=True)
 class Stretch:
@@ -91,6 +96,8 @@ def read_stretches(model: KneeModel) -> Reading:
     if n == 1:
         baseline = span < BASELINE_RISE
         return Reading(stretches, baseline, None, (), (), None, False, 0)
+    if model.roles is not None:
+        return _told(stretches, model.roles)
     first = 1 if baseline else 0
     last = _last_rising(stretches, first)
     notes: list[str] = []
@@ -101,10 +108,7 @@ def read_stretches(model: KneeModel) -> Reading:
         fluid = stretches[last].last < EXPANDED_BELOW and not falls
         if fluid and last + 2 == n:
             open_coexistence, collapse = collapse, None
-            notes.append(
-                "the trace stops on a plateau that follows a liquid-expanded branch: called a "
-                "coexistence; compress further to tell it from a collapse"
-            )
+            notes.append(OPEN_NOTE)
     else:
         falls = False
     coexistences: list[tuple[int, int | None]] = []
@@ -136,6 +140,30 @@ def read_stretches(model: KneeModel) -> Reading:
         falls if collapse is not None else False,
         last,
         tuple(notes),
+    )
+
+
+def _told(stretches: tuple[Stretch, ...], roles: tuple[str, ...]) -> Reading:
+    """The reading of knees whose meaning was told before the fit."""
+    coexistences: list[tuple[int, int | None]] = []
+    for k, role in enumerate(roles):
+        if role == "onset":
+            closed = k + 1 < len(roles) and roles[k + 1] == "end"
+            coexistences.append((k, k + 1 if closed else None))
+    collapse = roles.index("collapse") if "collapse" in roles else None
+    baseline = roles[:1] == ("lift-off",)
+    open_end = bool(coexistences) and coexistences[-1][1] is None
+    last = len(roles) if collapse is None else collapse
+    return Reading(
+        stretches,
+        baseline,
+        0 if baseline else None,
+        tuple(coexistences),
+        tuple(k for k, role in enumerate(roles) if role == "kink"),
+        collapse,
+        collapse is not None and stretches[collapse + 1].modulus < 0,
+        last - 1 if open_end and collapse is None else last,
+        (OPEN_NOTE,) if open_end else (),
     )
 
 

@@ -1,206 +1,335 @@
-"""Knees of a branch told by few points, as read off a figure: straight pieces first, meaning second.
+"""Knees of a branch told by few points, as read off a figure: convex pieces first, meaning second.
 
 With some tens of points a smooth rival of six parameters explains anything, so the evidence used for
-dense runs has no power. Here the branch is cut into straight pieces (exact partition, cost per piece),
-and only what the moduli of these pieces say plainly becomes a knee: the flat start, a dip between two
-stiffer branches, a large step up between two straight branches, a yield at the end.
+dense runs has no power. Here the branch is cut into convex pieces (`sparse_pieces`), and only what the
+slopes of these pieces say plainly becomes a knee: the flat start, a dip between two stiffer branches, a
+large step up between two branches, a yield at the end. What each knee means is decided here too.
 """
 
 from __future__ import annotations
 
-import itertools
 from dataclasses import dataclass
 from typing import Final
 
 import numpy as np
 from numpy.typing import NDArray
 
-from isotherm.knee_evidence import Candidate
-from isotherm.partition import best_subset
+from isotherm.sparse_pieces import Figure, Part
 
-__all__ = ["Piece", "pieces_of", "sparse_candidates", "sparse_degrees"]
+__all__ = ["SparseKnee", "sparse_degrees", "sparse_knees"]
 
 FloatArray = NDArray[np.float64]
 
-SHAPE: Final = 0.004  # share of the pressure range that a straight piece may miss a curved film by
-PENALTY: Final = 2.0  # of a piece, in ln n
-FEWEST: Final = 2  # points of a piece; neighbours share none
-FLAT: Final = 2.0  # mN/m; a start softer than this is a baseline
-DIP: Final = 0.7  # a dip against both shoulders
-SHOULDER: Final = 0.4  # right shoulder of a dip against the left one
-STEP: Final = 1.5  # a kink between two straight branches
-STRAIGHT: Final = 3  # points each branch beside a kink needs
-EVIDENCE: Final = (
-    10.0  # by which two lines must fit better (in χ²) than one cubic of as many parameters
+FLAT: Final = 0.02  # share of the pressure axis; a start that rises by less is a baseline
+FLAT_MODULUS: Final = 8.0  # mN/m; and it is softer than this
+FOOT: Final = 0.15  # or than this share of what follows: the rounded foot of a sharp rise
+SOFTER: Final = 0.7  # a plateau or a collapse has less than this share of the slope before it
+STIFFER: Final = 1.5  # a kink between two branches
+SHOULDER: Final = 0.4  # right shoulder of a dip against the left one, moduli
+YIELD: Final = 0.4  # softer than this share of the stiffest, and staying so: collapsed
+SIGMAS: Final = 2.0
+SHORT: Final = 0.012  # share of the axes by which points must leave the extended branch, to be seen
+SHORT_SIGMAS: Final = 4.0
+LONE: Final = (
+    8.0  # a lone point must leave it by so many times what the branch doubles back on itself
 )
 FALL: Final = 1.0  # mN/m by which a pressure must fall to tell a collapse by itself
-FALL_SIGMAS: Final = 5.0
-CURVED: Final = 5  # points
-YIELD: Final = (
-    0.4  # a film that softens to this share of its stiffest and stays there has collapsed
+REST: Final = (
+    0.08  # share of the pressure axis; two points after a plateau rise by more, or are misread
 )
-BEYOND: Final = 2  # points that must fall short of the rising line, extended, to tell a collapse
-SHORT_SIGMAS: Final = 4.0  # by this many u
-SIGMAS: Final = 2.0
+EVIDENCE: Final = 10.0  # χ² by which two branches must beat one smooth curve
+EXPANDED: Final = 50.0  # mN/m, top of liquid-expanded (customary ranges)
+CONDENSED: Final = 80.0  # mN/m; what follows an expanded film above this, in one step, is condensed
+GASEOUS: Final = 12.5  # mN/m
+MOST_HIDING: Final = 30  # points of a piece in which a plateau may hide; more of them would show it
 
 
 @dataclass(frozen=True)
-class Piece:
-    """A straight piece: nodes first to last - 1, line p = level + modulus (x - x0), u of the modulus."""
+class SparseKnee:
+    """A knee: role is lift-off, onset, end, kink or collapse; x and modulus about it; spread of x."""
 
-    first: int
-    last: int
-    x0: float
-    level: float
-    modulus: float
-    u: float
-
-    def at(self, x: float) -> float:
-        """Pressure of the line at x, mN/m."""
-        return self.level + self.modulus * (x - self.x0)
+    role: str
+    x: float
+    spread: float
 
 
-def pieces_of(x: FloatArray, y: FloatArray, sigma: FloatArray) -> list[Piece]:
-    """Cut (n,) points into straight pieces: exact optimum of residuals plus a penalty a piece."""
-    n = x.size
-    spread = np.hypot(sigma, SHAPE * float(np.ptp(y)))
-    edges = np.arange(n + 1)
-    costs = np.zeros((n + 1, n + 1))
-    w = 1.0 / spread**2
-    sums = [
-        np.concatenate([[0.0], np.cumsum(v)])
-        for v in (w, w * x, w * y, w * x * x, w * x * y, w * y * y)
-    ]
-    i, j = np.triu_indices(n + 1, FEWEST)
-    s, sx, sy, sxx, sxy, syy = (c[j] - c[i] for c in sums)
-    cxx = sxx - sx * sx / s
-    cxy = sxy - sx * sy / s
-    cyy = syy - sy * sy / s
-    costs[i, j] = np.maximum(cyy - np.where(cxx > 0, cxy**2 / np.maximum(cxx, 1e-300), 0.0), 0.0)
-    inner = best_subset(costs, edges, PENALTY * float(np.log(n)), FEWEST)
-    stops = [0, *inner, n]
-    out = []
-    for a, b in itertools.pairwise(stops):
-        wx, px, py = w[a:b], x[a:b], y[a:b]
-        total = float(wx.sum())
-        x0, level = float((wx * px).sum()) / total, float((wx * py).sum()) / total
-        spread_x = float((wx * (px - x0) ** 2).sum())
-        modulus = float((wx * (px - x0) * py).sum()) / max(spread_x, 1e-300)
-        out.append(Piece(a, b, x0, level, modulus, 1.0 / np.sqrt(max(spread_x, 1e-300))))
-    return out
+@dataclass(frozen=True)
+class _Curve:
+    """Pieces with the figure they lie in."""
+
+    figure: Figure
+    parts: list[Part]
+
+    def area(self, u: float) -> float:
+        """nm^2 at u."""
+        return self.figure.start - u * self.figure.width
+
+    def modulus(self, slope: float, u: float) -> float:
+        """Compression modulus, mN/m, of a slope in the figure at u."""
+        return slope * self.area(u) * self.figure.height / self.figure.width
 
 
-def sparse_candidates(x: FloatArray, y: FloatArray, sigma: FloatArray) -> list[Candidate]:
-    """Knees of (n,) few points, in order of x."""
-    pieces = pieces_of(x, y, sigma)
-    first = 1 if len(pieces) > 1 and pieces[0].modulus < FLAT and _flat(pieces[0], x, y) else 0
-    last = _last_rising(pieces, first)
-    knees: list[Candidate] = []
+def sparse_knees(figure: Figure, parts: list[Part]) -> list[SparseKnee]:
+    """Knees of few points, in the order of compression."""
+    curve = _Curve(figure, _absorbed(figure, parts))
+    parts = curve.parts
+    knees: list[SparseKnee] = []
+    first = 0
+    for k in range(len(parts) - 1):
+        if _is_flat(curve, 0, k):
+            first = k + 1
     if first:
-        knees.append(_meeting(pieces[0], pieces[1], x))
+        knees.append(_knee("lift-off", curve, first - 1, first))
+    last = _last_rising(curve, first)
     j = first
     while j < last:
-        end = _dip_end(pieces, j, last)
+        end, here = _dip_end(curve, j, last), SOFTER * parts[j].end
         if end is not None:
-            softest = min(range(j + 1, end), key=lambda k: pieces[k].modulus)
-            knees.append(_meeting(pieces[j], pieces[softest], x))
-            knees.append(_meeting(pieces[softest], pieces[end], x))
+            softest = max(range(j + 1, end), key=lambda k: parts[k].half * (parts[k].chord < here))
+            knees.append(_knee("onset", curve, j, j + 1 if end - j == 2 else softest))
+            knees.append(_knee("end", curve, softest, end))
             j = end
             continue
-        here, after = pieces[j], pieces[j + 1]
-        sure = after.modulus - SIGMAS * after.u > STEP * (here.modulus + SIGMAS * here.u)
-        if sure and here.modulus > FLAT and _beats_smooth(here, after, x, y, sigma):
-            knees.append(_meeting(here, after, x))
+        role = _step_up(curve, j)
+        if role == "kink":
+            knees.append(_knee("kink", curve, j, j + 1))
+        elif role == "transition":
+            onset = _hidden_onset(curve, j)
+            if onset is not None:
+                knees.append(onset)
+                knees.append(_knee("end", curve, j, j + 1))
+            elif min(parts[j].count, parts[j + 1].count) >= 3:
+                knees.append(_knee("kink", curve, j, j + 1))
         j += 1
-    if last + 1 < len(pieces):
-        knee = _meeting(pieces[last], pieces[last + 1], x)
-        beyond = x > knee.x
-        rising = pieces[last]
-        spread = np.hypot(sigma, SHAPE * float(np.ptp(y)))
-        doubt = np.hypot(spread, rising.u * (x - rising.x0))
-        short = rising.level + rising.modulus * (x - rising.x0) - y > SHORT_SIGMAS * doubt
-        fall = float(np.max(y[~beyond], initial=-np.inf) - np.min(y[beyond], initial=np.inf))
-        fallen = fall > max(FALL, FALL_SIGMAS * float(np.max(sigma)))
-        if fallen or int((short & beyond).sum()) >= BEYOND:
+    if last + 1 < len(parts):
+        knee = _collapse(curve, last)
+        if knee is not None:
             knees.append(knee)
-    return sorted(knees, key=lambda c: c.x)
+    return knees
 
 
-def _beats_smooth(
-    here: Piece, after: Piece, x: FloatArray, y: FloatArray, sigma: FloatArray
-) -> bool:
-    """Whether two lines describe the points of two neighbouring pieces better than a cubic does."""
-    if min(here.last - here.first, after.last - after.first) < STRAIGHT:
-        return False
-    part = slice(here.first, after.last)
-    px, py, s = x[part], y[part], np.hypot(sigma[part], SHAPE * float(np.ptp(y)))
-    t = (px - px.mean()) / max(float(np.ptp(px)), 1e-12)
-    powers = np.vander(t, 4) / s[:, None]
-    smooth = py / s - powers @ np.linalg.lstsq(powers, py / s, rcond=None)[0]
-    first = np.arange(here.first, after.last) < here.last
-    line = np.where(
-        first,
-        here.level + here.modulus * (px - here.x0),
-        after.level + after.modulus * (px - after.x0),
-    )
-    bent = (py - line) / s
-    return float(smooth @ smooth - bent @ bent) > EVIDENCE
+def sparse_degrees(knees: list[SparseKnee], x: FloatArray, y: FloatArray) -> tuple[int, ...]:
+    """Highest polynomial degree of each stretch: none for a lone point, a line for few points.
 
-
-def sparse_degrees(candidates: list[Candidate], x: FloatArray) -> tuple[int, ...]:
-    """Highest polynomial degree of each stretch: curved only where a fluid branch may be.
-
-    A stretch between a fall and a rise of the modulus (a plateau), and what follows a collapse, is
-    straight; so is a stretch of fewer than `CURVED` points.
+    Baselines, plateaus and what follows a collapse at constant pressure are lines as well.
     """
-    steps = [c.after - c.before for c in candidates]
-    counts = np.diff(np.searchsorted(x, [x[0], *(c.x for c in candidates), x[-1] + 1.0]))
+    peak = int(np.argmax(y))
+    falls = float(y[peak] - np.min(y[peak:])) > FALL
+    edges = np.concatenate([[x[0] - 1.0], [k.x for k in knees], [x[-1] + 1.0]])
+    counts = np.diff(np.searchsorted(x, edges))
     out = []
     for j, count in enumerate(counts):
-        after_fall = j > 0 and steps[j - 1] < 0
-        flat_start = j == 0 and bool(steps) and candidates[0].before < FLAT
-        out.append(1 if after_fall or flat_start or count < CURVED else 2)
+        before = knees[j - 1].role if j else ""
+        straight = (
+            before == "onset"
+            or (before == "collapse" and not falls)
+            or (j == 0 and bool(knees) and knees[0].role == "lift-off")
+        )
+        share = 1 if before == "collapse" else 3  # a collapsing film falls ever less
+        highest = 1 if straight else int(np.clip((count - 1) // share, 1, 4))
+        lone = before == "collapse" and count < 2 and not falls
+        out.append(0 if lone else highest)
     return tuple(out)
 
 
-def _flat(piece: Piece, x: FloatArray, y: FloatArray) -> bool:
-    return abs(piece.at(float(x[piece.last - 1])) - piece.at(float(x[0]))) < 0.02 * float(np.ptp(y))
+def _is_flat(curve: _Curve, first: int, last: int) -> bool:
+    """Whether the pieces first to last lie flat, softer by far than the next."""
+    a, b = curve.parts[first], curve.parts[last]
+    f = curve.figure
+    top = float(b.at(np.array(f.u[b.last - 1])))
+    rise = top - float(a.at(np.array(f.u[a.first])))
+    after = curve.parts[last + 1].chord
+    soft = curve.modulus(b.end, f.u[b.last - 1]) < FLAT_MODULUS or b.chord < FOOT * after
+    return abs(rise) < FLAT and soft and b.chord < 0.5 * after
 
 
-def _last_rising(pieces: list[Piece], first: int) -> int:
+def _absorbed(figure: Figure, parts: list[Part]) -> list[Part]:
+    """The pieces without short ones that only round a knee or carry one misread point."""
+    out = list(parts)
+    changed = True
+    while changed:
+        changed = False
+        for k in range(1, len(out) - 1):
+            before, here, after = out[k - 1], out[k], out[k + 1]
+            low, high = sorted((before.end, after.start))
+            between = low <= here.chord <= high
+            alike = low > 0 and high < 2.0 * low
+            length = float(figure.u[here.last - 1] - figure.u[here.first])
+            shelf = length > 0.04 and here.chord < 0.5 * low
+            rise = length > 0.02 and length * here.chord > FLAT and here.chord > 2.0 * high
+            if here.count <= 2 and (between or (alike and not shelf and not rise)):
+                del out[k]
+                changed = True
+                break
+    return out
+
+
+def _last_rising(curve: _Curve, first: int) -> int:
     last, stiffest = first, 0.0
-    for j in range(first, len(pieces)):
-        stiffest = max(stiffest, pieces[j].modulus)
-        if pieces[j].modulus > 0 and pieces[j].modulus >= YIELD * stiffest:
+    for j in range(first, len(curve.parts)):
+        part = curve.parts[j]
+        stiff = curve.modulus(part.chord, part.centre)
+        stiffest = max(stiffest, stiff)
+        if stiff > 0 and stiff >= YIELD * stiffest:
             last = j
     return last
 
 
-def _dip_end(pieces: list[Piece], j: int, last: int) -> int | None:
+def _leaves(curve: _Curve, j: int, stop: int) -> NDArray[np.bool_]:
+    """Points of pieces j + 1 to stop that fall short of piece j, extended, plainly; (n,)."""
+    f, part = curve.figure, curve.parts[j]
+    short, doubt = _shortfall(curve, j)
+    inside = np.zeros(f.u.size, dtype=np.bool_)
+    inside[part.last : curve.parts[stop].last] = True
+    return inside & (short > SHORT) & (short > SHORT_SIGMAS * doubt)
+
+
+def _shortfall(curve: _Curve, j: int) -> tuple[FloatArray, FloatArray]:
+    """Perpendicular distance of every point below the end of piece j, extended straight, and its u."""
+    f, part = curve.figure, curve.parts[j]
+    end = float(f.u[part.last - 1])
+    slope = min(part.end, 2.0 * max(part.chord, 1e-6))
+    away = f.u - end
+    line = float(part.at(np.array(end))) + slope * away
+    size = np.sqrt(1.0 + slope**2)
+    error = np.hypot(f.pressure_reading, slope * f.area_reading)
+    doubt = np.hypot(error, part.u_slope * np.maximum(away, 0.0))
+    return (line - f.v) / size, doubt / size
+
+
+def _dip_end(curve: _Curve, j: int, last: int) -> int | None:
     """The piece that ends a dip begun after piece j: the first clearly stiffer than dip and shoulder."""
-    here = pieces[j]
-    softest = np.inf
+    parts = curve.parts
+    here = parts[j]
+    softest: Part | None = None
     for k in range(j + 1, last + 1):
-        piece = pieces[k]
-        bound = piece.modulus + SIGMAS * piece.u
-        if bound < DIP * here.modulus:
-            softest = min(softest, piece.modulus)
-        elif not np.isfinite(softest):
+        part = parts[k]
+        soft = part.chord + SIGMAS * part.u_slope < SOFTER * here.end or part.chord < 0.5 * here.end
+        if soft and part.chord < here.chord and part.start < SOFTER * here.end:
+            if softest is None or part.chord < softest.chord:
+                softest = part
+            continue
+        if softest is None:
             return None
-        # roundings have moduli between: the end is where the modulus stops doubling
-        stiff = DIP * (piece.modulus - SIGMAS * piece.u) > softest
-        if np.isfinite(softest) and stiff and piece.modulus > SHOULDER * here.modulus:
-            while k < last and pieces[k + 1].modulus > 2.0 * pieces[k].modulus:
+        stiff = SOFTER * part.chord > softest.chord
+        shoulder = curve.modulus(part.chord, part.centre) > SHOULDER * curve.modulus(
+            here.chord, here.centre
+        )
+        tall = part.count > 2 or part.chord * 2.0 * part.half > REST
+        if stiff and shoulder and tall and _leaves(curve, j, k - 1).any():
+            # roundings have slopes between: the end is where the slope stops doubling
+            while k < last and parts[k + 1].chord > 2.0 * parts[k].chord and parts[k].count < 4:
                 k += 1
             return k
     return None
 
 
-def _meeting(a: Piece, b: Piece, x: FloatArray) -> Candidate:
-    """Where two pieces meet when extended, kept between their middles."""
-    low, high = float(a.x0), float(b.x0)
-    slope = a.modulus - b.modulus
-    at = (b.level - b.modulus * b.x0 - a.level + a.modulus * a.x0) / slope if slope else low
-    if not low < at < high:
-        at = 0.5 * float(x[a.last - 1] + x[b.first])
-    return Candidate(float(at), 0.1 * (high - low), a.modulus, b.modulus, np.inf)
+def _step_up(curve: _Curve, j: int) -> str:
+    """'kink', 'transition' (expanded to condensed in one step) or ''."""
+    f = curve.figure
+    here, after = curve.parts[j], curve.parts[j + 1]
+    at = float(f.u[here.last - 1])
+    before, behind = curve.modulus(here.end, at), curve.modulus(after.start, at)
+    if before < 0.4 * GASEOUS or f.height * float(f.v[here.last - 1]) < 1.5:
+        return ""
+    u = SIGMAS * np.hypot(here.u_slope, after.u_slope)
+    if after.start < STIFFER * here.end or after.start - here.end < u:
+        return ""
+    if before < EXPANDED and behind > max(CONDENSED, 2.5 * before):
+        return "transition"
+    if before < GASEOUS or min(here.count, after.count) < 3 or not _beats_smooth(f, here, after):
+        return ""
+    return "kink"
+
+
+def _beats_smooth(figure: Figure, here: Part, after: Part) -> bool:
+    """Whether two pieces describe their points better than one polynomial of as many parameters."""
+    part = slice(here.first, after.last)
+    u, v, s = figure.u[part], figure.v[part], figure.s[part]
+    degree = min(here.degree + after.degree + 1, 5)
+    t = (u - u.mean()) / max(float(np.ptp(u)), 1e-12)
+    powers = np.vander(t, degree + 1) / s[:, None]
+    smooth = v / s - powers @ np.linalg.lstsq(powers, v / s, rcond=None)[0]
+    first = np.arange(here.first, after.last) < here.last
+    bent = (v - np.where(first, here.at(u), after.at(u))) / s
+    return float(smooth @ smooth - bent @ bent) > EVIDENCE
+
+
+def _hidden_onset(curve: _Curve, j: int) -> SparseKnee | None:
+    """Where a coexistence may begin inside piece j: between its middle points, known no better."""
+    f, part = curve.figure, curve.parts[j]
+    low, high = float(f.u[part.first]), float(f.u[part.last - 1])
+    if not 2 <= part.count <= MOST_HIDING or high - low < 0.03:
+        return None
+    return SparseKnee("onset", _x(curve, 0.5 * (low + high)), 0.5 * _length(curve, low, high))
+
+
+def _collapse(curve: _Curve, last: int) -> SparseKnee | None:
+    f, parts = curve.figure, curve.parts
+    part = parts[last]
+    beyond = _leaves(curve, last, len(parts) - 1)
+    top = float(np.max(f.v[: part.last + 1]))
+    fall = f.height * (top - float(np.min(f.v[part.last :])))
+    if fall > max(FALL, 5.0 * f.height * f.pressure_reading):
+        return _knee("collapse", curve, last, last + 1)
+    count = int(beyond.sum())
+    if count == 0:
+        return None
+    if count == 1:
+        short, _ = _shortfall(curve, last)
+        if float(short[beyond][0]) < LONE * _doubled_back(curve, last):
+            return None
+        if bool(beyond[-1]):
+            return _lone_collapse(curve, last)
+    return _knee("collapse", curve, last, last + 1)
+
+
+def _lone_collapse(curve: _Curve, last: int) -> SparseKnee:
+    """The collapse before a lone last point: where the rising piece, extended, reaches its pressure."""
+    f, part = curve.figure, curve.parts[last]
+    low, high = float(f.u[-2]), float(f.u[-1])
+    at = float(f.u[part.last - 1])
+    at += (float(f.v[-1]) - float(part.at(np.array(at)))) / max(part.end, 1e-6)
+    at = min(max(at, low + 0.02 * (high - low)), low + 0.9 * (high - low))
+    return SparseKnee("collapse", _x(curve, at), _length(curve, low, high))
+
+
+def _doubled_back(curve: _Curve, last: int) -> float:
+    """How far the points of the rising pieces up to `last` go back on themselves, share of the axes."""
+    parts = curve.parts
+    first = last
+    steep = min(parts[last].chord, 1.0)
+    while first and parts[first - 1].chord > YIELD * steep:
+        first -= 1
+    # what was absorbed lies between the pieces
+    inside = slice(parts[first].first, parts[last + 1].first)
+    u, v = curve.figure.u[inside], curve.figure.v[inside]
+    fall = v[:, None] - v[None, :]
+    later = u[None, :] - u[:, None]
+    back = np.triu(np.minimum(fall, later), 1)
+    return float(max(back.max(), 0.0))
+
+
+def _knee(role: str, curve: _Curve, a: int, b: int) -> SparseKnee:
+    """Where pieces a and b meet when extended straight, kept between the points that bound it."""
+    f, left, right = curve.figure, curve.parts[a], curve.parts[b]
+    low, high = float(f.u[left.last - 1]), float(f.u[right.first])
+    p, q = float(left.at(np.array(low))), float(right.at(np.array(high)))
+    step = left.end - right.start
+    at = (q - p + left.end * low - right.start * high) / step if step else 0.5 * (low + high)
+    before = float(f.u[max(left.last - 2, 0)])
+    after = float(f.u[min(right.first + 1, f.u.size - 1)])
+    if not low - 0.5 * (low - before) <= at <= high + 0.5 * (after - high):
+        at = 0.5 * (low + high)
+    spread = max(
+        _length(curve, before, low), _length(curve, low, high), _length(curve, high, after)
+    )
+    return SparseKnee(role, _x(curve, at), max(spread, 1e-6))
+
+
+def _x(curve: _Curve, u: float) -> float:
+    return -float(np.log(max(curve.area(u), 1e-9)))
+
+
+def _length(curve: _Curve, low: float, high: float) -> float:
+    return abs(_x(curve, high) - _x(curve, low))
