@@ -1,0 +1,94 @@
+"""What tests/fuzz_commands.py found, kept; and a small slice of it at every run."""
+
+from __future__ import annotations
+
+import random
+import sys
+from dataclasses import replace
+from pathlib import Path
+
+import numpy as np
+import pytest
+from hostile_runs import Run, damaged, seed_runs
+
+sys.path.append(str(Path(__file__).resolve().parents[1]))
+from fuzz_commands import Bench
+
+SOUND = {run.command: run for run in seed_runs()}
+
+
+def outcome(run: Run, folder: Path) -> str:
+    found = Bench(folder).attempt(run)
+    assert found in ("done", "refused", "usage"), found
+    return found
+
+
+def with_column(command: str, column: int, values: np.ndarray) -> Run:
+    run = SOUND[command]
+    name = list(run.columns)[column]
+    return replace(run, columns={**run.columns, name: values.tolist()})
+
+
+@pytest.fixture(autouse=True)
+def _faults_show(monkeypatch: pytest.MonkeyPatch) -> None:
+    monkeypatch.setenv("UPSTROKE_DEBUG", "1")
+
+
+@pytest.mark.parametrize("command", sorted(SOUND))
+def test_the_sound_run_is_done(command: str, tmp_path: Path) -> None:
+    assert outcome(SOUND[command], tmp_path) == "done"
+
+
+@pytest.mark.parametrize("seed", range(3))
+@pytest.mark.parametrize("command", sorted(SOUND))
+def test_damaged_runs(command: str, seed: int, tmp_path: Path) -> None:
+    rng = random.Random(f"{command} {seed}")
+    for _ in range(4):
+        outcome(damaged(SOUND[command], rng), tmp_path)
+
+
+@pytest.mark.parametrize("command", sorted(SOUND))
+@pytest.mark.parametrize("column", [0, 1, 2])
+@pytest.mark.parametrize("factor", [1e9, 1e200, -1.0])
+def test_columns_of_absurd_size(command: str, column: int, factor: float, tmp_path: Path) -> None:
+    values = np.array(list(SOUND[command].columns.values())[column])
+    outcome(with_column(command, column, values * factor), tmp_path)
+
+
+@pytest.mark.parametrize("command", ["check", "hold", "transfer"])
+def test_a_clock_that_stands_still(command: str, tmp_path: Path) -> None:
+    rows = len(next(iter(SOUND[command].columns.values())))
+    assert outcome(with_column(command, 0, np.full(rows, 7.0)), tmp_path) in ("done", "refused")
+
+
+def test_a_bare_record_of_negative_area_that_stands_still(tmp_path: Path) -> None:
+    outcome(with_column("check", 1, np.full(90, -5.0)), tmp_path)
+
+
+def test_a_bare_record_in_a_few_steps(tmp_path: Path) -> None:
+    outcome(with_column("check", 1, np.repeat([240.0, 150.0, 60.0], 30)), tmp_path)
+
+
+def test_fill_values_are_missing_and_named(tmp_path: Path) -> None:
+    from isotherm.table import read_table
+
+    run = SOUND["isotherm"]
+    pressure = np.array(run.columns["Pressure (mN/m)"])
+    pressure[[10, 20]] = 9.96921e36
+    path = tmp_path / "fill.csv"
+    path.write_text(with_column("isotherm", 2, pressure).text())
+    table = read_table(path)
+    assert np.flatnonzero(np.isnan(table.values["pressure"])).tolist() == [10, 20]
+    (warning,) = [w for w in table.warnings if "beyond anything" in w]
+    assert "2 cells" in warning
+    assert "line 12" in warning
+
+
+def test_a_time_in_nanoseconds_is_not_beyond_reach(tmp_path: Path) -> None:
+    from isotherm.table import read_table
+
+    run = SOUND["hold"]
+    time = 1.9e18 + np.array(run.columns["t (s)"]) * 1e15
+    path = tmp_path / "late.csv"
+    path.write_text(with_column("hold", 0, time).text())
+    assert np.isfinite(read_table(path).values["time"]).all()
