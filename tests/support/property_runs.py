@@ -54,7 +54,9 @@ def any_table(draw: st.DrawFn, *roles: str) -> Table:
     rows = draw(st.sampled_from([0, 1, 2, 7, 8, 9, 12, 25, 40, 60, 150, 400]))
     if rows > 60:  # long columns of single draws would exhaust the source of randomness
         values = {role: draw(_column(60)) for role in roles}
-        values = {r: np.interp(np.linspace(0, 59, rows), np.arange(60), v) for r, v in values.items()}
+        values = {
+            r: np.interp(np.linspace(0, 59, rows), np.arange(60), v) for r, v in values.items()
+        }
     else:
         values = {role: draw(_column(rows)) for role in roles}
     if draw(st.booleans()):
@@ -81,7 +83,9 @@ def write_export(
 
 def numbers_of(payload: dict[str, Any]) -> dict[str, Any]:
     """A result's JSON without where it came from and what was said of it."""
-    return {k: v for k, v in payload.items() if k not in ("source", "warnings", "title", "settings")}
+    return {
+        k: v for k, v in payload.items() if k not in ("source", "warnings", "title", "settings")
+    }
 
 
 def agree(one: Any, other: Any, *, within: float = 1.0, path: str = "") -> list[str]:
