@@ -42,3 +42,19 @@ def test_a_whole_isotherm_costs_little_more_than_its_imports() -> None:
         if len(pairs) >= 3 and ours <= 1.25 * theirs:
             return
     assert ours <= 1.25 * theirs, f"{ours:.3f} s against {theirs:.3f} s"
+
+
+@pytest.mark.slow
+def test_help_costs_at_most_twice_a_bare_hello(tmp_path: Path) -> None:
+    """Against the smallest program made with the same library, as its own documentation starts."""
+    hello = tmp_path / "hello.py"
+    hello.write_text(
+        "import typer\n\ndef main(name: str = 'you') -> None:\n    print(f'Hello {name}')\n\n"
+        "if __name__ == '__main__':\n    typer.run(main)\n"
+    )
+    pairs = [
+        (processor_seconds("-m", "cli.main", "--help"), processor_seconds(str(hello), "--help"))
+        for _ in range(4)
+    ]
+    ours, theirs = (min(column) for column in zip(*pairs, strict=True))
+    assert ours <= 2.0 * theirs, f"{ours:.3f} s against {theirs:.3f} s"
