@@ -40,13 +40,14 @@ REST: Final = (
 EVIDENCE: Final = 10.0  # χ² by which two branches must beat one smooth curve
 EXPANDED: Final = 50.0  # mN/m, top of liquid-expanded (customary ranges)
 CONDENSED: Final = 80.0  # mN/m; what follows an expanded film above this, in one step, is condensed
+ONE_STEP: Final = 3.5  # by this factor; an expanded film alone stiffens less between two points
 GASEOUS: Final = 12.5  # mN/m
 MOST_HIDING: Final = 30  # points of a piece in which a plateau may hide; more of them would show it
 
 
 @dataclass(frozen=True)
 class SparseKnee:
-    """A knee: role is lift-off, onset, end, kink or collapse; x and modulus about it; spread of x."""
+    """A knee: role is lift-off, onset, end, kink or collapse; x = -ln A; spread: of x, by the points."""
 
     role: str
     x: float
@@ -235,9 +236,11 @@ def _step_up(curve: _Curve, j: int) -> str:
     u = SIGMAS * np.hypot(here.u_slope, after.u_slope)
     if after.start < STIFFER * here.end or after.start - here.end < u:
         return ""
-    if before < EXPANDED and behind > max(CONDENSED, 2.5 * before):
+    if not _beats_smooth(f, here, after):
+        return ""
+    if before < EXPANDED and behind > max(CONDENSED, ONE_STEP * before):
         return "transition"
-    if before < GASEOUS or min(here.count, after.count) < 3 or not _beats_smooth(f, here, after):
+    if before < GASEOUS or min(here.count, after.count) < 3:
         return ""
     return "kink"
 
@@ -246,7 +249,7 @@ def _beats_smooth(figure: Figure, here: Part, after: Part) -> bool:
     """Whether two pieces describe their points better than one polynomial of as many parameters."""
     part = slice(here.first, after.last)
     u, v, s = figure.u[part], figure.v[part], figure.s[part]
-    degree = min(here.degree + after.degree + 1, 5)
+    degree = min(here.degree + after.degree + 1, 5, u.size - 1)
     t = (u - u.mean()) / max(float(np.ptp(u)), 1e-12)
     powers = np.vander(t, degree + 1) / s[:, None]
     smooth = v / s - powers @ np.linalg.lstsq(powers, v / s, rcond=None)[0]

@@ -26,6 +26,9 @@ CLOSEST: Final = 1e-3  # share of the branch's range of ln A that two knees are 
 # How much a falling branch may bend between few points, of the pressure it covers (a standard uncertainty):
 # a collapsing film falls steeply first, then ever less.
 COLLAPSED_BEND: Final = 0.7
+# An expanded branch bends into the onset between two points: known to this share of their distance.
+ONSET_DOUBT: Final = 0.2
+HELD: Final = 0.4
 BOUND: Final = (
     10.0  # u: a point so far off is misread; nearer, a peak or a knee may rest on it alone
 )
@@ -75,6 +78,13 @@ def sparse_model(nodes: Nodes, read: SparseRead) -> KneeModel:
         model = fit_knees(
             x, y, sigma, knots, model.widths, again, widest=WIDEST, knot_u=knot_u, bound=BOUND
         )
+    strayed = np.abs(model.knots - knots) > knot_u
+    if strayed.any():
+        # a knee belongs between the points that bound it: one that left them is held closer
+        knot_u = np.where(strayed, HELD * knot_u, knot_u)
+        model = fit_knees(
+            x, y, sigma, knots, widths, model.degrees, widest=WIDEST, knot_u=knot_u, bound=BOUND
+        )
     return replace(model, roles=tuple(k.role for k in knees))
 
 
@@ -91,7 +101,12 @@ def refine_sparse(model: KneeModel, nodes: Nodes, stop: float) -> KneeModel:
     )
     roles = None if model.roles is None else model.roles[:k]
     bend = COLLAPSED_BEND if roles and roles[-1] == "collapse" else None
-    return replace(with_model_doubt(fitted, x, y, sigma, last_bend=bend), roles=roles)
+    told = with_model_doubt(fitted, x, y, sigma, last_bend=bend)
+    doubt = told.knot_doubt
+    if doubt is not None and roles and knot_u is not None:
+        onsets = np.array([role == "onset" for role in roles])
+        doubt = np.where(onsets, np.hypot(doubt, ONSET_DOUBT * knot_u), doubt)
+    return replace(told, roles=roles, knot_doubt=doubt)
 
 
 def _in_order(knees: list[SparseKnee], x: FloatArray) -> list[SparseKnee]:
