@@ -10,6 +10,7 @@ from pathlib import Path
 from typing import Any, Final
 
 from isotherm.errors import UpstrokeError
+from isotherm.file_bytes import read_bytes
 from isotherm.quantity import Quantity
 from isotherm.sheet import (
     Check,
@@ -28,7 +29,7 @@ from isotherm.sheet import (
 )
 from isotherm.sheet_schema import SECTIONS, TITLE, Section
 from isotherm.sheet_value import Place, read_value, suggestion
-from isotherm.text_bytes import decode, read_bytes
+from isotherm.text_bytes import decode
 
 __all__ = ["parse_sheet", "read_sheet"]
 

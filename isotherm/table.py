@@ -10,6 +10,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from isotherm.errors import UpstrokeError
+from isotherm.file_bytes import FileBytes
 from isotherm.sheet import RunSheet
 from isotherm.source import ColumnSource, Source
 from isotherm.table_cell import HeaderCell
@@ -23,7 +24,7 @@ from isotherm.table_roles import (
     wanted_roles,
 )
 from isotherm.table_units import column_conversion
-from isotherm.text_bytes import digest, is_workbook, read_bytes
+from isotherm.text_bytes import WORKBOOK, is_workbook
 from isotherm.text_find import TextRows, find_rows
 from isotherm.text_numbers import read_numbers
 from isotherm.text_rows import Numbers
@@ -75,14 +76,18 @@ def read_table(
         role is missing, or a unit is unknown or missing.
     """
     where = str(path)
-    original = data = read_bytes(path)
-    sha256 = digest(data)
+    with FileBytes.open(path) as original:
+        return _read(original, where, sheet, needs)
+
+
+def _read(original: FileBytes, where: str, sheet: RunSheet | None, needs: tuple[str, ...]) -> Table:
     warnings: list[str] = []
-    if is_workbook(data):
+    data = original
+    if original.part(0, len(WORKBOOK)) == WORKBOOK and is_workbook(original.whole()):
         from isotherm.table_workbook import workbook_text
 
-        data = workbook_text(data, where)
-    if not data[:4096].strip() and not data.strip():
+        data = FileBytes(workbook_text(original.whole(), where))
+    if not data.part(0, 4096).strip() and not data.whole().strip():
         raise UpstrokeError("the file is empty", where=where, remedy="export the run again")
     text = find_rows(data, where)
     hints = sheet.columns if sheet is not None else ()
@@ -112,7 +117,8 @@ def read_table(
     values, columns = _convert(numbers, taken, needs, where, warnings)
     gaps_report(numbers, taken, values, warnings)
     rows = len(numbers.lines)
-    return Table(Source(where, sha256(), rows, columns), values, numbers.lines, tuple(warnings))
+    source = Source(where, original.digest(), rows, columns)
+    return Table(source, values, numbers.lines, tuple(warnings))
 
 
 def _header(text: TextRows, warnings: list[str]) -> Header:

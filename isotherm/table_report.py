@@ -98,6 +98,9 @@ def within_reach(
 ) -> NDArray[np.float64]:
     """Return the column, (n,) in its fixed unit, with what no instrument reads taken as missing."""
     largest = LARGEST_TIME if one.role == "time" else LARGEST
+    # a column without gaps, as most are, needs no array of answers
+    if len(values) and -largest <= values.min() and values.max() <= largest:
+        return values
     beyond = np.abs(values) > largest  # missing cells compare false
     beyond &= np.isfinite(values)
     count = int(np.count_nonzero(beyond))

@@ -45,24 +45,25 @@ def read_fast(
 
 
 def read_fast_file(
-    path: str, data: bytes, start: int, first_line: int, wanted: Wanted
+    path: str, beginning: bytes, end: bytes, first_line: int, wanted: Wanted
 ) -> Numbers | None:
     """Read all lines of the file `path` from line `first_line` on; None when any is not regular.
 
-    A file pandas opens itself it may read on several cores. `data` are the same bytes, read before: the
-    first and the last row are compared with them, lest the file has changed meanwhile.
+    A file pandas opens itself it may read on several cores. `beginning` and `end` are the first and last
+    bytes of the rows: first and last row are compared with them, lest lines were counted otherwise.
     """
-    options = _options(data[start : start + _SAMPLE], wanted)
+    options = _options(beginning, wanted)
     if options["quoting"] == 0:
         return None  # a lone quote further up would make pandas skip other lines than meant
+    # all columns: told to leave some out, pandas reads on one core, and drops surplus cells in silence;
     # numbers may begin with blanks anyway; only a missing cell after blanks needs the slower setting
     options |= {"skiprows": first_line - 1, "skipinitialspace": False}
     numbers = _read(path, options, first_line, wanted)
     if numbers is None or not len(numbers.lines):
         return None
     ends = (
-        (0, data[start : start + _SAMPLE].splitlines()[0]),
-        (-1, data[max(start, len(data) - _SAMPLE) :].splitlines()[-1]),
+        (0, beginning.splitlines()[0]),
+        (-1, end.splitlines()[-1]),
     )
     for row, raw in ends:
         cells = wanted.block.layout.split(raw.decode(wanted.encoding, "replace"))
@@ -115,7 +116,11 @@ def _read(
         return None  # some cell is text
     count = len(frame)
     return Numbers(
-        {c: frame[c].to_numpy(dtype=np.float64) for c in wanted.numeric},
+        # a copy where other columns were read along, lest they all stay in memory
+        {
+            c: frame[c].to_numpy(dtype=np.float64, copy=len(wanted.numeric) < frame.shape[1])
+            for c in wanted.numeric
+        },
         {c: frame[c].fillna("").astype(str).tolist() for c in wanted.clocks},
         np.arange(first_line, first_line + count, dtype=np.int64),
     )

@@ -2,12 +2,14 @@
 
 from __future__ import annotations
 
+import codecs
 import re
 from collections.abc import Sequence
 from dataclasses import dataclass, replace
 from typing import Final
 
 from isotherm.errors import UpstrokeError
+from isotherm.file_bytes import FileBytes
 from isotherm.table_header import whole_block
 from isotherm.text_bytes import decode
 from isotherm.text_cells import cell_kind
@@ -15,7 +17,8 @@ from isotherm.text_layout import Block, find_block
 
 __all__ = ["TextRows", "find_rows"]
 
-_HEAD: Final = 1 << 16  # bytes looked at first to find the rows; more when they begin later
+_HEAD: Final = 1 << 14  # bytes looked at first to find the rows; more when they begin later
+_SAMPLE: Final = 1 << 18  # bytes looked at to tell the encoding
 _COMMA: Final = re.compile(rb"\d,\d")
 _POINT: Final = re.compile(rb"\d\.\d")
 
@@ -24,27 +27,26 @@ _POINT: Final = re.compile(rb"\d\.\d")
 class TextRows:
     """The export in an encoding that keeps ASCII, with the lines up to its rows."""
 
-    data: bytes
+    data: FileBytes
     encoding: str
     lines: tuple[str, ...]
     block: Block
     start: int
 
 
-def find_rows(data: bytes, where: str) -> TextRows:
+def find_rows(data: FileBytes, where: str) -> TextRows:
     """Decode, and find where the rows begin and how they are laid out."""
-    decoded = decode(data[: 4 * _HEAD], where=where, whole=len(data) <= 4 * _HEAD)
-    encoding = decoded.encoding
+    sample = data.part(0, _SAMPLE)
+    encoding = decode(sample, where=where, whole=len(data) <= len(sample)).encoding
     if encoding.startswith(("utf-16", "utf-32")):
-        data = decode(data, where=where).text.encode("utf-8", "replace")
-        encoding = "utf-8"
-    elif data.startswith(b"\xef\xbb\xbf"):
-        data = data[3:]
+        text = decode(data.whole(), where=where).text
+        data, encoding = FileBytes(text.encode("utf-8", "replace")), "utf-8"
+    elif sample.startswith(codecs.BOM_UTF8):
+        data = FileBytes(data.whole()[len(codecs.BOM_UTF8) :])
     size = _HEAD
     while True:
         complete = size >= len(data)
-        head = data if complete else data[:size]
-        raw = head.splitlines(keepends=True)
+        raw = data.part(0, size).splitlines(keepends=True)
         if not complete and raw and not raw[-1].endswith((b"\n", b"\r")):
             raw.pop()
         lines = tuple(line.decode(encoding, "replace").rstrip("\r\n") for line in raw)
@@ -59,15 +61,16 @@ def find_rows(data: bytes, where: str) -> TextRows:
         size *= 8
 
 
-def _with_decimal(lines: Sequence[str], data: bytes, start: int, block: Block) -> Block:
+def _with_decimal(lines: Sequence[str], data: FileBytes, start: int, block: Block) -> Block:
     """Where the first rows hold whole numbers only, the decimal mark is the first met further down."""
     layout = block.layout
     sample = lines[block.first : block.first + block.rows]
     if layout.delimiter == "," or any("." in line or "," in line for line in sample):
         return block
-    if data.find(b",", start) < 0:
+    whole = data.whole()
+    if whole.find(b",", start) < 0:
         return block
-    comma, point = _COMMA.search(data, start), _POINT.search(data, start)
+    comma, point = _COMMA.search(whole, start), _POINT.search(whole, start)
     if comma is None or (point is not None and point.start() < comma.start()):
         return block
     return replace(block, layout=replace(layout, decimal=","))

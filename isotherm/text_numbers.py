@@ -9,6 +9,7 @@ from typing import Final
 
 import numpy as np
 
+from isotherm.file_bytes import FileBytes
 from isotherm.text_cells import to_number
 from isotherm.text_layout import Block
 from isotherm.text_lines import BLANK_LINE, read_lines, read_regular
@@ -23,10 +24,11 @@ _SMALL_WITH_PANDAS: Final = 100_000
 # among a million rows cost little.
 _PIECE: Final = 1 << 18
 _FOOTER: Final = 8192  # bytes at the end searched for text below the rows
+_BEGINNING: Final = 8192  # bytes of rows looked at for quotes and blanks between cells
 
 
 def read_numbers(
-    data: bytes,
+    content: FileBytes,
     start: int,
     first_line: int,
     block: Block,
@@ -40,7 +42,7 @@ def read_numbers(
 
     Parameters
     ----------
-    data : bytes
+    content : FileBytes
         The file, in an encoding that keeps ASCII.
     start : int
         Where the first row begins.
@@ -51,16 +53,19 @@ def read_numbers(
     numeric, clocks : sequences of int
         Columns wanted (0-based): numbers, and clock times left as text.
     encoding : str
-        Of `data`.
+        Of `content`.
     path : str
         The file that holds just these bytes, "" where none does.
     """
     wanted = Wanted.of(block, numeric, clocks, encoding)
+    size = len(content)
     small = _SMALL_WITH_PANDAS if "pandas" in sys.modules else _SMALL
-    if len(data) - start <= small:
-        regular = read_regular(data[start:], first_line, wanted)
-        return regular if regular is not None else read_lines(data[start:], first_line, wanted)
-    stop = _without_footer(data, start, wanted)
+    if size - start <= small:
+        data = content.whole()[start:]
+        regular = read_regular(data, first_line, wanted)
+        return regular if regular is not None else read_lines(data, first_line, wanted)
+    end = content.part(max(start, size - _FOOTER), size)
+    stop = size - _footer(end, wanted)
     with warnings.catch_warnings():
         # its import may warn of its own future, its parser of columns nobody wants
         warnings.simplefilter("ignore")
@@ -71,16 +76,17 @@ def read_numbers(
         from isotherm.text_fast import read_fast, read_fast_file
 
         whole = None
-        if path and stop == len(data):
-            whole = read_fast_file(path, data, start, first_line, wanted)
+        if path and stop == size:
+            beginning = content.part(start, min(start + _BEGINNING, size))
+            whole = read_fast_file(path, beginning, end, first_line, wanted)
         if whole is None:
-            whole = read_fast(data, start, stop, first_line, wanted)
+            whole = read_fast(content.whole(), start, stop, first_line, wanted)
         if whole is None:
-            return _in_pieces(data, start, first_line, wanted)
-    if stop < len(data):
-        tail = read_lines(data[stop:], first_line + len(whole.lines), wanted)
+            return _in_pieces(content.whole(), start, first_line, wanted)
+    if stop < size:
+        tail = read_lines(content.part(stop, size), first_line + len(whole.lines), wanted)
         whole.skipped, whole.skipped_count = tail.skipped, tail.skipped_count
-    return _without_blanks(whole, data, start)
+    return _without_blanks(whole, content, start)
 
 
 def _line_end(data: bytes, start: int, near: int, stop: int) -> int:
@@ -103,7 +109,7 @@ def _in_pieces(data: bytes, start: int, first_line: int, wanted: Wanted) -> Numb
             line += len(data[low:high].splitlines())
         else:
             line += len(piece.lines)
-            piece = _without_blanks(piece, data, low)
+            piece = _without_blanks(piece, FileBytes(data), low)
         pieces.append(piece)
     return _joined(pieces, wanted)
 
@@ -115,19 +121,21 @@ def _pieces(data: bytes, start: int) -> Iterator[tuple[int, int]]:
         start = stop
 
 
-def _without_footer(data: bytes, start: int, wanted: Wanted) -> int:
-    """Where the rows end: text lines at the very end are cut off, if they are few."""
+def _footer(end: bytes, wanted: Wanted) -> int:
+    """How many bytes below the rows are text: lines at the very end, if they are few.
+
+    end : the last bytes of the file; their first line may be cut.
+    """
     block = wanted.block
-    lines = data[max(start, len(data) - _FOOTER) :].splitlines(keepends=True)
-    stop = len(data)
-    for raw in reversed(lines[1:]):
+    below = 0
+    for raw in reversed(end.splitlines(keepends=True)[1:]):
         cells = block.layout.split(raw.decode(wanted.encoding, "replace").strip("\r\n\x1a"))
         numbers = [to_number(cell, block.layout.decimal) for cell in cells]
         read = sum(number is not None for number in numbers)
         if len(cells) >= 2 and read >= 1 and (block.kinds[0] != "N" or numbers[0] is not None):
-            return stop
-        stop -= len(raw)
-    return len(data)
+            return below
+        below += len(raw)
+    return 0
 
 
 def _joined(pieces: list[Numbers], wanted: Wanted) -> Numbers:
@@ -146,7 +154,7 @@ def _joined(pieces: list[Numbers], wanted: Wanted) -> Numbers:
     return out
 
 
-def _without_blanks(numbers: Numbers, data: bytes, start: int) -> Numbers:
+def _without_blanks(numbers: Numbers, content: FileBytes, start: int) -> Numbers:
     """Drop the rows the fast parser made of blank lines; those it made of missing cells are rows.
 
     numbers : just as it was read from the lines at byte `start`, a row for each.
@@ -156,6 +164,7 @@ def _without_blanks(numbers: Numbers, data: bytes, start: int) -> Numbers:
         empty &= np.isnan(values)
         if not empty.any():
             return numbers
+    data = content.whole()
     for cells in numbers.clocks.values():
         empty &= np.array([not cell for cell in cells], dtype=bool)
     rows = np.flatnonzero(empty)

@@ -11,7 +11,8 @@ import numpy as np
 from numpy.typing import NDArray
 
 from isotherm.errors import UpstrokeError
-from isotherm.text_bytes import decode, read_bytes
+from isotherm.file_bytes import read_bytes
+from isotherm.text_bytes import decode
 from isotherm.units import Conversion, conversion
 from transfer.evidence_series import Impedance, Voltammogram
 

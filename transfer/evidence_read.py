@@ -34,10 +34,11 @@ from pathlib import Path
 from typing import Any
 
 from isotherm.errors import UpstrokeError
+from isotherm.file_bytes import read_bytes
 from isotherm.quantity import Quantity
 from isotherm.quantity_text import parse_quantity
 from isotherm.sheet_value import read_value
-from isotherm.text_bytes import decode, read_bytes
+from isotherm.text_bytes import decode
 from transfer.evidence_draft import Draft, DraftPoint, draft_from_csv, draft_from_toml
 from transfer.evidence_kinds import KINDS, Kind
 from transfer.evidence_raw import read_raw

@@ -84,7 +84,7 @@ def read_with_upstroke(log: SimulatedLog, sheet: RunSheet, truth: Truth) -> Read
     from transfer.analysis import analyse_log
     from transfer.log import DippingLog
 
-    source = Source(path="simulated.csv", sha256="", rows=log.time.size, columns={})
+    source = Source(path="simulated.csv", digest="", rows=log.time.size, columns={})
     record = DippingLog(log.time, log.position, log.area, log.pressure, source)
     try:
         return reading_from_json(analyse_log(record, sheet).to_json())

@@ -2,14 +2,10 @@
 
 from __future__ import annotations
 
-import hashlib
-import os
-from pathlib import Path
-
 import pytest
 
 from isotherm.errors import UpstrokeError
-from isotherm.text_bytes import decode, digest, read_bytes
+from isotherm.text_bytes import decode
 
 _TEXT = "Fläche (Å²);Druck (mN/m)\r\n" + "1,5;2,5\r\n" * 40
 
@@ -46,39 +42,3 @@ def test_a_character_cut_at_the_end_of_a_head() -> None:
 def test_what_is_no_text(data: bytes, says: str) -> None:
     with pytest.raises(UpstrokeError, match=says):
         decode(data, where="f")
-
-
-@pytest.mark.parametrize("size", [0, 1000, 3_000_000])
-def test_digest(size: int) -> None:
-    data = os.urandom(size)
-    assert digest(data)() == hashlib.sha256(data).hexdigest()
-
-
-@pytest.mark.parametrize(
-    ("error", "says"),
-    [
-        (PermissionError(13, "denied"), "may not be read"),
-        (IsADirectoryError(21, "directory"), "a directory"),
-        (OSError(5, "Input/output error"), "cannot be opened .Input/output error"),
-    ],
-)
-def test_files_that_cannot_be_opened(
-    error: OSError, says: str, tmp_path: Path, monkeypatch: pytest.MonkeyPatch
-) -> None:
-    def refuse(*_: object) -> int:
-        raise error
-
-    monkeypatch.setattr(os, "open", refuse)
-    with pytest.raises(UpstrokeError, match=says):
-        read_bytes(tmp_path / "file")
-
-
-def test_a_directory_where_opening_one_is_not_permitted(
-    tmp_path: Path, monkeypatch: pytest.MonkeyPatch
-) -> None:
-    def refuse(*_: object) -> int:
-        raise PermissionError(13, "denied")
-
-    monkeypatch.setattr(os, "open", refuse)
-    with pytest.raises(UpstrokeError, match="a directory"):
-        read_bytes(tmp_path)

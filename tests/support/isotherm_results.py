@@ -122,7 +122,7 @@ def result(*branches: Branch, path: str = "spacer.txt") -> IsothermResult:
     return IsothermResult(
         source=Source(
             path=path,
-            sha256="0" * 64,
+            digest="0" * 64,
             rows=2412,
             columns={
                 "time": ColumnSource("Time", "s", 1),
