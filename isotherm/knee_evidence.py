@@ -17,7 +17,9 @@ FloatArray = NDArray[np.float64]
 INDIFFERENT: Final = 5e-4
 SMOOTH_DEGREE: Final = 6  # a smooth rival gets as many parameters as the richest knee model
 POSITIONS: Final = 24  # hinges tried along a window, before the best is refined
-WIDTH_GRID: Final = (0.008, 0.035, 0.14)  # rounding widths tried, shares of half a window
+_WIDTHS: Final = np.array([0.008, 0.035, 0.14])  # rounding widths tried, shares of half a window
+_SHIFTS: Final = np.array([-0.6, -0.3, 0.0, 0.3, 0.6])  # then about the best, shares of a grid step
+_FACTORS: Final = np.array([0.55, 1.0, 1.6])  # and on its width
 
 
 @dataclass(frozen=True)
@@ -59,46 +61,49 @@ def judge_knee(
     n = x.size
     if n < 6:
         return None
-    centre, half = 0.5 * (x[0] + x[-1]), 0.5 * (x[-1] - x[0])
+    first, last = float(x[0]), float(x[-1])
+    centre, half = 0.5 * (first + last), 0.5 * (last - first)
     if half <= 0:
         return None
     t = (x - centre) / half
     weight = 1.0 / sigma
     target = y * weight
+    log_n = math.log(n)
     smooth_degree = min(SMOOTH_DEGREE, n // 3)
-    powers = np.polynomial.chebyshev.chebvander(t, smooth_degree) * weight[:, None]
-    q, _ = np.linalg.qr(powers)
-    along = q.T @ target
+    powers = _chebyshev(t, smooth_degree, weight)
+    q = np.linalg.qr(powers)[0]
+    along = target @ q
     total = float(target @ target)
-    rss_smooth = np.maximum(total - np.cumsum(along**2), 0.0)
-    floor = rounding_floor(y, weight)
-    orders = np.arange(1, smooth_degree + 1)
-    bics = n * np.log(rss_smooth[orders] + floor) + (orders + 1) * np.log(n)
-    smoothest = int(np.argmin(bics))
-    bic_smooth = float(bics[smoothest])
-    fitter = _HingeFitter(t, weight, target, q, along, floor)
+    floor = rounding_floor(y, float(weight @ weight))
+    rss = total
+    smooth = (math.inf, 0.0)  # lowest BIC, and its residual sum
+    for order, part in enumerate(along.tolist()):
+        rss -= part * part
+        if order:
+            left = max(rss, 0.0)
+            smooth = min(smooth, (n * math.log(left + floor) + (order + 1) * log_n, left))
+    fitter = _HingeFitter(t, weight, target, q, along, total, floor)
     edge = 2 if n < 30 else 3
     positions = t[edge : n - edge]
     if positions.size > POSITIONS:
         positions = positions[:: positions.size // POSITIONS + 1]
-    widths = np.array(WIDTH_GRID) if n >= 16 else np.array([WIDTH_GRID[0]])
-    coarse = fitter.best(np.repeat(positions, widths.size), np.tile(widths, positions.size))
+    coarse = fitter.best(positions, _WIDTHS if n >= 16 else _WIDTHS[:1])
     if coarse is None:
         return None
-    gap = float(np.max(np.diff(positions))) if positions.size > 1 else 0.1
-    shifts = coarse.at + gap * np.array([-0.6, -0.3, 0.0, 0.3, 0.6])
-    wider = coarse.width * (np.array([0.55, 1.0, 1.6]) if n >= 16 else np.array([1.0]))
-    fine = fitter.best(np.repeat(shifts, wider.size), np.tile(wider, shifts.size))
+    gap = float((positions[1:] - positions[:-1]).max()) if positions.size > 1 else 0.1
+    fine = fitter.best(
+        coarse.at + gap * _SHIFTS, coarse.width * (_FACTORS if n >= 16 else _FACTORS[1:2])
+    )
     best = fine if fine is not None and fine.bic < coarse.bic else coarse
     before, after = fitter.slopes(best, powers) if slopes else (math.nan, math.nan)
     knee = Candidate(
-        float(centre + half * best.at),
-        float(half * best.width),
+        centre + half * best.at,
+        half * best.width,
         before / half,
         after / half,
-        float(bic_smooth - best.bic),
+        smooth[0] - best.bic,
     )
-    return Verdict(knee, best.bic, best.rss, float(rss_smooth[orders[smoothest]]))
+    return Verdict(knee, best.bic, best.rss, smooth[1])
 
 
 @dataclass(frozen=True)
@@ -126,51 +131,84 @@ class _HingeFitter:
     target: FloatArray
     q: FloatArray
     along: FloatArray
+    total: float
     floor: float
 
-    def best(self, at: FloatArray, width: FloatArray) -> _Hinge | None:
-        """The hinge of lowest BIC among (g,) positions and widths, beside degrees 1, 2 and 3."""
+    def best(self, positions: FloatArray, widths: FloatArray) -> _Hinge | None:
+        """The hinge of lowest BIC at any of the positions and widths, beside degrees 1, 2 and 3.
+
+        Shapes below: (d, g) for d degrees and g hinges. What is left of a column beside a polynomial is
+        its square less those of its parts along the basis, so one running sum serves all degrees.
+        """
         n = self.t.size
         degrees = [d for d in (1, 2, 3) if n >= d + 5 and d < self.q.shape[1]]
         if not degrees:
             return None
-        hinge = _rounded(self.t[:, None] - at, width)
-        h1 = hinge * self.weight[:, None]
-        h2 = hinge * h1
-        basis = self.q[:, : degrees[-1] + 1]
-        k1, k2 = basis.T @ h1, basis.T @ h2
-        t1, t2 = self.target @ h1, self.target @ h2
-        n11 = np.einsum("ij,ij->j", h1, h1)
-        n12 = np.einsum("ij,ij->j", h1, h2)
-        n22 = np.einsum("ij,ij->j", h2, h2)
-        # one row a degree: what is left of the columns and of the target beside its polynomial
-        a = self.along[: degrees[-1] + 1, None]
-        rows = slice(1, None)
-        s11 = n11 - np.cumsum(k1 * k1, axis=0)[rows]
-        s12 = n12 - np.cumsum(k1 * k2, axis=0)[rows]
-        s22 = n22 - np.cumsum(k2 * k2, axis=0)[rows]
-        r1 = t1 - np.cumsum(a * k1, axis=0)[rows]
-        r2 = t2 - np.cumsum(a * k2, axis=0)[rows]
-        rss0 = float(self.target @ self.target) - np.cumsum(a[:, 0] ** 2)[rows]
-        sound = s11 > 1e-9 * n11
-        one = np.where(sound, r1 * r1 / np.where(sound, s11, 1.0), 0.0)
-        det = s11 * s22 - s12 * s12
-        sound &= det > 1e-7 * s11 * s22
-        both = (r1 * r1 * s22 - 2.0 * r1 * r2 * s12 + r2 * r2 * s11) / np.where(sound, det, 1.0)
-        both = np.where(sound, both, 0.0)
+        # a hinge is a row here, so that every sum runs along memory: plain, and times itself
+        g, top = positions.size * widths.size, degrees[-1] + 1
+        distance = (self.t - positions[:, None])[:, None, :]
+        hinge = _rounded(distance, widths[:, None]).reshape(g, n)
+        columns = np.empty((2, g, n))
+        plain, squared = columns
+        np.multiply(hinge, self.weight, out=plain)
+        np.multiply(plain, hinge, out=squared)
+        basis = np.empty((n, top + 1))
+        basis[:, :top] = self.q[:, :top]
+        basis[:, top] = self.target
+        inner = (columns.reshape(2 * g, n) @ basis).reshape(2, g, top + 1).transpose(0, 2, 1)
+        p1, p2 = inner[:, :top]
+        a = self.along[:top, None]
+        parts = np.empty((5, top, g))
+        np.multiply(p1, p1, out=parts[0])
+        np.multiply(p1, p2, out=parts[1])
+        np.multiply(p2, p2, out=parts[2])
+        np.multiply(p1, a, out=parts[3])
+        np.multiply(p2, a, out=parts[4])
+        whole = np.empty((5, 1, g))
+        whole[0, 0] = np.einsum("gn,gn->g", plain, plain)
+        whole[1, 0] = np.einsum("gn,gn->g", plain, squared)
+        whole[2, 0] = np.einsum("gn,gn->g", squared, squared)
+        whole[3:, 0] = inner[:, top]
+        s11, s12, s22, r1, r2 = whole - parts.cumsum(axis=1)[:, 1:]
+        sound = s11 > 1e-9 * whole[0]
+        square, product = r1 * r1, s11 * s22
+        det = product - s12 * s12
+        regular = sound & (det > 1e-7 * product)
+        gains = np.zeros((2, len(degrees), g))
+        np.divide(square, s11, out=gains[0], where=sound)
+        both = square * s22 - 2.0 * r1 * r2 * s12 + r2 * r2 * s11
+        np.divide(both, det, out=gains[1], where=regular)
+        where = gains.argmax(axis=2)
+        return self._cheapest(degrees, gains, where, positions, widths)
+
+    def _cheapest(
+        self,
+        degrees: list[int],
+        gains: FloatArray,
+        where: NDArray[np.intp],
+        positions: FloatArray,
+        widths: FloatArray,
+    ) -> _Hinge | None:
+        """The hinge of lowest BIC among the best of each degree, alone and with its square."""
+        n = self.t.size
         log_n = math.log(n)
-        best: _Hinge | None = None
-        for curved, gains in ((False, one), (True, both)):
-            chosen = gains.argmax(axis=1)
-            for row, degree in enumerate(degrees):
+        rss = self.total - float(self.along[0]) ** 2
+        best = (math.inf, 0, 0, False, 0.0)
+        for row, degree in enumerate(degrees):
+            rss -= float(self.along[row + 1]) ** 2
+            for curved in (False, True):
                 if curved and n < degree + 8:
                     continue
-                i = int(chosen[row])
-                left = max(float(rss0[row]) - float(gains[row, i]), 0.0)
+                at = int(where[int(curved), row])
+                left = max(rss - float(gains[int(curved), row, at]), 0.0)
                 bic = n * math.log(left + self.floor) + (degree + 4 + int(curved)) * log_n
-                if best is None or bic < best.bic:
-                    best = _Hinge(float(at[i]), float(width[i]), degree, curved, bic, left)
-        return best
+                if bic < best[0]:
+                    best = (bic, at, degree, curved, left)
+        bic, at, degree, curved, left = best
+        if not degree:
+            return None
+        position, width = divmod(at, widths.size)
+        return _Hinge(float(positions[position]), float(widths[width]), degree, curved, bic, left)
 
     def slopes(self, hinge: _Hinge, powers: FloatArray) -> tuple[float, float]:
         """Slopes just left and right of the hinge, per unit of t."""
@@ -184,11 +222,28 @@ class _HingeFitter:
         return before, before + float(c[hinge.degree + 1])
 
 
+def _chebyshev(t: FloatArray, degree: int, weight: FloatArray) -> FloatArray:
+    """Weighted Chebyshev polynomials up to `degree` (at least 1), (n, degree + 1)."""
+    rows = np.empty((degree + 1, t.size))
+    rows[0] = weight
+    rows[1] = t * weight
+    twice = 2.0 * t
+    for m in range(2, degree + 1):
+        np.multiply(twice, rows[m - 1], out=rows[m])
+        rows[m] -= rows[m - 2]
+    return rows.T
+
+
 def _rounded(distance: FloatArray, width: FloatArray) -> FloatArray:
     """A hinge rounded as a hyperbola, cheap to compute; curvature as a softplus of that width."""
-    return np.asarray(0.5 * (distance + np.sqrt(distance * distance + 4.0 * width * width)))
+    out = np.asarray(distance * distance + 4.0 * width * width)
+    np.sqrt(out, out=out)
+    out += distance
+    out *= 0.5
+    return out
 
 
-def rounding_floor(y: FloatArray, weight: FloatArray) -> float:
-    """Weighted sum of squares below which two models are equally perfect."""
-    return float(np.sum(weight**2)) * (INDIFFERENT * max(float(np.ptp(y)), 1e-9)) ** 2
+def rounding_floor(y: FloatArray, weights: float) -> float:
+    """Weighted sum of squares below which two models are equally perfect; `weights`: sum of 1/sigma^2."""
+    span = float(y.max() - y.min())
+    return weights * (INDIFFERENT * max(span, 1e-9)) ** 2

@@ -111,6 +111,7 @@ def fit_knees(
     scales = scales_of(x, knots)
     spacing = float(x[-1] - x[0]) / max(x.size, 1)
     gaps = np.diff(np.concatenate([[x[0]], knots, [x[-1]]]))
+    closest = 0.02 * np.minimum(gaps, 1.0)
     room = np.minimum(gaps[:-1], gaps[1:])
     floor = np.maximum(np.minimum(0.1 * spacing, 0.02 * room), 1e-9)
     widths = np.clip(widths, floor, widest * room)
@@ -118,60 +119,68 @@ def fit_knees(
     known = np.zeros(k) if knot_u is None else knot_u**-2.0
     anchors = knots.copy()
     weight = 1.0 / sigma
-    start = coordinates(x, knots, widths, 0.5 * float(x[0] + x[-1]))[0]
+    centre = 0.5 * float(x[0] + x[-1])
+    start = coordinates(x, knots, widths, centre)[0]
     start_design = design_matrix(start, degrees, scales) * weight[:, None]
     solved = np.linalg.lstsq(start_design, y * weight, rcond=None)[0]
     coefficients = np.asarray(solved, dtype=np.float64)
     p = coefficients.size
+    size = p + 2 * k
+    priors = np.arange(p, size) * (size + 1)  # where knots and widths stand on the diagonal
+    precision = np.concatenate([known, np.full(k, PRIOR_LOG_WIDTH_SIGMA**-2.0)])
     damping = 1e-3
     huber = np.ones_like(y)
 
     def evaluate(
         c: FloatArray, kn: FloatArray, w: FloatArray
-    ) -> tuple[FloatArray, FloatArray, FloatArray, FloatArray, FloatArray]:
-        g, rise, broaden = coordinates(x, kn, w, 0.5 * float(x[0] + x[-1]))
+    ) -> tuple[FloatArray, FloatArray, FloatArray, FloatArray]:
+        g, rise, broaden = coordinates(x, kn, w, centre)
         design = design_matrix(g, degrees, scales)
-        return (y - design @ c) * weight, design, g, rise, broaden
+        return (y - design @ c) * weight, design, rise, broaden
 
     def cost(residual: FloatArray, kn: FloatArray, w: FloatArray) -> float:
+        misfit = float((huber * residual) @ residual)
+        if not k:
+            return misfit
         prior = (np.log(w) - prior_mean) / PRIOR_LOG_WIDTH_SIGMA
-        moved = float(known @ (kn - anchors) ** 2)
-        return float(np.sum(huber * residual**2) + np.sum(prior**2)) + moved
+        return misfit + float(prior @ prior) + float(known @ (kn - anchors) ** 2)
 
-    residual, design, g, rise, broaden = evaluate(coefficients, knots, widths)
-    normal = np.eye(p + 2 * k)
+    residual, design, rise, broaden = evaluate(coefficients, knots, widths)
+    normal = np.eye(size)
     robust = False
     for _ in range(iterations):
         if robust:
             scale = max(1.0, 1.4826 * float(np.median(np.abs(residual))))
             huber = np.minimum(1.0, bound * scale / np.maximum(np.abs(residual), 1e-12))
-        slopes = slopes_of(g, degrees, scales, coefficients)
+        slopes = slopes_of(design, degrees, scales, coefficients)
         jacobian, _ = jacobian_of(design, slopes, rise, broaden)
         jacobian *= weight[:, None]
         weighted = jacobian * huber[:, None]
         normal = weighted.T @ jacobian
         right = weighted.T @ residual
-        normal[p : p + k, p : p + k] += np.diag(known)
-        right[p : p + k] -= known * (knots - anchors)
-        normal[p + k :, p + k :] += np.eye(k) / PRIOR_LOG_WIDTH_SIGMA**2
-        right[p + k :] -= (np.log(widths) - prior_mean) / PRIOR_LOG_WIDTH_SIGMA**2
+        normal.flat[priors] += precision
+        if k:
+            right[p : p + k] -= known * (knots - anchors)
+            right[p + k :] -= (np.log(widths) - prior_mean) / PRIOR_LOG_WIDTH_SIGMA**2
         now = cost(residual, knots, widths)
         accepted = False
         # unit diagonal: the parameters differ by many orders of magnitude
         unit = 1.0 / np.sqrt(np.maximum(np.diag(normal), 1e-300))
         scaled = normal * unit[:, None] * unit
         for _ in range(6):
-            trust = scaled + (damping + 1e-10) * np.eye(scaled.shape[0])
+            trust = scaled.copy()
+            trust.flat[:: trust.shape[0] + 1] += damping + 1e-10
             step = unit * np.linalg.solve(trust, unit * right)
             new_knots = knots + np.clip(step[p : p + k], -0.3 * room, 0.3 * room)
             new_widths = np.clip(
                 widths * np.exp(np.clip(step[p + k :], -1.0, 1.0)), floor, widest * room
             )
             edges = np.concatenate([[x[0]], new_knots, [x[-1]]])
-            if np.all(np.diff(edges) > 0.02 * np.minimum(gaps, 1.0)):
+            if np.all(edges[1:] - edges[:-1] > closest):
                 trial = coefficients + step[:p]
-                r, d, gr, ri, br = evaluate(trial, new_knots, new_widths)
-                if cost(r, new_knots, new_widths) <= now:
+                r, d, ri, br = evaluate(trial, new_knots, new_widths)
+                then = cost(r, new_knots, new_widths)
+                if then <= now:
                     accepted = True
                     break
             damping *= 8.0
@@ -180,9 +189,9 @@ def fit_knees(
                 break
             robust, damping = True, 1e-3
             continue
-        gain = now - cost(r, new_knots, new_widths)
+        gain = now - then
         coefficients, knots, widths = trial, new_knots, new_widths
-        residual, design, g, rise, broaden = r, d, gr, ri, br
+        residual, design, rise, broaden = r, d, ri, br
         damping = max(damping * 0.2, 1e-9)
         if gain < converged * max(1.0, now / x.size):
             if robust:

@@ -67,7 +67,8 @@ class KneeModel:
     def modulus(self, x: FloatArray) -> FloatArray:
         """Fitted dΠ/dx at (n,) x, mN/m."""
         g, rise, _ = coordinates(x, self.knots, self.widths, self._origin(0))
-        slopes = slopes_of(g, self.degrees, self.scales, self.coefficients)
+        design = design_matrix(g, self.degrees, self.scales)
+        slopes = slopes_of(design, self.degrees, self.scales, self.coefficients)
         inside = np.diff(np.vstack([np.ones_like(x), rise, np.zeros_like(x)]), axis=0) * -1.0
         return np.asarray(np.sum(slopes * inside, axis=0))
 
@@ -140,12 +141,16 @@ def coordinates(
     """g (K+1, n); rise (K, n) = dh_k/dx; broaden (K, n) = dh_k/d ln w_k; `centre` serves K = 0."""
     if knots.size == 0:
         return (x - centre)[None, :], np.empty((0, x.size)), np.empty((0, x.size))
-    z = (x[None, :] - knots[:, None]) / widths[:, None]
-    tail = np.exp(-np.abs(z))
-    plus = np.maximum(z, 0.0) + np.log1p(tail)
-    rise = np.where(z >= 0, 1.0, tail) / (1.0 + tail)
-    h = widths[:, None] * plus
-    broaden = widths[:, None] * (plus - z * rise)
+    broad = widths[:, None]
+    z = (x - knots[:, None]) / broad
+    # at most 1: a tail below e^-700 is none, and spares the slow path of numbers too small to normalise
+    tail = np.exp(np.maximum(-np.abs(z), -700.0))
+    plus = np.log1p(tail)
+    plus += np.maximum(z, 0.0)
+    rise = np.where(z >= 0, 1.0, tail)
+    rise /= 1.0 + tail
+    h = broad * plus
+    broaden = h - broad * z * rise
     g = np.empty((knots.size + 1, x.size))
     g[0] = x - knots[0] - h[0]
     g[1:-1] = h[:-1] - h[1:]
@@ -154,30 +159,33 @@ def coordinates(
 
 
 def design_matrix(g: FloatArray, degrees: tuple[int, ...], scales: FloatArray) -> FloatArray:
-    columns = [np.ones(g.shape[1])]
+    """Columns of the fit, (n, p): ones, then the powers of each stretch's scaled coordinate."""
+    rows = np.empty((1 + sum(degrees), g.shape[1]))  # a column is a row here: filled in one piece
+    rows[0] = 1.0
+    scaled = g / scales[:, None]
+    position = 1
     for j, degree in enumerate(degrees):
-        scaled = g[j] / scales[j]
-        power = scaled
-        for _ in range(degree):
-            columns.append(power)
-            power = power * scaled
-    return np.stack(columns, axis=1)
+        for m in range(degree):
+            if m:
+                np.multiply(rows[position - 1], scaled[j], out=rows[position])
+            else:
+                rows[position] = scaled[j]
+            position += 1
+    return rows.T
 
 
 def slopes_of(
-    g: FloatArray, degrees: tuple[int, ...], scales: FloatArray, coefficients: FloatArray
+    design: FloatArray, degrees: tuple[int, ...], scales: FloatArray, coefficients: FloatArray
 ) -> FloatArray:
-    """dp_j/dg_j for every stretch, (K+1, n)."""
-    out = np.zeros_like(g)
+    """dp_j/dg_j for every stretch, (K+1, n), from the columns of the fit: a power's slope is the one below."""
+    by_column = np.zeros((len(degrees), coefficients.size))
     position = 1
     for j, degree in enumerate(degrees):
-        scaled = g[j] / scales[j]
-        power = np.full(g.shape[1], 1.0 / scales[j])
         for m in range(1, degree + 1):
-            out[j] += m * coefficients[position] * power
-            power = power * scaled
+            below = position - 1 if m > 1 else 0
+            by_column[j, below] = m * coefficients[position] / scales[j]
             position += 1
-    return out
+    return by_column @ design.T
 
 
 @dataclass(frozen=True)
@@ -200,7 +208,7 @@ def model_terms(model: KneeModel, x: FloatArray) -> ModelTerms:
     """Evaluate a model with its derivatives against coefficients, knots and ln widths."""
     g, rise, broaden = coordinates(x, model.knots, model.widths, 0.5 * (model.start + model.stop))
     design = design_matrix(g, model.degrees, model.scales)
-    slopes = slopes_of(g, model.degrees, model.scales, model.coefficients)
+    slopes = slopes_of(design, model.degrees, model.scales, model.coefficients)
     jacobian, jump = jacobian_of(design, slopes, rise, broaden)
     parts = np.zeros_like(g)
     first = 1
@@ -214,11 +222,16 @@ def model_terms(model: KneeModel, x: FloatArray) -> ModelTerms:
 def jacobian_of(
     design: FloatArray, slopes: FloatArray, rise: FloatArray, broaden: FloatArray
 ) -> tuple[FloatArray, FloatArray]:
+    """Derivatives of the pressure against coefficients, knots and ln widths, (n, p + 2K), and the jump."""
+    p, k = design.shape[1], rise.shape[0]
     jump = slopes[1:] - slopes[:-1]
-    by_knot = -jump * rise
-    if jump.shape[0]:
-        by_knot[0] -= slopes[0]
-    return np.concatenate([design, by_knot.T, (jump * broaden).T], axis=1), jump
+    rows = np.empty((p + 2 * k, design.shape[0]))
+    rows[:p] = design.T
+    if k:
+        np.multiply(jump, -rise, out=rows[p : p + k])
+        rows[p] -= slopes[0]
+        np.multiply(jump, broaden, out=rows[p + k :])
+    return rows.T, jump
 
 
 def correlation_gain(residual: FloatArray) -> float:

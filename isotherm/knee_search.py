@@ -74,6 +74,7 @@ class _Pruning:
         self, x: FloatArray, y: FloatArray, sigma: FloatArray, cost: StretchCosts, scale: float
     ) -> None:
         self.x, self.y, self.sigma, self.cost, self.scale = x, y, sigma, cost, scale
+        self.weights = np.concatenate([[0.0], np.cumsum(sigma**-2.0)])
         self.cache: dict[tuple[int, int], Verdict | None] = {}
 
     def judge(self, a: int, b: int) -> Verdict | None:
@@ -151,8 +152,11 @@ class _Pruning:
 
     def _adequate(self, rss: float, a: int, b: int) -> bool:
         """Whether a weighted residual sum over nodes a to b is about what the noise leaves."""
-        floor = rounding_floor(self.y[a:b], 1.0 / self.sigma[a:b])
+        floor = self._floor(a, b)
         return rss <= ADEQUATE * self.scale * (b - a) + floor
+
+    def _floor(self, a: int, b: int) -> float:
+        return rounding_floor(self.y[a:b], float(self.weights[b] - self.weights[a]))
 
     def _add(self, found: list[int]) -> bool:
         """Put the best-supported knee inside a stretch back, if any is well supported."""
@@ -187,7 +191,7 @@ class _Pruning:
             elif not self._adequate(one.knee_rss, a, b):
                 continue
             m = b - a
-            floor = rounding_floor(self.y[a:b], 1.0 / self.sigma[a:b])
+            floor = self._floor(a, b)
             gain = m * np.log(min(apart, 1e300) + floor) + 11 * np.log(m) - one.bic
             if gain > best_gain:
                 best_gain, best_k, best_x = gain, k, one.knee.x
