@@ -9,7 +9,9 @@ from typing import Final
 import numpy as np
 from numpy.typing import NDArray
 
-__all__ = ["Candidate", "Verdict", "judge_knee", "rounding_floor"]
+from isotherm.lapack import orthonormal
+
+__all__ = ["Candidate", "Hinge", "Verdict", "judge_knee", "rounding_floor", "with_slopes"]
 
 FloatArray = NDArray[np.float64]
 
@@ -34,24 +36,37 @@ class Candidate:
 
 
 @dataclass(frozen=True)
-class Verdict:
-    """The best knee of a window: BIC and weighted residual sum of its model, and of the best polynomial's."""
+class Hinge:
+    """One rounded hinge on a window scaled to [-1, 1], and the polynomial degree beside it."""
 
-    knee: Candidate
+    at: float
+    width: float
+    degree: int
+    curved: bool
     bic: float
-    knee_rss: float
+    rss: float
+
+
+@dataclass(frozen=True)
+class Verdict:
+    """The best knee of a window, and the weighted residual sum of the best polynomial.
+
+    x, width : of the knee. evidence : for it (ΔBIC).
+    """
+
+    x: float
+    width: float
+    evidence: float
+    hinge: Hinge
     smooth_rss: float
 
 
-def judge_knee(
-    x: FloatArray, y: FloatArray, sigma: FloatArray, *, slopes: bool = False
-) -> Verdict | None:
+def judge_knee(x: FloatArray, y: FloatArray, sigma: FloatArray) -> Verdict | None:
     """The best single rounded knee in a window against the best smooth polynomial.
 
     Parameters
     ----------
     x, y, sigma : (n,) window of nodes, x increasing.
-    slopes : whether the moduli beside the knee are wanted; NaN otherwise.
 
     Returns
     -------
@@ -71,7 +86,7 @@ def judge_knee(
     log_n = math.log(n)
     smooth_degree = min(SMOOTH_DEGREE, n // 3)
     powers = _chebyshev(t, smooth_degree, weight)
-    q = np.linalg.qr(powers)[0]
+    q = orthonormal(powers)
     along = target @ q
     total = float(target @ target)
     floor = rounding_floor(y, float(weight @ weight))
@@ -95,27 +110,26 @@ def judge_knee(
         coarse.at + gap * _SHIFTS, coarse.width * (_FACTORS if n >= 16 else _FACTORS[1:2])
     )
     best = fine if fine is not None and fine.bic < coarse.bic else coarse
-    before, after = fitter.slopes(best, powers) if slopes else (math.nan, math.nan)
-    knee = Candidate(
-        centre + half * best.at,
-        half * best.width,
-        before / half,
-        after / half,
-        smooth[0] - best.bic,
+    return Verdict(
+        centre + half * best.at, half * best.width, smooth[0] - best.bic, best, smooth[1]
     )
-    return Verdict(knee, best.bic, best.rss, smooth[1])
 
 
-@dataclass(frozen=True)
-class _Hinge:
-    """One rounded hinge on a window scaled to [-1, 1], and the polynomial degree beside it."""
-
-    at: float
-    width: float
-    degree: int
-    curved: bool
-    bic: float
-    rss: float
+def with_slopes(verdict: Verdict, x: FloatArray, y: FloatArray, sigma: FloatArray) -> Candidate:
+    """The knee of a window with the moduli beside it; x, y, sigma : (n,) the window judged."""
+    centre, half = 0.5 * float(x[0] + x[-1]), 0.5 * float(x[-1] - x[0])
+    t = (x - centre) / half
+    weight = 1.0 / sigma
+    hinge = verdict.hinge
+    h = _rounded(t - hinge.at, np.asarray(hinge.width))
+    columns = [_chebyshev(t, hinge.degree, weight), (h * weight)[:, None]]
+    if hinge.curved:
+        columns.append((h * h * weight)[:, None])
+    c = np.linalg.lstsq(np.concatenate(columns, axis=1), y * weight, rcond=None)[0]
+    derivative = np.polynomial.chebyshev.chebder(c[: hinge.degree + 1])
+    before = float(np.polynomial.chebyshev.chebval(hinge.at, derivative))
+    after = before + float(c[hinge.degree + 1])
+    return Candidate(verdict.x, verdict.width, before / half, after / half, verdict.evidence)
 
 
 @dataclass(frozen=True)
@@ -134,7 +148,7 @@ class _HingeFitter:
     total: float
     floor: float
 
-    def best(self, positions: FloatArray, widths: FloatArray) -> _Hinge | None:
+    def best(self, positions: FloatArray, widths: FloatArray) -> Hinge | None:
         """The hinge of lowest BIC at any of the positions and widths, beside degrees 1, 2 and 3.
 
         Shapes below: (d, g) for d degrees and g hinges. What is left of a column beside a polynomial is
@@ -188,7 +202,7 @@ class _HingeFitter:
         where: NDArray[np.intp],
         positions: FloatArray,
         widths: FloatArray,
-    ) -> _Hinge | None:
+    ) -> Hinge | None:
         """The hinge of lowest BIC among the best of each degree, alone and with its square."""
         n = self.t.size
         log_n = math.log(n)
@@ -208,18 +222,7 @@ class _HingeFitter:
         if not degree:
             return None
         position, width = divmod(at, widths.size)
-        return _Hinge(float(positions[position]), float(widths[width]), degree, curved, bic, left)
-
-    def slopes(self, hinge: _Hinge, powers: FloatArray) -> tuple[float, float]:
-        """Slopes just left and right of the hinge, per unit of t."""
-        h = _rounded(self.t - hinge.at, np.asarray(hinge.width))
-        columns = [powers[:, : hinge.degree + 1], (h * self.weight)[:, None]]
-        if hinge.curved:
-            columns.append((h * h * self.weight)[:, None])
-        c = np.linalg.lstsq(np.concatenate(columns, axis=1), self.target, rcond=None)[0]
-        derivative = np.polynomial.chebyshev.chebder(c[: hinge.degree + 1])
-        before = float(np.polynomial.chebyshev.chebval(hinge.at, derivative))
-        return before, before + float(c[hinge.degree + 1])
+        return Hinge(float(positions[position]), float(widths[width]), degree, curved, bic, left)
 
 
 def _chebyshev(t: FloatArray, degree: int, weight: FloatArray) -> FloatArray:

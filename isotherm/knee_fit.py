@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from typing import Final
 
 import numpy as np
@@ -16,6 +17,7 @@ from isotherm.knee_model import (
     scales_of,
     slopes_of,
 )
+from isotherm.lapack import orthonormal, solve_positive
 
 __all__ = ["INDIFFERENT", "WIDEST", "choose_degrees", "fit_knees"]
 
@@ -52,27 +54,42 @@ def choose_degrees(
     floor = float(np.sum(sigma**-2.0)) * (INDIFFERENT * max(float(np.ptp(y)), 1e-9)) ** 2
     degrees = [min(1, h) for h in highest]
     weight = 1.0 / sigma
-    target = y * weight
     n = x.size
-    while True:
-        design = design_matrix(g, tuple(degrees), scales) * weight[:, None]
-        q, _ = np.linalg.qr(design)
-        residual = target - q @ (q.T @ target)
-        open_stretches = [j for j, d in enumerate(degrees) if d < highest[j]]
-        if not open_stretches:
-            return tuple(degrees)
-        extra = np.stack(
-            [(g[j] / scales[j]) ** (degrees[j] + 1) * weight for j in open_stretches], axis=1
-        )
-        extra -= q @ (q.T @ extra)
-        size = np.maximum(np.sum(extra**2, axis=0), 1e-300)
-        gain = (extra.T @ residual) ** 2 / size
+    basis = np.empty((1 + sum(highest), n))  # orthonormal rows, `used` of them so far
+    start = orthonormal(design_matrix(g, tuple(degrees), scales) * weight[:, None])
+    used = start.shape[1]
+    basis[:used] = start.T
+
+    def left_of(row: FloatArray) -> FloatArray:
+        for _ in range(2):  # once more for what rounding left of the first time
+            row = row - (basis[:used] @ row) @ basis[:used]
+        return row
+
+    residual = left_of(y * weight)
+    scaled = g / scales[:, None]
+    powers = {j: scaled[j] ** (d + 1) * weight for j, d in enumerate(degrees) if d < highest[j]}
+    extra = {j: left_of(row) for j, row in powers.items()}
+    while extra:
+        gains = {
+            j: float(row @ residual) ** 2 / max(float(row @ row), 1e-300)
+            for j, row in extra.items()
+        }
+        best = max(gains, key=gains.__getitem__)
         rss = float(residual @ residual)
-        best = int(np.argmax(gain))
-        left = max(rss - float(gain[best]), 0.0) + floor
-        if n * np.log((rss + floor) / left) < np.log(n) + 2.0:
-            return tuple(degrees)
-        degrees[open_stretches[best]] += 1
+        left = max(rss - gains[best], 0.0) + floor
+        if n * math.log((rss + floor) / left) < math.log(n) + 2.0:
+            break
+        degrees[best] += 1
+        new = extra.pop(best)
+        basis[used] = new = new / math.sqrt(max(float(new @ new), 1e-300))
+        used += 1
+        residual = residual - float(new @ residual) * new
+        for j, row in extra.items():
+            extra[j] = row - float(new @ row) * new
+        if degrees[best] < highest[best]:
+            powers[best] = powers[best] * scaled[best]
+            extra[best] = left_of(powers[best])
+    return tuple(degrees)
 
 
 def fit_knees(
@@ -114,7 +131,8 @@ def fit_knees(
     closest = 0.02 * np.minimum(gaps, 1.0)
     room = np.minimum(gaps[:-1], gaps[1:])
     floor = np.maximum(np.minimum(0.1 * spacing, 0.02 * room), 1e-9)
-    widths = np.clip(widths, floor, widest * room)
+    stride, ceiling = 0.3 * room, widest * room
+    widths = np.maximum(np.minimum(widths, ceiling), floor)
     prior_mean = np.log(np.maximum(room, 1e-9)) + PRIOR_LOG_WIDTH
     known = np.zeros(k) if knot_u is None else knot_u**-2.0
     anchors = knots.copy()
@@ -170,11 +188,15 @@ def fit_knees(
         for _ in range(6):
             trust = scaled.copy()
             trust.flat[:: trust.shape[0] + 1] += damping + 1e-10
-            step = unit * np.linalg.solve(trust, unit * right)
-            new_knots = knots + np.clip(step[p : p + k], -0.3 * room, 0.3 * room)
-            new_widths = np.clip(
-                widths * np.exp(np.clip(step[p + k :], -1.0, 1.0)), floor, widest * room
-            )
+            solved_step = solve_positive(trust, unit * right)
+            if solved_step is None:
+                damping *= 8.0
+                continue
+            step = unit * solved_step
+            moved = np.maximum(np.minimum(step[p : p + k], stride), -stride)
+            new_knots = knots + moved
+            factor = np.exp(np.maximum(np.minimum(step[p + k :], 1.0), -1.0))
+            new_widths = np.maximum(np.minimum(widths * factor, ceiling), floor)
             edges = np.concatenate([[x[0]], new_knots, [x[-1]]])
             if np.all(edges[1:] - edges[:-1] > closest):
                 trial = coefficients + step[:p]

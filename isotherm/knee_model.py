@@ -177,7 +177,7 @@ def design_matrix(g: FloatArray, degrees: tuple[int, ...], scales: FloatArray) -
 def slopes_of(
     design: FloatArray, degrees: tuple[int, ...], scales: FloatArray, coefficients: FloatArray
 ) -> FloatArray:
-    """dp_j/dg_j for every stretch, (K+1, n), from the columns of the fit: a power's slope is the one below."""
+    """dp_j/dg_j of every stretch, (K+1, n), from the columns of the fit: a power slopes as the one below."""
     by_column = np.zeros((len(degrees), coefficients.size))
     position = 1
     for j, degree in enumerate(degrees):

@@ -7,7 +7,7 @@ from typing import Final
 import numpy as np
 from numpy.typing import NDArray
 
-from isotherm.knee_evidence import Candidate, Verdict, judge_knee, rounding_floor
+from isotherm.knee_evidence import Candidate, Verdict, judge_knee, rounding_floor, with_slopes
 from isotherm.partition import StretchCosts, best_subset
 
 __all__ = ["propose", "search"]
@@ -76,6 +76,7 @@ class _Pruning:
         self.x, self.y, self.sigma, self.cost, self.scale = x, y, sigma, cost, scale
         self.weights = np.concatenate([[0.0], np.cumsum(sigma**-2.0)])
         self.cache: dict[tuple[int, int], Verdict | None] = {}
+        self.costs: dict[tuple[int, ...], float] = {}
 
     def judge(self, a: int, b: int) -> Verdict | None:
         if (a, b) not in self.cache:
@@ -101,7 +102,11 @@ class _Pruning:
         at = stops[k + 1]
         for _ in range(HALVINGS):
             verdict = self.judge(a, b)
-            if b - a < SMALLEST_WINDOW or verdict is None or self._adequate(verdict.knee_rss, a, b):
+            if (
+                b - a < SMALLEST_WINDOW
+                or verdict is None
+                or self._adequate(verdict.hinge.rss, a, b)
+            ):
                 break
             a, b = at - (at - a + 1) // 2, at + (b - at + 1) // 2
         return a, b
@@ -124,11 +129,11 @@ class _Pruning:
             stops = [0, *found, self.x.size]
             windows = [self.near(stops, k) for k in range(len(found))]
             verdicts = [self.judge(a, b) for a, b in windows]
-            scores = [v.knee.evidence if v is not None else -np.inf for v in verdicts]
+            scores = [v.evidence if v is not None else -np.inf for v in verdicts]
             # where neither model describes its window, the window holds more than one knee: keep it
             unclear = [
                 v is not None
-                and v.knee.evidence > -EVIDENCE
+                and v.evidence > -EVIDENCE
                 and not self._adequate(v.smooth_rss, *window)
                 for v, window in zip(verdicts, windows, strict=True)
             ]
@@ -145,9 +150,9 @@ class _Pruning:
         out = []
         for k in range(len(stops) - 2):
             a, b = self.near(stops, k)
-            verdict = judge_knee(self.x[a:b], self.y[a:b], self.sigma[a:b], slopes=True)
+            verdict = self.judge(a, b)
             if verdict is not None:
-                out.append(verdict.knee)
+                out.append(with_slopes(verdict, self.x[a:b], self.y[a:b], self.sigma[a:b]))
         return out
 
     def _adequate(self, rss: float, a: int, b: int) -> bool:
@@ -155,19 +160,25 @@ class _Pruning:
         floor = self._floor(a, b)
         return rss <= ADEQUATE * self.scale * (b - a) + floor
 
+    def _apart(self, *edges: int) -> float:
+        """Cost of the stretches between the edges, a parabola each."""
+        if edges not in self.costs:
+            self.costs[edges] = float(self.cost(np.array(edges[:-1]), np.array(edges[1:])).sum())
+        return self.costs[edges]
+
     def _floor(self, a: int, b: int) -> float:
         return rounding_floor(self.y[a:b], float(self.weights[b] - self.weights[a]))
 
     def _add(self, found: list[int]) -> bool:
         """Put the best-supported knee inside a stretch back, if any is well supported."""
         stops = [0, *found, self.x.size]
-        best: Candidate | None = None
+        best: Verdict | None = None
         for k in range(len(stops) - 1):
             verdict = self.judge(*self.window(stops, k, k + 1))
-            if verdict is None or verdict.knee.evidence < EVIDENCE:
+            if verdict is None or verdict.evidence < EVIDENCE:
                 continue
-            if best is None or verdict.knee.evidence > best.evidence:
-                best = verdict.knee
+            if best is None or verdict.evidence > best.evidence:
+                best = verdict
         if best is None:
             return False
         at = int(np.searchsorted(self.x, best.x))
@@ -185,16 +196,16 @@ class _Pruning:
             if one is None:
                 continue
             p, q = stops[k + 1], stops[k + 2]
-            apart = float(np.sum(self.cost(np.array([a, p, q]), np.array([p, q, b]))))
+            apart = self._apart(a, p, q, b)
             if self._rounding(stops, k):
                 apart = np.inf
-            elif not self._adequate(one.knee_rss, a, b):
+            elif not self._adequate(one.hinge.rss, a, b):
                 continue
             m = b - a
             floor = self._floor(a, b)
-            gain = m * np.log(min(apart, 1e300) + floor) + 11 * np.log(m) - one.bic
+            gain = m * np.log(min(apart, 1e300) + floor) + 11 * np.log(m) - one.hinge.bic
             if gain > best_gain:
-                best_gain, best_k, best_x = gain, k, one.knee.x
+                best_gain, best_k, best_x = gain, k, one.x
         if best_k < 0:
             return False
         at = int(np.searchsorted(self.x, best_x))

@@ -174,14 +174,14 @@ def _with_rows(
     if chosen.size == 0:
         return nodes.x[keep], nodes.pressure[keep], nodes.sigma[keep]
     parts = max(2, budget // chosen.size)
-    starts: list[NDArray[np.int64]] = []
-    stops: list[NDArray[np.int64]] = []
-    for i in chosen:
-        count = int(nodes.count[i])
-        cuts = nodes.first[i] + np.linspace(0, count, min(count, parts) + 1).astype(np.int64)
-        starts.append(cuts[:-1])
-        stops.append(cuts[1:])
-    a, b = np.concatenate(starts), np.concatenate(stops)
+    pieces = np.minimum(nodes.count[chosen], parts).astype(np.int64)
+    part = np.arange(int(pieces.sum())) - np.repeat(np.cumsum(pieces) - pieces, pieces)
+    first, count = (
+        np.repeat(v.astype(np.int64), pieces) for v in (nodes.first[chosen], nodes.count[chosen])
+    )
+    shares = np.repeat(pieces, pieces)
+    a = first + part * count // shares
+    b = first + (part + 1) * count // shares
     counts = (b - a).astype(np.float64)
     # sums of rows by running totals: a and b need not be contiguous between nodes
     low, high = int(a.min()), int(b.max())
@@ -191,7 +191,7 @@ def _with_rows(
     mean_pressure = (total_pressure[b - low] - total_pressure[a - low]) / counts
     far = keep & ~near
     floor = np.sqrt(np.maximum(nodes.sigma**2 - nodes.noise**2 / nodes.count, 0.0))
-    per_part = np.repeat(floor[chosen], [s.size for s in starts])
+    per_part = np.repeat(floor[chosen], pieces)
     x = np.concatenate([nodes.x[far], -np.log(mean_area)])
     y = np.concatenate([nodes.pressure[far], mean_pressure])
     s = np.concatenate([nodes.sigma[far], np.sqrt(nodes.noise**2 / counts + per_part**2)])
