@@ -20,8 +20,20 @@ FloatArray = NDArray[np.float64]
 # Moves that took clearly more film than noise carry the search; more of them than this add nothing.
 _MOST_MOVES = 16
 _CLEAR = 8.0
+# ... and clearly some film: this part of the area that passed (what is less may be creep put down wrongly).
+_CLEAR_PART = 0.1
+_LEAST_BINS = 4
 # Difference of chi-squared, scaled to the best fit, at which the data decide the sign: odds beyond 1e4.
 _DECIDED = 20.0
+# Sheet and data disagree about the surface when they differ by more than this, mm, and by this many u: a
+# meniscus of a millimetre or two moves where the film starts to go.
+_AGREES = 0.5
+_ODDS = 3.0
+# Where nothing shows the contact, it is put at the end of the travel with this part of the travel as u: the
+# edge is lifted clear by a few mm of some tens, or stays in the water (practice).
+_UNSEEN_PART = 0.2
+# Where the edge stays in the water, how far beyond the travel the surface is put, mm: any place does.
+_BEYOND = 1.0
 
 
 @dataclass(frozen=True)
@@ -68,7 +80,7 @@ def find_contact(
     Contact
     """
     said_reads, said_at = sheet.dipping.position_reads, sheet.dipping.surface_at
-    clear = [c for c in curves if c.total > _CLEAR * c.u_total and c.reading.size >= 4]
+    clear = [c for c in curves if c.reading.size >= _LEAST_BINS and _took(c, geometry)]
     clear.sort(key=lambda c: -c.total / c.u_total)
     clear = clear[:_MOST_MOVES]
     searches: dict[str, ContactSearch] = {}
@@ -80,15 +92,8 @@ def find_contact(
     )
     search = searches.get(reads)
     if said_at is not None:
-        found = None
-        if search is not None and not search.outside:
-            found = Quantity(search.at, search.u, "mm")
-            gap = abs(search.at - said_at.value)
-            if gap > 3.0 * float(np.hypot(search.u, said_at.u or 0.0)) and gap > 0.5:
-                warnings.append(
-                    f"transfer starts at {search.at:.2f} mm, the sheet puts the surface at "
-                    f"{said_at.value:.2f} mm; the sheet's reading was used"
-                )
+        found, told = _against(search, reads, said_at, travel)
+        warnings.extend(told)
         return Contact(reads, reads_from, said_at, "sheet", found, warnings=tuple(warnings))
     if search is None:
         end = travel[0] if reads == "depth" else travel[1]
@@ -97,25 +102,80 @@ def find_contact(
             f"travel ({end:.2f} mm) was taken: give dipping.surface_at"
         )
         span = travel[1] - travel[0]
-        doubtful = Quantity(end, 0.1 * span, "mm")
+        doubtful = Quantity(end, _UNSEEN_PART * span, "mm")
         return Contact(reads, reads_from, doubtful, "assumed", warnings=tuple(warnings))
     if search.outside:
-        warnings.append(
-            "the film was taken over the whole travel: the lower edge was taken to stay in the water; "
-            "give dipping.surface_at if it does not"
-        )
-        beyond = 1.0
-        at = travel[0] - beyond if reads == "depth" else travel[1] + beyond
-        quantity = Quantity(at, None, "mm")
-        return Contact(
-            reads, reads_from, quantity, "data", always_wet=True, warnings=tuple(warnings)
-        )
+        # a sign that was only assumed may be the other one
+        either = searches.values() if reads_from == "assumed" else (search,)
+        at, told = _always_wet(reads, max(s.reach for s in either), geometry, travel)
+        warnings.extend(told)
+        return Contact(reads, reads_from, at, "data", always_wet=True, warnings=tuple(warnings))
     quantity = Quantity(search.at, search.u, "mm")
     warnings.append(
         f"surface contact found from where transfer starts: {search.at:.2f} mm "
         f"± {2 * search.u:.2f} mm (k = 2); the meniscus may shift it between strokes"
     )
     return Contact(reads, reads_from, quantity, "data", quantity, warnings=tuple(warnings))
+
+
+def _against(
+    search: ContactSearch | None, reads: str, said: Quantity, travel: tuple[float, float]
+) -> tuple[Quantity | None, list[str]]:
+    """What the data say beside the sheet's surface, and a warning where both cannot be true."""
+    if search is None:
+        return None, []
+    if search.outside:
+        in_air = said.value - travel[0] if reads == "depth" else travel[1] - said.value
+        if in_air - search.reach > max(_AGREES, _ODDS * (said.u or 0.0)):
+            return None, [
+                f"film was taken over the whole travel, the sheet puts {in_air:.1f} mm of it in air; "
+                "the sheet's reading was used: check dipping.surface_at"
+            ]
+        return None, []
+    gap = abs(search.at - said.value)
+    warnings = []
+    if gap > max(_AGREES, _ODDS * float(np.hypot(search.u, said.u or 0.0))):
+        warnings.append(
+            f"transfer starts at {search.at:.2f} mm, the sheet puts the surface at "
+            f"{said.value:.2f} mm; the sheet's reading was used"
+        )
+    return Quantity(search.at, search.u, "mm"), warnings
+
+
+def _took(curve: RemovalCurve, geometry: Geometry) -> bool:
+    """Whether a move took enough film to show where it began to go."""
+    passed = float(geometry.coated(np.asarray([abs(curve.end - curve.start)]))[0])
+    return curve.total > max(_CLEAR * curve.u_total, _CLEAR_PART * passed)
+
+
+def _always_wet(
+    reads: str, reach: float, geometry: Geometry, travel: tuple[float, float]
+) -> tuple[Quantity, list[str]]:
+    """Stand-in for the contact of a substrate that stays in the water, and what to say of it.
+
+    reach : mm of the travel, from its air end, that may lie in air. Only such a doubt, and a width that
+    changes with height, make the place matter.
+    """
+    said = (
+        "the film was taken over the whole travel: the lower edge was taken to stay in the water; "
+        "give dipping.surface_at if it does not"
+    )
+    span = travel[1] - travel[0]
+    beyond, u = _BEYOND, None
+    warnings = []
+    spare = float(geometry.heights[-1]) - span
+    if np.ptp(geometry.perimeters) > 0 and spare > 0:
+        # any part of the body may be the one that crosses: between lower edge and top at the surface
+        beyond, u = 0.5 * spare, 0.5 * spare / float(np.sqrt(3.0))
+        warnings.append(
+            "the substrate's width changes with height and its immersion is not known: the coated "
+            "areas are those of its middle, with a wide uncertainty; give dipping.surface_at"
+        )
+    if reach > 0.0:
+        u = max(u or 0.0, 0.5 * (reach + beyond))
+        said += f" (up to {reach:.1f} mm of the travel may lie in air: the data do not tell)"
+    at = travel[0] - beyond if reads == "depth" else travel[1] + beyond
+    return Quantity(at, u, "mm"), [said, *warnings]
 
 
 def _sign(

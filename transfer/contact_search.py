@@ -19,6 +19,8 @@ _GRID = 120
 _CAP = 60.0
 # How much worse "edge always in water" must fit before a contact inside the travel is believed.
 _INSIDE = 6.0
+# Places that fit worse than the best by less than this (two standard deviations) are not excluded.
+_NOT_EXCLUDED = 4.0
 # Delays between dipper and trough area to try, s: the film leaves the water line, and the barriers follow,
 # a little late.
 _DELAYS = (0.0, 0.5, 1.0, 2.0, 4.0, 8.0)
@@ -32,7 +34,8 @@ _LEAST_ROWS = 3
 class ContactSearch:
     """Best reading for one sign, mm, with its u; delay in s; score (chi-squared, scaled and capped).
 
-    outside : the best fit has the edge in the water throughout.
+    outside : the data do not exclude that the edge is in the water throughout. reach : how far inside the
+    travel, mm from its air end, the contact lies or, where outside, could lie all the same.
     """
 
     at: float
@@ -40,6 +43,7 @@ class ContactSearch:
     delay: float
     score: float
     outside: bool
+    reach: float
 
 
 def chi_squared(
@@ -121,9 +125,10 @@ def search_contact(
         outside = at_grid == 0 or float(score[:, 0].min()) - best < _INSIDE
         coarse, delay = float(grids[reads][at_grid]), delays[at_delay]
         u = 0.1 * (travel[1] - travel[0])
+        reach = _reach(grids[reads], score.min(axis=0), reads, travel)
         if not outside:
             coarse, u, delay = _refine(curves, geometry, reads, travel, coarse, delay)
-        out[reads] = ContactSearch(coarse, u, delay, best, bool(outside))
+        out[reads] = ContactSearch(coarse, u, delay, best, bool(outside), reach)
     return out
 
 
@@ -134,6 +139,13 @@ def _grid(reads: str, travel: tuple[float, float]) -> FloatArray:
     beyond = low - 0.2 * span if reads == "depth" else high + 0.2 * span
     inside = np.linspace(low - 0.02 * span, high + 0.02 * span, _GRID + 1)
     return np.concatenate([[beyond], inside])
+
+
+def _reach(grid: FloatArray, profile: FloatArray, reads: str, travel: tuple[float, float]) -> float:
+    """How far inside the travel, mm from its air end, the deepest place lies that is not excluded."""
+    places = grid[profile - profile.min() < _NOT_EXCLUDED]
+    inward = places - travel[0] if reads == "depth" else travel[1] - places
+    return max(0.0, float(inward.max()))
 
 
 def _delayed(curve: RemovalCurve, delay: float) -> FloatArray:

@@ -105,7 +105,7 @@ def transfer_ratios(
         line = geometry.perimeter_at(max(passage.shallow, 0.0)) / 10.0  # cm^2 per mm
         deep_line = geometry.perimeter_at(passage.deep) / 10.0
         crossing = passage.shallow <= 0.0
-        by_contact[s] = contact_u * (deep_line if crossing else deep_line - line)
+        by_contact[s] = _by_contact(geometry, passage, contact_u)
         ends = [motion.rests[int(nodes.rest[n])] for n in (passage.nodes[0], passage.nodes[-1])]
         levels = [end.u_level for end in ends]
         deep_end = 1 if passage.direction == "down" else 0
@@ -144,6 +144,18 @@ def transfer_ratios(
             "contact": np.abs(contact_part),
         },
     )
+
+
+def _by_contact(geometry: Geometry, passage: Passage, u: float) -> float:
+    """Change of the coated area, cm^2, with one u (mm) of the surface's place; positive: more when higher.
+
+    Taken over two u to the side that matters more: where the edge comes to rest near the surface, one side
+    lifts it into air and the other changes nothing.
+    """
+    shifts = 2.0 * u * np.asarray([-1.0, 0.0, 1.0])
+    area = geometry.coated(passage.deep + shifts) - geometry.coated(passage.shallow + shifts)
+    lower, upper = area[0] - area[1], area[2] - area[1]
+    return 0.5 * float(upper if abs(upper) >= abs(lower) else -lower)
 
 
 def _middle(passage: Passage, motion: Motion, move: int, contact: Contact) -> float:

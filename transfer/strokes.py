@@ -146,7 +146,8 @@ def _least(motion: Motion, contact: Contact) -> float:
     """Smallest change of immersion, mm, that is a stroke in this log."""
     levels = [rest.level for rest in motion.rests]
     travel = max(levels) - min(levels)
-    u = (contact.at.u or 0.0) if contact.at is not None and contact.at_from == "data" else 0.0
+    found = contact.at_from == "data" and not contact.always_wet
+    u = (contact.at.u or 0.0) if contact.at is not None and found else 0.0
     return max(_LEAST_PART * travel, _LEAST_MM, _LEAST_U * u)
 
 
