@@ -21,7 +21,7 @@ FloatArray = NDArray[np.float64]
 _MOST_MOVES = 16
 _CLEAR = 8.0
 # ... and clearly some film: this part of the area that passed (what is less may be creep put down wrongly).
-_CLEAR_PART = 0.1
+_CLEAR_PART = 0.02
 _LEAST_BINS = 4
 # Difference of chi-squared, scaled to the best fit, at which the data decide the sign: odds beyond 1e4.
 _DECIDED = 20.0
