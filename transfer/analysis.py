@@ -22,7 +22,7 @@ from transfer.ratio_noise import variance_inflation
 from transfer.result import TransferResult
 from transfer.strokes import find_strokes
 from transfer.strokes_motion import Motion, find_motion
-from transfer.strokes_pressure import Pressure, find_holds
+from transfer.strokes_pressure import Hold, Pressure, find_holds
 
 __all__ = ["analyse_log"]
 
@@ -77,13 +77,7 @@ def analyse_log(
         tolerance=sheet.dipping.tolerance.value if sheet.dipping.tolerance is not None else 0.0,
         moves=tuple((m.first, m.last) for m in motion.moves),
     )
-    if not held.holds:
-        raise UpstrokeError(
-            "the pressure is never held long enough to judge a stroke",
-            where=where,
-            remedy="check the pressure column, and dipping.pressure in the sheet",
-        )
-    longest = max(held.holds, key=lambda hold: hold.last - hold.first)
+    longest = _longest_hold(log, motion, held)
     if target is None:
         warnings.append(
             f"dipping.pressure not given: areas are referred to the pressure held, "
@@ -142,6 +136,31 @@ def analyse_log(
         reference=reference,
         warnings=warnings,
     )
+
+
+def _longest_hold(log: DippingLog, motion: Motion, held: Pressure) -> Hold:
+    """Return the longest hold; refuse a log whose film is held through no move of the dipper."""
+    if not held.holds:
+        raise UpstrokeError(
+            "the pressure is never held long enough to judge a stroke",
+            where=log.source.path,
+            remedy="check the pressure column, and dipping.pressure in the sheet",
+        )
+    longest = max(held.holds, key=lambda hold: hold.last - hold.first)
+    through = any(
+        hold.first <= move.first + 1 and hold.last >= move.last - 1
+        for hold in held.holds
+        for move in motion.moves
+    )
+    if not through:
+        seconds = log.time[longest.last] - log.time[longest.first]
+        raise UpstrokeError(
+            "the pressure is held through no move of the dipper (longest hold "
+            f"{seconds:.0f} s, at {longest.pressure:.1f} mN/m)",
+            where=log.source.path,
+            remedy="check the pressure and position columns; a compression is read by upstroke isotherm",
+        )
+    return longest
 
 
 def _curves(

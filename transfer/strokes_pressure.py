@@ -19,6 +19,10 @@ _BAND = 0.5
 _BAND_TOLERANCE = 1.5
 # Scatter of the held pressure may widen it.
 _BAND_SCATTER = 5.0
+# It is taken from the pressures this near the set point, mN/m. Of a ramp, which crowds about no pressure,
+# half lie within half of that: a median distance of this part or more is no scatter about a set point.
+_NEAR = 3.0
+_CROWDED = 0.4
 # A dip that comes with a move (the controller lagging behind a fast stroke) does not end the hold, up to
 # this part of the pressure; deeper ones, or ones that last while the dipper rests, are a lost film.
 _DIP_PART = 0.5
@@ -107,9 +111,7 @@ def find_holds(
     center = _mode(smooth, 4.0 * _BAND)
     if target is not None and np.mean(np.abs(smooth - target) <= 2.0 * _BAND) > 0.2:
         center = target
-    near = smooth[np.abs(smooth - center) <= 6.0 * _BAND]
-    middle = float(np.median(near)) if near.size else center
-    scatter = 1.4826 * float(np.median(np.abs(near - middle))) if near.size else 0.0
+    middle, scatter = _middle(smooth, center)
     band = max(_BAND, _BAND_SCATTER * scatter, _BAND_TOLERANCE * tolerance)
 
     label = np.full(time.size, -1, dtype=np.intp)
@@ -164,6 +166,16 @@ def find_holds(
         steady[first : last + 1] = label[first : last + 1] == which
         out.append(Hold(first, last, value, spread))
     return Pressure(tuple(out), _interruptions(out, area, smooth, band), steady, band)
+
+
+def _middle(pressure: FloatArray, center: float) -> tuple[float, float]:
+    """Middle of the pressures near one, and their scatter (0 where they crowd about none), mN/m."""
+    near = pressure[np.abs(pressure - center) <= _NEAR]
+    if near.size == 0:
+        return center, 0.0
+    middle = float(np.median(near))
+    apart = float(np.median(np.abs(near - middle)))
+    return middle, 1.4826 * apart if apart < _CROWDED * _NEAR else 0.0
 
 
 def _median3(values: FloatArray) -> FloatArray:
