@@ -90,6 +90,11 @@ def test_the_walk_through_shows_what_the_commands_print_today(
 
 
 @pytest.mark.slow
-def test_the_picture_is_what_the_command_draws_today() -> None:
-    drawn = WALK.picture()
-    assert drawn == WALK.PICTURE.read_bytes(), "run python demo/walk_through.py"
+def test_the_picture_says_what_the_command_draws_today() -> None:
+    """Every text in it, which stands in a comment before its outline; strokes differ between releases."""
+    drawn, kept = (
+        re.findall(rb"<!-- (.*?) -->", picture)
+        for picture in (WALK.picture(), WALK.PICTURE.read_bytes())
+    )
+    assert len(kept) > 20
+    assert drawn == kept, "run python demo/walk_through.py"
