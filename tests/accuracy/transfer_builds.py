@@ -17,7 +17,10 @@ KIND_SHARES = (0.30, 0.10, 0.10, 0.10, 0.10, 0.12, 0.06, 0.12)
 
 @dataclass(frozen=True)
 class Build:
-    """ratios : (n,) TR intended for each stroke; first : direction of stroke 1; drop_after : or None."""
+    """ratios : (n,) TR intended for each stroke; first : direction of stroke 1; drop_after : or None.
+
+    one_sided : only every other stroke after the drop takes less, those of one direction.
+    """
 
     kind: str
     type: str
@@ -25,6 +28,7 @@ class Build:
     ratios: NDArray[np.float64]
     drop_after: int | None
     steady: bool
+    one_sided: bool = False
 
     def direction(self, index: int) -> str:
         """Direction of stroke `index` (from 0)."""
@@ -74,19 +78,22 @@ def draw_build(rng: np.random.Generator) -> Build:
         down_level, up_level = (down_level, weak) if rng.random() < 0.6 else (weak, up_level)
     down = np.array([(i % 2 == 0) == (first == "down") for i in range(count)])
     ratios = np.where(down, down_level, up_level) + scatter * rng.standard_normal(count)
-    drop_after = None
+    drop_after, one_sided = None, False
     if kind == "fading":
         ratios *= np.linspace(1.0, float(rng.uniform(0.5, 0.8)), count)
     elif kind == "drop":
         drop_after = count // 2 + int(rng.integers(-1, 2))
-        ratios[drop_after:] *= DROP
+        # settled by what was drawn already, so that all other builds stay as they were
+        one_sided = count % 3 == 0
+        step = 2 if one_sided else 1
+        ratios[drop_after::step] *= DROP
     elif kind == "peel":
         ratios[int(rng.integers(3, count))] = float(rng.uniform(-0.9, -0.3))
     elif kind == "wetting":  # first is "down": a wetting substrate takes its first layer going up
         ratios[0] = 0.005 * float(rng.standard_normal())
     type_ = kind if kind in ("X", "Z", "XY") else "Y"
     steady = kind == "Y"
-    return Build(kind, type_, first, ratios, drop_after, steady)
+    return Build(kind, type_, first, ratios, drop_after, steady, one_sided)
 
 
 def decidable_type(build: Build, judgeable: list[bool], true: list[float]) -> str | None:
@@ -94,7 +101,10 @@ def decidable_type(build: Build, judgeable: list[bool], true: list[float]) -> st
 
     A first stroke that takes nothing says nothing (the substrate may be wetting), a type needs a stroke in
     each direction besides it, and where up and down differ by 13 to 25 % Y and XY are a matter of taste.
+    So are they where one direction falls on the way.
     """
+    if build.one_sided:
+        return None
     seen: dict[str, list[float]] = {"down": [], "up": []}
     for index, usable in enumerate(judgeable):
         if usable and not (index == 0 and abs(build.ratios[0]) < 0.1):
