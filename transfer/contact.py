@@ -20,7 +20,7 @@ FloatArray = NDArray[np.float64]
 # Moves that took clearly more film than noise carry the search; more of them than this add nothing.
 _MOST_MOVES = 16
 _CLEAR = 8.0
-# ... and clearly some film: this part of the area that passed (what is less may be creep put down wrongly).
+# ... but one at least must have taken this part of the area that passed: less may be creep put down wrongly.
 _CLEAR_PART = 0.02
 _LEAST_BINS = 4
 # Difference of chi-squared, scaled to the best fit, at which the data decide the sign: odds beyond 1e4.
@@ -80,7 +80,9 @@ def find_contact(
     Contact
     """
     said_reads, said_at = sheet.dipping.position_reads, sheet.dipping.surface_at
-    clear = [c for c in curves if c.reading.size >= _LEAST_BINS and _took(c, geometry)]
+    clear = [c for c in curves if c.total > _CLEAR * c.u_total and c.reading.size >= _LEAST_BINS]
+    if not any(_took(curve, geometry) for curve in clear):
+        clear = []
     clear.sort(key=lambda c: -c.total / c.u_total)
     clear = clear[:_MOST_MOVES]
     searches: dict[str, ContactSearch] = {}
@@ -143,9 +145,9 @@ def _against(
 
 
 def _took(curve: RemovalCurve, geometry: Geometry) -> bool:
-    """Whether a move took enough film to show where it began to go."""
+    """Whether a move took a part of the area that passed."""
     passed = float(geometry.coated(np.asarray([abs(curve.end - curve.start)]))[0])
-    return curve.total > max(_CLEAR * curve.u_total, _CLEAR_PART * passed)
+    return curve.total > _CLEAR_PART * passed
 
 
 def _always_wet(
