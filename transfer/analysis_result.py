@@ -313,9 +313,11 @@ def _geometry_json(geometry: Geometry, sheet: RunSheet) -> dict[str, Any]:
             if quantity is not None:
                 out[key] = quantity.to_json()
     out["perimeter"] = Quantity(
-        float(geometry.perimeters[0]), float(geometry.u_perimeters[0]), "mm"
+        float(geometry.perimeters[0]), float(np.linalg.norm(geometry.u_perimeters[:, 0])), "mm"
     ).to_json()
-    out["lower_face"] = Quantity(geometry.face, geometry.u_face, "cm^2").to_json()
+    out["lower_face"] = Quantity(
+        geometry.face, float(np.linalg.norm(geometry.u_face)), "cm^2"
+    ).to_json()
     return out
 
 

@@ -23,8 +23,8 @@ class Geometry:
     """A substrate as the water line sees it; heights above the lower edge, all lengths mm.
 
     heights, perimeters : (m,) perimeter of the cross section at each height, linear in between.
-    face : area of the lower face, cm^2. u_perimeter : (m,) standard uncertainty of the perimeter, wholly
-    common to all heights. u_face : cm^2. height : usable height of the substrate, or None where unknown.
+    face : area of the lower face, cm^2. u_perimeters : (k, m) mm and u_face : (k,) cm^2, what one standard
+    uncertainty of each of k independent dimensions changes. height : usable height, or None where unknown.
     """
 
     shape: str
@@ -32,7 +32,7 @@ class Geometry:
     perimeters: FloatArray
     u_perimeters: FloatArray
     face: float
-    u_face: float
+    u_face: FloatArray
     height: float | None
     exact: bool
 
@@ -52,10 +52,10 @@ class Geometry:
 
     def u_coated(self, shallow: float, deep: float) -> float:
         """Standard uncertainty, cm^2, from the dimensions, of the area between two immersions (mm)."""
-        both = self._area(np.asarray([shallow, deep]), self.u_perimeters)
-        face = self.u_face if shallow <= 0 < deep else 0.0
-        # width and thickness enter body and lower face with the same sign
-        return float(abs(both[1] - both[0]) + face)
+        ends = np.asarray([shallow, deep])
+        body = np.asarray([np.diff(self._area(ends, part))[0] for part in self.u_perimeters])
+        # a dimension changes body and lower face with the same sign
+        return float(np.linalg.norm(body + (self.u_face if shallow <= 0 < deep else 0.0)))
 
     def perimeter_at(self, immersion: float) -> float:
         """Perimeter at the water line, cm, for an immersion in mm."""
@@ -139,16 +139,15 @@ def _plate(substrate: Substrate, path: str) -> Geometry:
     u_width = (substrate.width.u if substrate.width else None) or 0.0
     u_thick = (substrate.thickness.u if substrate.thickness else None) or 0.0
     perimeter = 2.0 * (width + thick)
-    u_perimeter = 2.0 * float(np.hypot(u_width, u_thick))
     return Geometry(
         shape="plate",
         heights=np.asarray([0.0, 1.0]),
         perimeters=np.asarray([perimeter, perimeter]),
-        u_perimeters=np.asarray([u_perimeter, u_perimeter]),
+        u_perimeters=np.asarray([[2.0 * u_width] * 2, [2.0 * u_thick] * 2]),
         face=width * thick / _MM2_PER_CM2,
-        u_face=float(np.hypot(u_width * thick, u_thick * width)) / _MM2_PER_CM2,
+        u_face=np.asarray([u_width * thick, u_thick * width]) / _MM2_PER_CM2,
         height=substrate.height.value if substrate.height else None,
-        exact=u_perimeter == 0.0,
+        exact=u_width == 0.0 and u_thick == 0.0,
     )
 
 
@@ -160,9 +159,9 @@ def _rod(substrate: Substrate, path: str) -> Geometry:
         shape="rod",
         heights=np.asarray([0.0, 1.0]),
         perimeters=np.asarray([perimeter, perimeter]),
-        u_perimeters=np.full(2, np.pi * u),
+        u_perimeters=np.full((1, 2), np.pi * u),
         face=float(np.pi) * diameter**2 / 4.0 / _MM2_PER_CM2,
-        u_face=float(np.pi) * diameter * u / 2.0 / _MM2_PER_CM2,
+        u_face=np.asarray([np.pi * diameter * u / 2.0 / _MM2_PER_CM2]),
         height=substrate.height.value if substrate.height else None,
         exact=u == 0.0,
     )
@@ -190,9 +189,9 @@ def _table(substrate: Substrate, path: str) -> Geometry:
         shape="table",
         heights=heights,
         perimeters=perimeters,
-        u_perimeters=np.hypot(2.0 * u_width, 2.0 * u_thick * slant),
+        u_perimeters=np.stack([np.full(slant.size, 2.0 * u_width), 2.0 * u_thick * slant]),
         face=float(widths[0]) * thick / _MM2_PER_CM2,
-        u_face=float(np.hypot(u_width * thick, u_thick * float(widths[0]))) / _MM2_PER_CM2,
+        u_face=np.asarray([u_width * thick, u_thick * float(widths[0])]) / _MM2_PER_CM2,
         height=substrate.height.value if substrate.height else float(heights[-1]),
         exact=u_width == 0.0 and u_thick == 0.0,
     )

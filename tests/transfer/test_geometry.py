@@ -30,9 +30,8 @@ def test_a_plate() -> None:
     np.testing.assert_allclose(
         plate.coated(np.array([-3.0, 0.0, 1e-9, 10.0])), [0.0, 0.0, 0.2, 4.4], atol=1e-9
     )
-    assert plate.u_coated(0.0, 10.0) == pytest.approx(
-        (2.0 * math.hypot(0.1, 0.02) * 10.0 + math.hypot(0.1 * 1.0, 0.02 * 20.0)) / 100.0
-    )
+    # area 2 (w + t) L + w t: one u of the width changes (2 L + t) u, one of the thickness (2 L + w) u
+    assert plate.u_coated(0.0, 10.0) == pytest.approx(math.hypot(21.0 * 0.1, 40.0 * 0.02) / 100.0)
     assert plate.u_coated(2.0, 10.0) == pytest.approx(2.0 * math.hypot(0.1, 0.02) * 8.0 / 100.0)
     assert plate.u_coated(0.0, 0.0) == 0.0
     assert not plate.exact
