@@ -32,13 +32,18 @@ SAMPLE: dict[str, tuple[str, ...]] = {
     ),
     "isotherm/condense.py": ("tests/isotherm/test_condense.py", "tests/isotherm/test_branches.py"),
     "isotherm/branches.py": ("tests/isotherm/test_branches.py",),
-    "isotherm/molecular_area.py": (
-        "tests/isotherm/test_trace_read.py",
-        "tests/outside/test_water.py",
-    ),
-    "isotherm/quantity.py": (
-        "tests/isotherm/test_quantity_text.py",
+    "isotherm/partition.py": ("tests/isotherm/test_knee_model.py",),
+    "isotherm/knee_model.py": ("tests/isotherm/test_knee_model.py",),
+    "isotherm/knee_evidence.py": ("tests/isotherm/test_knee_model.py",),
+    "isotherm/knee_fit.py": (
+        "tests/isotherm/test_knee_model.py",
         "tests/isotherm/test_analysis.py",
+    ),
+    "isotherm/phases.py": ("tests/isotherm/test_phases.py", "tests/isotherm/test_analysis.py"),
+    "isotherm/molecular_area.py": ("tests/isotherm/test_molecular_area.py",),
+    "isotherm/quantity.py": (
+        "tests/isotherm/test_quantity.py",
+        "tests/isotherm/test_quantity_text.py",
     ),
     "isotherm/trace_order.py": ("tests/isotherm/test_trace_order.py",),
     "transfer/geometry.py": ("tests/transfer/test_geometry.py", "tests/transfer/test_ratio.py"),

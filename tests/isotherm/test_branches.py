@@ -1,5 +1,7 @@
 """Turning points, pauses and jitter."""
 
+from dataclasses import replace
+
 import numpy as np
 import pytest
 
@@ -64,3 +66,88 @@ def test_steady_area_keeps_steady_travel() -> None:
     assert abs(np.mean(smooth - line)) < 2e-4
     clean = np.linspace(2.0, 0.5, 2000)
     assert steady_area(clean) is clean
+
+
+@pytest.mark.parametrize("noise", [0.0, 0.001])
+def test_pauses_are_left_out_to_the_row(noise: float) -> None:
+    """The barrier stands still twice; what moves stays, but for a window beside each pause."""
+    parts = [np.linspace(2.0, 1.5, 2000), np.full(500, 1.5), np.linspace(1.5, 0.8, 2800),
+             np.full(300, 0.8), np.linspace(0.8, 0.5, 1200)]  # fmt: skip
+    area = np.concatenate(parts)
+    area = area + noise * np.random.default_rng(6).standard_normal(area.size)
+    (branch,) = find_branches(make_trace(area, 1 / area))
+    assert branch.paused == pytest.approx(800, abs=10 if noise == 0 else 160)
+    assert branch.rows.size + branch.paused == branch.rows[-1] - branch.rows[0] + 1
+    left_out = np.setdiff1d(np.arange(area.size), branch.rows)
+    within = ((left_out >= 1990) & (left_out <= 2510)) | ((left_out >= 5290) & (left_out <= 5610))
+    assert within[(left_out > 100) & (left_out < 6700)].mean() > 0.95
+
+
+def test_a_steady_barrier_never_pauses() -> None:
+    area = np.linspace(2.0, 0.5, 6000) + 0.004 * np.random.default_rng(7).standard_normal(6000)
+    (branch,) = find_branches(make_trace(area, 1 / area))
+    assert branch.paused == 0
+    assert np.array_equal(np.diff(branch.rows), np.ones(branch.rows.size - 1))
+
+
+@pytest.mark.parametrize("backwards", [False, True])
+def test_a_run_without_time_is_a_compression_whichever_end_comes_first(backwards: bool) -> None:
+    area = np.linspace(2.0, 0.5, 300)
+    if backwards:
+        area = area[::-1].copy()
+    trace = make_trace(area, 1 / area)
+    trace = replace(trace, time=None)
+    (branch,) = find_branches(trace)
+    assert (branch.direction, branch.cycle, branch.paused) == ("compression", 1, 0)
+    assert branch.rows.tolist() == (list(range(300))[::-1] if backwards else list(range(300)))
+
+
+def test_a_run_that_begins_with_an_expansion() -> None:
+    down = np.linspace(2.0, 0.5, 400)
+    area = np.concatenate([down[::-1], down, down[::-1]])
+    branches = find_branches(make_trace(area, 1 / area))
+    assert [(b.direction, b.cycle) for b in branches] == [
+        ("expansion", 1), ("compression", 2), ("expansion", 2)
+    ]  # fmt: skip
+
+
+def test_reversals_are_branches_from_two_per_cent_of_the_range() -> None:
+    """Our own bound, stated in the module."""
+    for share, count in ((0.015, 1), (0.025, 3)):
+        back = share * 1.5
+        area = np.concatenate(
+            [np.linspace(2.0, 1.0, 4000), np.linspace(1.0, 1.0 + back, 100),
+             np.linspace(1.0 + back, 0.5, 3000)]
+        )  # fmt: skip
+        assert len(find_branches(make_trace(area, 1 / area))) == count
+
+
+def test_turning_points_are_those_rows_in_a_long_run() -> None:
+    """Searched on block means, placed on rows."""
+    area = np.concatenate([np.linspace(2.0, 0.5, 30_001), np.linspace(0.5, 1.9, 20_000)[1:]])
+    first, second = find_branches(make_trace(area, 1 / area))
+    assert (int(first.rows[0]), int(first.rows[-1])) == (0, 30_000)
+    assert (int(second.rows[0]), int(second.rows[-1])) == (30_000, 49_999)
+
+
+def test_few_values_have_no_scatter_and_no_step() -> None:
+    assert robust_noise(np.array([1.0, 2.0])) == 0.0
+    assert quantum(np.array([1.0])) == 0.0
+    assert quantum(np.array([1.0, 1.0, 1.1, 1.1, 1.2, 1.2])) == 0.0  # too few to tell
+
+
+def test_steady_area_is_a_running_mean_of_jitter() -> None:
+    random = np.random.default_rng(11)
+    line = np.linspace(2.0, 0.5, 2000)
+    step = 1.5 / 1999
+    noise = 2.0 * step
+    area = line + noise * random.standard_normal(2000)
+    smooth = steady_area(area)
+    half = int(np.ceil(3.0 * robust_noise(area) / step))
+    inner = slice(half, -half)
+    by_hand = np.convolve(area, np.full(2 * half + 1, 1.0 / (2 * half + 1)), mode="valid")
+    np.testing.assert_allclose(smooth[inner], by_hand, rtol=1e-12)
+    assert smooth[0] == area[0]
+    assert smooth[1] == pytest.approx(area[:3].mean())
+    assert np.std(smooth[inner] - line[inner]) < 0.5 * noise
+    assert steady_area(line) is line

@@ -65,3 +65,73 @@ def test_sparse_runs_are_never_despiked() -> None:
     pressure = np.zeros(60)
     pressure[30] = 20.0
     assert despike(pressure, 0.05).sum() == 0
+
+
+def test_nodes_are_means_of_consecutive_rows() -> None:
+    random = np.random.default_rng(3)
+    area = np.linspace(1.2, 0.3, 5000)
+    pressure = np.maximum(0.0, 80.0 * (0.8 - area)) + 0.05 * random.standard_normal(5000)
+    nodes = condense(area, pressure, 0.05)
+    for i in (0, 1, 100, nodes.x.size - 1):
+        rows = slice(int(nodes.first[i]), int(nodes.first[i] + nodes.count[i]))
+        assert nodes.area[i] == pytest.approx(area[rows].mean(), rel=1e-12)
+        assert nodes.pressure[i] == pytest.approx(pressure[rows].mean(), abs=1e-9)
+        assert nodes.x[i] == pytest.approx(-np.log(area[rows].mean()), rel=1e-12)
+        assert nodes.sigma[i] == pytest.approx(0.05 / np.sqrt(nodes.count[i]))
+    assert nodes.stop == pytest.approx(-np.log(0.3))
+    assert nodes.first.tolist() == (np.cumsum(nodes.count) - nodes.count).astype(int).tolist()
+
+
+def test_nodes_are_evenly_spaced_along_the_curve() -> None:
+    """Three straight legs in the plane of x and pressure, both scaled to their range; lengths by hand."""
+    x = np.linspace(0.0, 1.0, 30_001)
+    pressure = np.where(x < 0.4, 0.0, np.where(x < 0.5, 500.0 * (x - 0.4), 50.0))
+    nodes = condense(np.exp(-x), pressure, 0.01)
+    at = nodes.x
+    counts = [int((at < 0.4).sum()), int(((at >= 0.4) & (at < 0.5)).sum()), int((at >= 0.5).sum())]
+    # lengths 0.4, sqrt(0.1² + 1) and 0.5, and a quarter shared out by x
+    lengths = np.array([0.4, np.hypot(0.1, 1.0), 0.5]) + 0.25 * np.array([0.4, 0.1, 0.5])
+    assert counts == pytest.approx(256 * lengths / lengths.sum(), abs=3)
+
+
+def test_known_noise_lends_less_length() -> None:
+    """Half of the run is a level, noisy stretch: told its noise, it gets nearly the nodes its x is worth."""
+    random = np.random.default_rng(5)
+    x = np.linspace(0.0, 1.0, 20_000)
+    pressure = np.where(x < 0.5, 0.0, 4.0 * (x - 0.5)) + 0.03 * random.standard_normal(20_000)
+    level = [int((condense(np.exp(-x), pressure, noise).x < 0.5).sum()) for noise in (0.03, 0.0)]
+    lengths = np.array([0.5, np.hypot(0.5, 1.0)]) + 0.25 * np.array([0.5, 0.5])
+    worth = 256 * lengths[0] / lengths.sum()
+    assert worth < level[0] < level[1]
+    assert level[0] < worth + 12
+
+
+def test_rounded_readings_are_known_to_their_step() -> None:
+    """A reading of 0.5 mN/m steps and no scatter: u of a node is q/√12 over the root of steps crossed."""
+    area = np.linspace(1.0, 0.5, 900)
+    pressure = np.round(60.0 * (1.0 - area) / 0.5) * 0.5
+    nodes = condense(area, pressure, 0.01)
+    crossed = 1.0 + np.abs(np.gradient(nodes.pressure)) / 0.5
+    expected = np.sqrt(0.01**2 / nodes.count + 0.25 / 12.0 / crossed)
+    assert nodes.sigma == pytest.approx(expected, rel=1e-6)
+
+
+def test_a_reading_without_scatter_is_known_to_its_digits() -> None:
+    area, pressure = _line(2000)
+    nodes = condense(area, pressure, 0.0)
+    assert nodes.sigma == pytest.approx(1e-6 * float(np.ptp(pressure)) / np.sqrt(nodes.count))
+
+
+def test_few_points_scatter_no_more_than_a_figure_is_read() -> None:
+    area, pressure = _line(20)
+    rough = pressure + np.where(np.arange(20) % 2, 3.0, -3.0)
+    assert row_noise(area, rough) == pytest.approx(0.006 * float(np.ptp(rough)))
+    assert row_noise(area[:4], pressure[:4]) == 0.0
+
+
+@pytest.mark.parametrize("at", [0, 3, 1994, 1999])
+def test_spikes_near_the_ends_are_marked_too(at: int) -> None:
+    _area, pressure = _line(2000)
+    noisy = pressure + 0.05 * np.random.default_rng(at).standard_normal(2000)
+    noisy[at] -= 4.0
+    assert np.flatnonzero(despike(noisy, 0.05)).tolist() == [at]
