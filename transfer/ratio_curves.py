@@ -7,7 +7,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
-from transfer.ratio_film import FilmFit, film_area
+from transfer.ratio_film import MOST_CHANGE, FilmFit, film_area
 from transfer.ratio_nodes import Nodes
 from transfer.strokes_motion import Motion
 
@@ -16,9 +16,6 @@ __all__ = ["RemovalCurve", "removal_curve"]
 FloatArray = NDArray[np.float64]
 
 _BINS = 60
-# Largest exponent of a single row's correction to the target pressure: further off, the row is a glitch,
-# and its area must be wrong rather than infinite.
-_STEEPEST = 50.0
 
 
 @dataclass(frozen=True)
@@ -79,7 +76,7 @@ def removal_curve(
     t, x = time[rows], position[rows]
     row_seconds = (way.end - way.start) / max(t.size, 1)
     off = pressure[rows] - nodes.target[before]
-    at_target = area[rows] * np.exp(np.clip(fit.compressibility * off, -_STEEPEST, _STEEPEST))
+    at_target = area[rows] * np.exp(np.clip(fit.compressibility * off, -MOST_CHANGE, MOST_CHANGE))
     removed = film_area(nodes, fit, before, t) - at_target
     start = motion.rests[nodes.rest[before]].level
     end = motion.rests[nodes.rest[after]].level

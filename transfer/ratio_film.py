@@ -10,9 +10,12 @@ from numpy.typing import NDArray
 from transfer.ratio_creep import CreepModel, choose_creep_model
 from transfer.ratio_nodes import Nodes
 
-__all__ = ["FilmFit", "film_area", "fit_film"]
+__all__ = ["MOST_CHANGE", "FilmFit", "film_area", "fit_film"]
 
 FloatArray = NDArray[np.float64]
+# Largest change of ln(area) that is followed: further off, a row or a fit is astray, and its area must be
+# wrong rather than infinite.
+MOST_CHANGE = 50.0
 
 
 @dataclass(frozen=True)
@@ -51,14 +54,14 @@ def film_area(nodes: Nodes, fit: FilmFit, node: int, time: FloatArray) -> FloatA
     node : int
     time : (n,) s.
     """
-    level = nodes.log_area[node] + fit.compressibility * nodes.off[node]
     # a dwell's mean lies below the line through its middle where the rate changes within it
     bend = float(fit.bend[node])
     spread = nodes.tt[node] / max(nodes.rows[node], 1)
     lost = np.zeros(np.size(time))
     for index, coefficient in fit.model.loss(node, time):
         lost += fit.theta[index] * coefficient
-    return np.asarray(np.exp(level + 0.5 * bend * spread - lost))
+    change = fit.compressibility * nodes.off[node] + 0.5 * bend * spread - lost
+    return np.asarray(np.exp(nodes.log_area[node] + np.clip(change, -MOST_CHANGE, MOST_CHANGE)))
 
 
 def fit_film(

@@ -7,7 +7,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
-__all__ = ["Run", "damaged", "seed_runs"]
+__all__ = ["Run", "damaged", "scrambled", "seed_runs"]
 
 Columns = dict[str, list[float]]
 
@@ -240,8 +240,8 @@ def _cut(columns: Columns, rng: random.Random) -> Columns:
     return {name: [values[row] for row in rows] for name, values in columns.items()}
 
 
-def _scramble(text: str, rng: random.Random) -> str:
-    """Text with a few words or numbers replaced."""
+def scrambled(text: str, rng: random.Random) -> str:
+    """A run sheet, or evidence, with a few words or numbers replaced."""
     for _ in range(rng.randint(1, 4)):
         at = rng.randint(0, len(text))
         size = rng.choice((0, 1, 1, 3, 10, 60))
@@ -265,9 +265,9 @@ def damaged(run: Run, rng: random.Random) -> Run:
     columns, sheet, evidence = run.columns, run.sheet, run.evidence
     choice = rng.random()
     if evidence and choice < 0.7:
-        return Run(run.command, columns, sheet, _scramble(evidence, rng))
+        return Run(run.command, columns, sheet, scrambled(evidence, rng))
     if choice < 0.25:
-        sheet = _scramble(sheet, rng)
+        sheet = scrambled(sheet, rng)
     if choice > 0.15:
         columns = dict(columns)
         for _ in range(rng.choice((0, 1, 1, 2, 3))):
