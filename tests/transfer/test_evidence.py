@@ -6,44 +6,19 @@ import math
 import numpy as np
 import pytest
 
-from isotherm.constants import AVOGADRO, EPSILON_0, FARADAY
+from isotherm.constants import AVOGADRO, EPSILON_0
 from isotherm.errors import UpstrokeError
 from isotherm.figures_style import figure_bytes
 from isotherm.quantity import Quantity
-from transfer.evidence import assess
+from tests.transfer.evidence_example import (
+    THICKNESS,
+    all_kinds,
+    expected_rise,
+    ledger,
+    result_of,
+)
 from transfer.evidence_figure import draw_evidence
 from transfer.evidence_ledger import FilmInputs, LedgerView
-from transfer.evidence_read import read_evidence
-
-FILM = FilmInputs(
-    "",
-    Quantity(2.5, 0.025, "nm"),
-    Quantity(284.48, None, "g/mol"),
-    Quantity(0.2, 0.002, "nm^2"),
-)
-
-
-def ledger(strokes=20, ratio=1.0, u=0.01, films=("",), inputs=(FILM,), shared=0.005):
-    added = np.full(strokes, ratio)
-    return LedgerView(
-        strokes=np.arange(1, strokes + 1),
-        added=added,
-        covariance=np.eye(strokes) * u**2 + shared**2 * np.outer(added, added),
-        films=tuple(films[n % len(films)] for n in range(strokes)),
-        inputs=inputs,
-        lays_film=np.ones(strokes, dtype=bool),
-    )
-
-
-def result_of(tmp_path, text, view=None, name="e.csv"):
-    path = tmp_path / name
-    path.write_text(text, encoding="utf-8")
-    return assess(read_evidence(path), view or ledger())
-
-
-THICKNESS = "kind,layers,value,u,unit\n" + "".join(
-    f"ellipsometric_thickness,{n},{2.5 * n + 1.2},0.2,nm\n" for n in (2, 6, 10, 14, 20)
-)
 
 
 def test_thickness_that_agrees(tmp_path):
@@ -102,47 +77,6 @@ def test_only_strokes_that_lay_film_count_as_layers(tmp_path):
     )
     result = result_of(tmp_path, THICKNESS, view)
     assert result.kinds[0].layers.value == pytest.approx(20.0, abs=0.05)
-
-
-def expected_rise():
-    """Rises per layer written out from the published relations, in SI."""
-    molecules = 1.0 / 0.2e-18  # per m^2
-    mass = molecules * 284.48e-3 / AVOGADRO  # kg/m^2
-    quartz = math.sqrt(2648.0 * 2.947e10)  # kg/(m^2 s)
-    return {
-        "frequency": -2 * 2 * 5e6**2 * mass / quartz,  # Hz, both faces
-        "charge": molecules / AVOGADRO * FARADAY * 0.2e-4 * 1.1 * 1e6,  # µC
-        "elastance": 2.5e-9 / (EPSILON_0 * 2.6) / (0.2e-4 * 1.1),  # 1/F
-        "absorbance": 2 * molecules / AVOGADRO * 1.2e4 * 0.1,  # 1 L/(mol cm) = 0.1 m^2/mol
-    }
-
-
-def all_kinds(factor=None, bend_after=None):
-    factor = factor or {}
-    rise = expected_rise()
-    layers = (0, 4, 8, 12, 16, 20)
-
-    def value(kind, n):
-        reached = n if kind != (bend_after or ("",))[0] else min(n, bend_after[1])
-        return rise[kind] * factor.get(kind, 1.0) * reached
-
-    rows = [
-        "kind,layers,value,u,unit,crystal_frequency,faces,overtone,electrons,electrode_area,roughness,"
-        "permittivity,absorptivity,orientation,fraction"
-    ]
-    for n in layers:
-        if n:
-            rows.append(f"electroactive_coverage,{n},{value('charge', n)},0.3,µC,,,,1,0.2 ± 0.002 cm^2,"
-                        "1.1 ± 0.02,,,,")  # fmt: skip
-        rows.append(f"resonator_frequency,{n},{value('frequency', n)},1,Hz,5 MHz,2,1,,,,,,,")
-        c = 1e6 / (1e6 / 4.0 + value("elastance", n))
-        rows.append(f"interfacial_capacitance,{n},{c},{0.01 * c},µF,,,,,0.2 ± 0.002 cm^2,1.1 ± 0.02,"
-                    "2.6 ± 0.05,,,")  # fmt: skip
-        rows.append(
-            f"absorbance,{n},{value('absorbance', n)},0.002,1,,2,,,,,,12000 ± 200 L/(mol·cm),1,1"
-        )
-    rows.append("bragg_spacing,20,5.0,0.02,nm,,,,,,,,,,")
-    return "\n".join(rows)
 
 
 def test_every_kind_expects_what_its_relation_says(tmp_path):
@@ -327,92 +261,3 @@ def test_figure_draws_the_result(tmp_path):
     bent = next(a for a, k in zip(axes, result.kinds, strict=False) if k.bend is not None)
     assert any("bends after stroke" in t.get_text() for t in bent.texts)
     assert figure_bytes(figure, "png").startswith(b"\x89PNG")
-
-
-def write_cycle(path, rate, charge, capacitance, seed):
-    """A voltammogram of a surface-bound wave on a capacitive background, as a potentiostat exports it."""
-    rng = np.random.default_rng(seed)
-    up = np.linspace(0.0, 0.5, 400)
-    potential = np.concatenate([up, up[::-1]])
-    way = np.repeat([1.0, -1.0], 400)
-    width = 0.1 / (2 * math.acosh(math.sqrt(2)))
-    wave = charge / (2 * width) / np.cosh((potential - 0.25) / width) ** 2
-    current = way * rate * (capacitance * (1 + 0.1 * potential) + wave)
-    current += rng.normal(0, 0.005 * np.abs(current).max(), 800)
-    rows = "\n".join(f"{e:.5f};{i * 1e6:.6f}" for e, i in zip(potential, current, strict=True))
-    path.write_text(f"potential (V);current (µA)\n{rows}\n", encoding="utf-8")
-
-
-def test_raw_voltammograms_to_coverage(tmp_path):
-    rates = (0.05, 0.1, 0.2)
-    points = []
-    for n in (2, 6, 12, 20):
-        charge = expected_rise()["charge"] * 1e-6 * n
-        for rate in rates:
-            write_cycle(tmp_path / f"l{n}_{rate}.csv", rate, charge, 2e-7, seed=n)
-        files = ", ".join(f'"l{n}_{rate}.csv"' for rate in rates)
-        scan = ", ".join(f'"{rate} V/s"' for rate in rates)
-        points.append(f"  {{layers = {n}, files = [{files}], scan_rates = [{scan}]}},")
-    text = (
-        '[electrode]\narea = "0.2 ± 0.002 cm^2"\nroughness = "1.1 ± 0.02"\n'
-        "[electroactive_coverage]\nelectrons = 1\npoints = [\n" + "\n".join(points) + "\n]\n"
-    )
-    result = result_of(tmp_path, text, name="e.toml")
-    kind = result.kinds[0]
-    assert kind.consistent, kind.reason
-    assert abs(kind.layers.value - 20.0) < 2 * kind.layers.u
-    assert kind.layers.u < 1.0
-    checks = kind.details["scan_rate_checks"]
-    assert len(checks) == 4
-    assert all(check["linear"] for check in checks)
-    assert len(kind.details["waves"]) == 4 * 3 * 2
-    assert len(result.raw_files) == 12
-    json.dumps(result.to_json(), allow_nan=False)
-
-
-def test_raw_voltammograms_to_capacitance(tmp_path):
-    rows = ["kind,layers,file,scan_rate,electrode_area,roughness,permittivity"]
-    for n in (0, 4, 10, 20):
-        c = 1.0 / (1 / 8e-7 + expected_rise()["elastance"] * n)
-        for rate in (0.05, 0.1, 0.2):
-            write_cycle(tmp_path / f"l{n}_{rate}.csv", rate, 0.0, c / 1.025, seed=n)
-            rows.append(f"interfacial_capacitance,{n},l{n}_{rate}.csv,{rate} V/s,"
-                        "0.2 ± 0.002 cm^2,1.1 ± 0.02,2.6 ± 0.05")  # fmt: skip
-    result = result_of(tmp_path, "\n".join(rows))
-    kind = result.kinds[0]
-    assert kind.consistent, kind.reason
-    assert abs(kind.layers.value - 20.0) < 2 * kind.layers.u
-    assert result.pinholes[0].fraction.value == pytest.approx(0.0, abs=0.01)
-
-
-WILD = {
-    "one value in another unit": THICKNESS.replace("26.2", "1e5"),
-    "values that differ by 30 decades": THICKNESS.replace("6.2,0.2", "1e-9,1e-12").replace(
-        "26.2", "1e12"
-    ),
-    "value far below its u": "kind,layers,value,u,unit\nabsorbance,8,1e-300,0.001,1\n",
-    "two values at one number of layers": "kind,layers,value,u,unit\nxray_thickness,4,1e12,0.1,nm\n"
-    "xray_thickness,4,10,0.1,nm\n",
-    "blank only": "kind,layers,value,u,unit\nxray_thickness,0,1,0.1,nm\n",
-    "u of a capacitance as large as it": "kind,layers,value,u,unit\n"
-    "interfacial_capacitance,0,2,0.1,µF/cm^2\ninterfacial_capacitance,4,0.1,4,µF/cm^2\n",
-    "falling thickness": "kind,layers,value,u,unit\n"
-    + "".join(f"xray_thickness,{n},{40 - n},0.1,nm\n" for n in (2, 4, 8)),
-    "scan rate next to nothing": "kind,layers,file,scan_rate\nelectroactive_coverage,2,a.csv,1e-300 V/s\n",
-}
-
-
-@pytest.mark.parametrize("case", WILD)
-def test_wild_values_end_in_a_line_or_in_finite_numbers(tmp_path, case):
-    (tmp_path / "a.csv").write_text("potential (V),current (A)\n0,1\n1,1\n0,1\n", encoding="utf-8")
-    message, result = "", None
-    try:
-        result = result_of(tmp_path, WILD[case])
-    except UpstrokeError as error:
-        message = str(error)
-    if result is None:
-        assert "e.csv" in message
-        assert "\n" not in message
-    else:
-        json.dumps(result.to_json(), allow_nan=False)
-        draw_evidence(result)
