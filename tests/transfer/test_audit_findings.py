@@ -164,7 +164,7 @@ def test_a_stroke_without_a_ratio_is_undecided() -> None:
 
 
 def test_the_mean_keeps_what_the_strokes_share() -> None:
-    """Four of 0.965, u 0.01 each: 0.005 of the mean where independent (pass), 0.01 where common (undecided)."""
+    """Four of 0.965, u 0.01 each: 0.005 of the mean if independent (pass), 0.01 if common (undecided)."""
     made = strokes("dudu", 0.965)
     apart = rule_mean.check(context(made, ratio_covariance=np.eye(4) * 1e-4))
     common = rule_mean.check(context(made, ratio_covariance=np.full((4, 4), 1e-4)))
