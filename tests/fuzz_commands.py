@@ -15,6 +15,7 @@ from __future__ import annotations
 import argparse
 import collections
 import contextlib
+import hashlib
 import io
 import json
 import os
@@ -40,6 +41,7 @@ sys.path[:0] = [
 from hostile_inputs import mutated  # noqa: E402
 from hostile_runs import Run, damaged, seed_runs  # noqa: E402
 from watchdog import TookTooLong, time_limit  # noqa: E402
+from watched_code import watch  # noqa: E402
 
 from cli.main import run as run_command  # noqa: E402
 from isotherm.errors import UpstrokeError  # noqa: E402
@@ -164,9 +166,12 @@ def _by_coverage(findings: Path, seconds: float, command: str) -> None:
     def one(data: bytes) -> None:
         outcome = bench.attempt(sound, data)
         if outcome not in ("done", "refused", "usage"):
-            raise RuntimeError(outcome)
+            name = findings / f"{command}-{hashlib.blake2b(data, digest_size=6).hexdigest()}"
+            name.with_suffix(".bin").write_bytes(data)
+            name.with_suffix(".txt").write_text(outcome, encoding="utf-8")
 
-    atheris.instrument_all()
+    bench.attempt(sound)  # imports what is to be watched
+    watch()
     corpus = findings / f"corpus-{command}"
     corpus.mkdir(parents=True, exist_ok=True)
     rng = random.Random(1)

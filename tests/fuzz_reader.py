@@ -14,6 +14,7 @@ from __future__ import annotations
 import argparse
 import collections
 import hashlib
+import importlib
 import os
 import random
 import sys
@@ -34,9 +35,10 @@ sys.path[:0] = [
     str(Path(__file__).resolve().parent.parent),
 ]
 
-from hostile_inputs import mutated, piled, seed_inputs  # noqa: E402
+from hostile_inputs import PIECES, mutated, piled, seed_inputs  # noqa: E402
 from hostile_runs import scrambled, seed_runs  # noqa: E402
 from watchdog import TookTooLong, time_limit  # noqa: E402
+from watched_code import watch  # noqa: E402
 
 from isotherm.errors import UpstrokeError  # noqa: E402
 from isotherm.sheet_read import parse_sheet, read_sheet  # noqa: E402
@@ -48,6 +50,16 @@ _SHEET = parse_sheet(
     '[subphase]\ntemperature = "20 degC"\n[trough]\nwidth = "75 mm"\nlargest_area = "240 cm^2"\n'
 )
 _SLOW = 2.0  # s of processor time for one reading of a small input
+_READER = (
+    "file_",
+    "sheet",
+    "table",
+    "text_",
+    "trace_",
+    "unit",
+    "water",
+    "molecular",
+)  # names of its modules
 _KINDS = {"export": 0.5, "sheet": 0.3, "pile": 0.2}  # shares of the inputs
 
 
@@ -118,26 +130,42 @@ def _worker(
 
 
 def _by_coverage(folder: Path, seconds: float) -> None:
-    """Hand the reader to atheris, which picks inputs by the code they reach, from the same seeds."""
+    """Hand the reader to atheris, which picks inputs by the code they reach, from the same seeds.
+
+    What is found is written down and the search goes on; its corpus stays in `folder` for the next time.
+    """
     import atheris
 
+    warnings.simplefilter("error")
     path = Path(tempfile.mkdtemp()) / "input"
     outcomes: collections.Counter[str] = collections.Counter()
 
     def one(data: bytes) -> None:
         problem = _try(data, path, "input", outcomes)
         if problem:
-            (folder / f"finding-{abs(hash(data))}.bin").write_bytes(data)
-            raise RuntimeError(problem)
+            name = folder / f"finding-{hashlib.blake2b(data, digest_size=6).hexdigest()}"
+            name.with_suffix(".bin").write_bytes(data)
+            name.with_suffix(".txt").write_text(problem, encoding="utf-8")
 
-    atheris.instrument_all()
+    package = Path(__file__).resolve().parent.parent / "isotherm"
+    for module in sorted(package.glob("*.py")):
+        if module.stem.startswith(_READER):  # what is imported later would not be watched
+            importlib.import_module(f"isotherm.{module.stem}")
+    watch()
     corpus = folder / "corpus"
     corpus.mkdir(exist_ok=True)
-    for number, seed in enumerate(seed_inputs()):
+    for number, seed in enumerate([*seed_inputs(), seed_runs()[0].sheet.encode()]):
         (corpus / f"seed-{number}").write_bytes(seed)
-    limits = ["-max_len=4000", f"-max_total_time={int(min(seconds, 1e8))}"]
+    words = folder / "words.dict"
+    words.write_text("".join(f'"{_escaped(piece)}"\n' for piece in PIECES), encoding="ascii")
+    limits = ["-max_len=4000", f"-max_total_time={int(min(seconds, 1e8))}", f"-dict={words}"]
     atheris.Setup([sys.argv[0], f"-artifact_prefix={folder}/", *limits, str(corpus)], one)
     atheris.Fuzz()
+
+
+def _escaped(piece: bytes) -> str:
+    """A piece as libFuzzer's dictionaries write it."""
+    return "".join(f"\\x{byte:02x}" for byte in piece)
 
 
 def main() -> int:

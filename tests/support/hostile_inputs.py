@@ -5,9 +5,9 @@ from __future__ import annotations
 import random
 from collections.abc import Sequence
 
-__all__ = ["mutated", "piled", "seed_inputs"]
+__all__ = ["PIECES", "mutated", "piled", "seed_inputs"]
 
-_PIECES: tuple[bytes, ...] = (
+PIECES: tuple[bytes, ...] = (
     b"Time (s)", b"Area (cm^2)", b"Pressure (mN/m)", b"Mma (A^2)", b"APL in \xc3\x85\xc2\xb2",
     b"T", b"t", b"(", b"[", b"\xb5", b"\xff\xfe", b"\xef\xbb\xbf", b"\x00", b"\r", b"\n", b"\r\n",
     b"\n\n", b",", b";", b"\t", b" ", b"  ", b"|", b"1", b"2.5", b"-3,5", b"1e5", b"1e999",
@@ -48,7 +48,7 @@ def seed_inputs() -> list[bytes]:
 
 def piled(rng: random.Random) -> bytes:
     """A pile of pieces that mean something to the reader."""
-    return b"".join(rng.choice(_PIECES) for _ in range(rng.randint(0, 120)))
+    return b"".join(rng.choice(PIECES) for _ in range(rng.randint(0, 120)))
 
 
 def mutated(rng: random.Random, seeds: Sequence[bytes]) -> bytes:
@@ -61,9 +61,9 @@ def mutated(rng: random.Random, seeds: Sequence[bytes]) -> bytes:
         if action == 0:
             del data[at : at + size]
         elif action == 1:
-            data[at:at] = rng.choice(_PIECES)
+            data[at:at] = rng.choice(PIECES)
         elif action == 2:
-            data[at : at + size] = rng.choice(_PIECES)
+            data[at : at + size] = rng.choice(PIECES)
         elif action == 3:
             start = rng.randint(0, len(data))
             data[at:at] = data[start : start + size]
