@@ -48,7 +48,47 @@ SAMPLE: dict[str, tuple[str, ...]] = {
     "isotherm/trace_order.py": ("tests/isotherm/test_trace_order.py",),
     "transfer/geometry.py": ("tests/transfer/test_geometry.py", "tests/transfer/test_ratio.py"),
     "transfer/log_cleaning.py": ("tests/transfer/test_log.py",),
-    "transfer/deposition.py": ("tests/transfer/test_ratio.py",),
+    "transfer/contact.py": ("tests/transfer/test_contact.py", "tests/transfer/test_strokes.py"),
+    "transfer/strokes.py": (
+        "tests/transfer/test_strokes.py",
+        "tests/transfer/test_contact.py",
+        "tests/transfer/test_strokes_by_hand.py",
+    ),
+    "transfer/strokes_pressure.py": (
+        "tests/transfer/test_pressure.py",
+        "tests/transfer/test_strokes.py",
+    ),
+    "transfer/ratio.py": (
+        "tests/outside/test_transfer_ratio.py",
+        "tests/transfer/test_contact.py",
+        "tests/transfer/test_ratio.py",
+    ),
+    "transfer/drift.py": ("tests/transfer/test_drift.py", "tests/outside/test_transfer_ratio.py"),
+    "transfer/drift_changes.py": (
+        "tests/outside/test_transfer_ratio.py",
+        "tests/transfer/test_drift.py",
+    ),
+    "transfer/deposition.py": ("tests/transfer/test_deposition.py",),
+    "transfer/stack.py": ("tests/transfer/test_deposition.py",),
+    "transfer/audit.py": ("tests/transfer/test_audit_verdict.py",),
+    "transfer/audit_finding.py": ("tests/transfer/test_audit_verdict.py",),
+    **{
+        f"transfer/rule_{rule}.py": ("tests/transfer/test_audit_findings.py",)
+        for rule in (
+            "drift",
+            "evidence",
+            "layers",
+            "mean",
+            "plan",
+            "pressure",
+            "ratio",
+            "renewals",
+            "speed",
+            "strokes",
+            "thickness",
+            "type",
+        )
+    },
 }
 _COMPARE: dict[type, type] = {
     ast.Lt: ast.LtE, ast.LtE: ast.Lt, ast.Gt: ast.GtE, ast.GtE: ast.Gt, ast.Eq: ast.NotEq,

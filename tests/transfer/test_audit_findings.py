@@ -4,13 +4,13 @@ from __future__ import annotations
 
 from dataclasses import replace
 from types import SimpleNamespace
-from typing import Any
 
 import numpy as np
 import pytest
 
 from isotherm.quantity import Quantity
-from isotherm.sheet import Dipping, RunSheet, Stack, StackFilm, Trough
+from isotherm.sheet import Dipping, Stack, StackFilm, Trough
+from tests.transfer.audit_example import context, row, said, stroke, strokes
 from transfer import (
     rule_drift,
     rule_evidence,
@@ -25,57 +25,8 @@ from transfer import (
     rule_thickness,
     rule_type,
 )
-from transfer.audit import AuditResult, audit
-from transfer.audit_finding import AuditContext, Finding, judge_between
-from transfer.audit_remedy import REMEDIES, remedy_for
-from transfer.result import Deposition, Drift, Renewal, Stroke, UnjudgedCrossing
-
-
-def stroke(number: int, direction: str = "down", ratio: float | None = 1.0, **more: Any) -> Stroke:
-    """Ten square centimetres coated, ratio ± 0.01 (u), 30 mN/m, 0.1 mm/s, one minute long."""
-    taken = Quantity(10.0 * (ratio or 0.0), 0.1, "cm^2")
-    told = None if ratio is None else Quantity(ratio, 0.01, "1")
-    given: dict[str, Any] = {
-        "start_s": 100.0 * number,
-        "end_s": 100.0 * number + 60.0,
-        "pressure_mean": 30.0,
-        "pressure_sd": 0.02,
-        "speed_mm_per_s": 0.1,
-        "ratio_uncorrected": ratio,
-        "budget": {"dwells": 0.002, "contact": 0.009},
-        **more,
-    }
-    return Stroke(number, direction, coated_area=Quantity(10.0, 0.02, "cm^2"), film_removed=taken,
-                  ratio=told, **given)  # fmt: skip
-
-
-def strokes(ways: str, ratio: float = 1.0) -> tuple[Stroke, ...]:
-    return tuple(stroke(k, {"d": "down", "u": "up"}[w], ratio) for k, w in enumerate(ways, 1))
-
-
-def context(made: tuple[Stroke, ...] = (), **more: Any) -> AuditContext:
-    """Context of some strokes: `design`, `dipping`, `trough` go into the sheet, the rest into the result."""
-    sheet = RunSheet(
-        stack=more.pop("design", Stack()),
-        dipping=more.pop("dipping", Dipping()),
-        trough=more.pop("trough", Trough()),
-    )
-    plan, evidence = more.pop("plan", ()), more.pop("evidence", None)
-    result = {
-        "strokes": made,
-        "renewals": (),
-        "unjudged": (),
-        "deposition": Deposition(None, None, None, None, "", False),
-        "drift": Drift(None, None, (), len(made)),
-        "stack": SimpleNamespace(layers=Quantity(0.0, 0.0, "1"), thickness=None),
-        "ratio_covariance": np.eye(len(made)) * 1e-4,
-        **more,
-    }
-    return AuditContext(SimpleNamespace(**result), sheet, plan, evidence)  # type: ignore[arg-type]
-
-
-def said(findings: list[Finding]) -> list[tuple[int | None, str, str]]:
-    return [(f.stroke, f.rule, f.status) for f in findings]
+from transfer.audit_remedy import REMEDIES
+from transfer.result import Deposition, Drift, Renewal, UnjudgedCrossing
 
 
 @pytest.mark.parametrize(
@@ -308,10 +259,6 @@ def test_the_thickness_is_left_alone_where_it_is_not_designed() -> None:
     assert "transfer ratios" in rule_thickness.check(context(design=full, stack=loose))[0].decide
 
 
-def row(number: int, direction: str | None = "down", area: float = 10.0) -> dict[str, Any]:
-    return {"stroke": number, "direction": direction, "film_removed": {"value": area, "u": 0.1}}
-
-
 def test_strokes_against_the_plan() -> None:
     made = (stroke(1, "down", 1.0), stroke(2, "up", 0.8), stroke(3, "down", 0.955), stroke(4, "up"))
     plan = (row(1), row(2, "up"), row(3), row(4, "down"), row(9))
@@ -344,63 +291,26 @@ def test_evidence_is_taken_over() -> None:
     assert rule_evidence.check(context()) == []
 
 
-def test_the_remedy_is_that_of_the_largest_part() -> None:
-    for name, text in REMEDIES.items():
-        budget = dict.fromkeys(REMEDIES, 0.001) | {name: 0.002}
-        assert remedy_for(stroke(1, budget=budget)) == text
-    assert remedy_for(stroke(1, budget={})) == ""
-    assert remedy_for(stroke(1, budget={"something else": 1.0})) == ""
-
-
-@pytest.mark.parametrize(
-    ("low", "high", "value", "status", "allowed"),
-    [
-        (None, 2.0, 1.5, "pass", "at most 2 mm"),
-        (None, 2.0, 2.5, "fail", "at most 2 mm"),
-        (1.0, None, 1.5, "pass", "at least 1 mm"),
-        (1.0, None, 0.5, "fail", "at least 1 mm"),
-        (1.0, None, 1.1, "undecided", "at least 1 mm"),
-        (1.0, 2.0, 1.2, "pass", "1 to 2 mm"),  # 2 u reach the limit itself
-        (1.0, 2.0, 0.81, "undecided", "1 to 2 mm"),
-        (1.0, 2.0, 2.19, "undecided", "1 to 2 mm"),
-    ],
-)
-def test_limits_may_be_open_on_one_side(
-    low: float | None, high: float | None, value: float, status: str, allowed: str
-) -> None:
-    finding = judge_between("x", Quantity(value, 0.0999999, "mm"), low, high, unit="mm", decide="?")
-    assert (finding.status, finding.allowed) == (status, allowed)
-    assert finding.decide == ("?" if status == "undecided" else "")
-
-
-def test_the_verdict_and_what_would_decide() -> None:
-    def undecided(text: str) -> Finding:
-        return Finding(None, "x", "", "", "undecided", text)
-
-    passed, failed = Finding(1, "x", "", "", "pass"), Finding(2, "x", "", "", "fail")
-    result: Any = SimpleNamespace()
-    open_ = AuditResult(
-        result, (passed, undecided("a"), undecided("b"), undecided("b"), undecided(""))
+def test_an_undecided_sum_asks_for_what_the_widest_stroke_lacks() -> None:
+    """Of four strokes the third has the widest ratio, for want of long dwells; one has no ratio at all."""
+    made = (
+        stroke(1, "down", 0.955),
+        stroke(2, "up", 0.955),
+        replace(
+            stroke(3, "down", 0.955, budget={"dwells": 0.04}), ratio=Quantity(0.955, 0.04, "1")
+        ),
+        stroke(4, "up", None, budget={"position": 0.5}),
     )
-    assert open_.verdict == "accept"
-    assert open_.to_decide == ("b", "a")
-    assert len(open_.undecided) == 4
-    closed = AuditResult(result, (passed, failed))
-    assert closed.verdict == "reject"
-    assert closed.failed == (failed,)
+    stack = SimpleNamespace(layers=Quantity(19.05, 0.1, "1"), thickness=None)
+    layers = rule_layers.check(context(made, design=Stack(layers=20), stack=stack))
+    mean = rule_mean.check(context(made))
+    assert [f.decide for f in layers + mean] == [REMEDIES["dwells"]] * 2
 
 
-@pytest.mark.parametrize(
-    "plan",
-    [
-        {"plan": [row(1, "up")]},
-        {"budget": {"plan": [row(1, "up"), "noise", {"note": "no stroke"}]}},
-    ],
-)
-def test_the_plan_is_found_where_the_target_puts_it(plan: dict[str, Any]) -> None:
-    made = context((stroke(1, "down"),))
-    found = audit(made.result, made.sheet, plan=plan).findings
-    assert [f.status for f in found if f.rule == "film against plan"] == ["fail"]
-    for empty in (None, {}, {"budget": None}, {"plan": []}):
-        found = audit(made.result, made.sheet, plan=empty).findings
-        assert not [f for f in found if f.rule == "film against plan"]
+def test_the_mean_takes_the_covariance_of_its_own_strokes() -> None:
+    """Down-strokes 1 and 3 of three: (1e-4 + 9e-4) / 4 is 0.0158 squared, whatever the up-stroke's."""
+    made = strokes("dud", 1.0)
+    covariance = np.diag([1e-4, 25.0, 9e-4])
+    found = rule_mean.check(context(made, design=Stack(type="X"), ratio_covariance=covariance))
+    assert said(found) == [(None, "mean ratio", "pass")]
+    assert found[0].found == "1.000 ± 0.032"

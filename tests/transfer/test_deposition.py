@@ -2,13 +2,15 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
+from types import SimpleNamespace
 from typing import Any
 
 import numpy as np
 import pytest
 
 from isotherm.quantity import Quantity
-from isotherm.sheet import Film, RunSheet, StackFilm
+from isotherm.sheet import Component, Film, RunSheet, StackFilm
 from isotherm.sheet import Stack as Design
 from transfer.deposition import deposition_type, first_stroke_took_nothing, gives_back
 from transfer.result import Deposition
@@ -77,11 +79,11 @@ def test_a_ratio_near_a_bound_does_not_decide(down: float, up: float, decided: b
 
 
 def test_up_over_down_and_its_uncertainty() -> None:
-    """0.9 / 1.0 in each of seven neighbouring pairs: u = hypot(u, 0.9 u) / sqrt(7)."""
-    found = typed([1.0, 0.9] * 4).up_down_ratio
+    """0.72 / 0.8 in each of seven neighbouring pairs: u = hypot(u, 0.9 u) / 0.8 / sqrt(7)."""
+    found = typed([0.8, 0.72] * 4).up_down_ratio
     assert found is not None
     assert found.value == pytest.approx(0.9)
-    assert found.u == pytest.approx(np.hypot(U, 0.9 * U) / np.sqrt(7.0))
+    assert found.u == pytest.approx(np.hypot(U, 0.9 * U) / 0.8 / np.sqrt(7.0))
 
 
 def test_where_down_takes_little_the_quotient_is_turned_round() -> None:
@@ -143,7 +145,7 @@ def test_strokes_of_one_direction_in_a_row_are_not_neighbours() -> None:
 @pytest.mark.parametrize(
     ("ratio", "u", "back"),
     [(-0.5, 0.01, True), (-0.02, 0.001, False), (-0.021, 0.001, True), (-0.05, 0.02, False),
-     (0.5, 0.01, False)],
+     (-0.059, 0.02, False), (-0.061, 0.02, True), (0.5, 0.01, False)],
 )  # fmt: skip
 def test_a_stroke_gives_film_back(ratio: float, u: float, back: bool) -> None:
     assert gives_back(ratio, u) is back
@@ -269,3 +271,79 @@ def test_the_film_of_a_direction() -> None:
     assert film_numbers(both, "up", None, 30.0).name == "c"
     none = RunSheet(film=Film(name="film"), stack=Design(films=(StackFilm("c", "down"),)))
     assert film_numbers(none, "up", None, 30.0).name == "film"
+
+
+def isotherm(**more: Any) -> Any:
+    """Area from 0.40 nm^2 at 10 mN/m to 0.20 at 50, modulus 100 to 200 mN/m, rows in no order."""
+    curve = SimpleNamespace(
+        pressure=np.asarray([50.0, 10.0]),
+        area=np.asarray([0.20, 0.40]),
+        modulus=np.asarray(more.pop("modulus", [200.0, 100.0])),
+    )
+    known = {"area_relative_u": 0.03, "pressure_u": 6.0, **more}
+    return SimpleNamespace(headline=SimpleNamespace(curve=curve), **known)
+
+
+def test_area_per_molecule_from_the_isotherm_by_hand() -> None:
+    """Halfway, 30 mN/m: 0.30 nm^2, modulus 150. u: 3 % of area, and 6 mN/m of 150: 4 %; together 5 %."""
+    component = Component("x", mole_fraction=Quantity(1.0, None, "1"), molar_mass=g(284.0))
+    sheet = RunSheet(film=Film(name="film", components=(component,)))
+    film = film_numbers(sheet, "down", isotherm(), 30.0)
+    assert film.surface_density is not None
+    assert film.surface_density.value == pytest.approx(1.0 / 0.3)
+    assert film.surface_density.u == pytest.approx(0.05 / 0.3)
+    assert film.mass_per_area is not None
+    assert film.mass_per_area.value == pytest.approx(284.0 / 0.3 * 0.1660539, rel=1e-6)
+    assert film.mass_per_area.u == pytest.approx(0.05 * film.mass_per_area.value)
+    exact = film_numbers(sheet, "down", isotherm(area_relative_u=None, pressure_u=None), 30.0)
+    assert exact.surface_density is not None
+    assert exact.surface_density.u == 0.0
+    liquid = film_numbers(sheet, "down", isotherm(modulus=[0.0, 0.0]), 30.0)
+    assert liquid.surface_density is not None
+    assert liquid.surface_density.u == pytest.approx(0.03 / 0.3)
+
+
+@pytest.mark.parametrize(
+    ("pressure", "known"), [(9.9, False), (10.0, True), (50.0, True), (50.1, False)]
+)
+def test_the_isotherm_is_not_stretched_beyond_its_ends(pressure: float, known: bool) -> None:
+    film = film_numbers(RunSheet(film=Film(name="film")), "up", isotherm(), pressure)
+    assert (film.surface_density is not None) is known
+
+
+def test_molar_mass_of_a_mixture_by_hand() -> None:
+    """0.25 x 200 + 0.75 x 400 = 350 g/mol; u = hypot(0.25 x 4, 0.75 x 2)."""
+    parts = (
+        Component(
+            "x", mole_fraction=Quantity(0.25, None, "1"), molar_mass=Quantity(200.0, 4.0, "g/mol")
+        ),
+        Component(
+            "y", mole_fraction=Quantity(0.75, None, "1"), molar_mass=Quantity(400.0, 2.0, "g/mol")
+        ),
+    )
+    sheet = RunSheet(film=Film(name="film", components=parts))
+    exact = isotherm(area_relative_u=None, pressure_u=None)
+    film = film_numbers(sheet, "down", exact, 30.0)
+    assert film.mass_per_area is not None
+    assert film.mass_per_area.value == pytest.approx(350.0 / 0.3 * 0.1660539, rel=1e-6)
+    assert film.mass_per_area.u == pytest.approx(
+        film.mass_per_area.value * np.hypot(1.0, 1.5) / 350.0
+    )
+    unknown = replace(parts[1], molar_mass=None)
+    sheet = RunSheet(film=Film(name="film", components=(parts[0], unknown)))
+    assert film_numbers(sheet, "down", exact, 30.0).mass_per_area is None
+
+
+def test_one_film_named_in_the_stack_takes_the_spread_film_s_numbers() -> None:
+    """One entry: what it leaves open comes from the spread film; of two, only what each says."""
+    component = Component("x", mole_fraction=Quantity(1.0, None, "1"), molar_mass=g(284.0))
+    spread = Film(name="film", components=(component,))
+    one = RunSheet(film=spread, stack=Design(films=(StackFilm("a"),)))
+    assert film_numbers(one, "down", isotherm(), 30.0).mass_per_area is not None
+    two = RunSheet(film=spread, stack=Design(films=(StackFilm("a", "down"), StackFilm("b", "up"))))
+    assert film_numbers(two, "down", isotherm(), 30.0).surface_density is None
+    own = Design(films=(StackFilm("a", "down", molecular_area=area(0.25)), StackFilm("b", "up")))
+    alone = film_numbers(RunSheet(film=spread, stack=own), "down", isotherm(), 30.0)
+    assert alone.surface_density is not None
+    assert alone.surface_density.value == pytest.approx(4.0)
+    assert alone.mass_per_area is None

@@ -185,3 +185,18 @@ def test_few_strokes_leave_the_slope_the_strokes_own_uncertainty() -> None:
     assert drift.slope is not None
     assert drift.slope.value == pytest.approx(-0.01)
     assert drift.slope.u == pytest.approx(0.03 / np.sqrt(2.0))
+
+
+def test_half_the_interval_over_1_96_is_the_slope_s_uncertainty() -> None:
+    """Where the strokes scatter more than their own u: Sen's limits, taken as two normal quantiles."""
+    rng = np.random.default_rng(1)
+    n = 16
+    ratios = 1.0 + 0.02 * rng.standard_normal(n)
+    drift = ratio_drift(np.arange(1, n + 1), ["down", "up"] * 8, ratios, np.full(n, 1e-4))
+    assert drift.slope is not None
+    assert drift.interval is not None
+    low, high = drift.interval
+    assert low < drift.slope.value < high
+    assert drift.slope.u == pytest.approx((high - low) / (2.0 * 1.959964))
+    # a normal slope of 16 points would have 0.02 / sqrt(sum (x - mean)^2 = 340): within a factor of two
+    assert 0.5 < drift.slope.u / (0.02 / np.sqrt(340.0)) < 2.0
