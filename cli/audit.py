@@ -87,6 +87,7 @@ def audit(
     film = film_isotherm(isotherm, isotherm_sheet, run_sheet)
     built = analyse_log(read_log(log, run_sheet), run_sheet, isotherm=film)
     seen = None if evidence is None else evidence_for(evidence, built, run_sheet, isotherm=film)
+    outputs.keep_off([] if seen is None else [Path(name) for name in seen.raw_files])
     result = judge(built, run_sheet, plan=planned, evidence=seen)
     settings = film_settings("audit", sheet, column, film, isotherm_sheet)
     for name, path in (("evidence", evidence), ("plan", plan)):
@@ -107,20 +108,10 @@ def audit(
 
 def _plan(path: Path) -> dict[str, Any]:
     """The target's JSON at `path`."""
-    import json
-
     from isotherm.errors import UpstrokeError
+    from isotherm.json_file import read_json
 
-    try:
-        plan = json.loads(path.read_text(encoding="utf-8"))
-    except OSError as error:
-        raise UpstrokeError(
-            f"cannot be read: {error.strerror}", where=str(path), remedy="check the path"
-        ) from error
-    except (ValueError, RecursionError) as error:
-        raise UpstrokeError(
-            "is not JSON", where=str(path), remedy="give what upstroke target --json wrote"
-        ) from error
+    plan, _ = read_json(path, remedy="give what upstroke target --json wrote")
     if not isinstance(plan, dict) or plan.get("schema") != "upstroke.target/1":
         raise UpstrokeError(
             "is not the result of upstroke target",

@@ -60,6 +60,24 @@ class OutputPlan:
     report: Path | None
     force: bool
 
+    def keep_off(self, inputs: Sequence[Path]) -> None:
+        """Refuse targets that are inputs named by another input, known only once that is read.
+
+        Raises
+        ------
+        UpstrokeError
+            A target is one of `inputs` or its twin.
+        """
+        targets = {
+            "--json": self.json,
+            "--csv": self.csv,
+            "--figure": self.figure,
+            "--report": self.report,
+        }
+        for option, target in targets.items():
+            if target is not None:
+                _keep_off(option, target, target, inputs)
+
     def deliver(self, renderers: Renderers) -> None:
         """Render everything asked for, then write it: all of it, or nothing.
 
@@ -131,13 +149,7 @@ def plan_outputs(choice: OutputChoice, inputs: Sequence[Path]) -> OutputPlan:
         if str(path) == "-":
             raise typer.BadParameter("only --json can go to standard output", param_hint=option)
         target = _resolved(path)
-        for source in inputs:
-            if _same_place(target, source):
-                raise UpstrokeError(
-                    f"is the input {source}" if target != source else "is an input",
-                    where=f"{option} {path}",
-                    remedy="inputs are never written to: name another file",
-                )
+        _keep_off(option, path, target, inputs)
         for other, earlier in targets.items():
             if _same_place(target, earlier):
                 raise UpstrokeError(
@@ -155,6 +167,16 @@ def plan_outputs(choice: OutputChoice, inputs: Sequence[Path]) -> OutputPlan:
         report=targets.get("--report"),
         force=choice.force,
     )
+
+
+def _keep_off(option: str, path: Path, target: Path, inputs: Sequence[Path]) -> None:
+    for source in inputs:
+        if _same_place(target, source):
+            raise UpstrokeError(
+                f"is the input {source}" if target != source else "is an input",
+                where=f"{option} {path}",
+                remedy="inputs are never written to: name another file",
+            )
 
 
 def check_target(path: Path, *, force: bool) -> Path:

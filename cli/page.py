@@ -29,7 +29,7 @@ from cli.page_words import answer_of, kind_of, question_of, tables_of
 if TYPE_CHECKING:
     from matplotlib.figure import Figure
 
-__all__ = ["Section", "one_page", "page_bytes", "section_of"]
+__all__ = ["Section", "one_page", "page_bytes", "section_html", "section_of"]
 
 OBTAINED = "How each number was obtained"
 COVERAGE = (
@@ -164,6 +164,11 @@ def page_bytes(
 </html>
 """
     return html.encode("utf-8", "backslashreplace")
+
+
+def section_html(payload: dict[str, Any]) -> str:
+    """Return what a page says of one result, without pictures."""
+    return _article(Section(payload), 1, several=False)
 
 
 def _article(section: Section, number: int, *, several: bool) -> str:

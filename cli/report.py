@@ -50,6 +50,7 @@ def report(
     from cli.terminal import terminal_width
 
     joined = join_results(load_results(results), title)
+    plan.keep_off([place for e in joined.entries for item in e.inputs for place in item.places])
     settings = {"command": "report", "title": title}
     payload = with_provenance(joined.to_json(), settings)
 

@@ -3,15 +3,15 @@
 from __future__ import annotations
 
 import hashlib
-import json
 from collections.abc import Sequence
 from dataclasses import dataclass
 from pathlib import Path
 from typing import Any
 
 from cli.page_blocks import Fact
-from cli.page_words import answer_of, kind_of, question_of, tables_of
+from cli.page_words import answer_of, kind_of, question_of
 from isotherm.errors import UpstrokeError
+from isotherm.json_file import read_json
 
 __all__ = ["Dossier", "Entry", "InputState", "join_results", "load_results"]
 
@@ -20,18 +20,24 @@ ORDER = (
     "check", "isotherm", "replicates", "batch", "mixture", "temperature", "fluid", "potential",
     "oscillation", "cycles", "hold", "target", "transfer", "audit",
 )  # fmt: skip
+# What comes of reading a result whose parts are missing or of another kind than it says.
+UNFIT = (ArithmeticError, AttributeError, LookupError, TypeError, ValueError)
 REMEDY = "make it again with the command's --json"
-LARGEST = 200_000_000  # bytes; a result is far smaller
 
 
 @dataclass(frozen=True)
 class InputState:
-    """A file a result was made from. state : "unchanged", "changed" or "not found"; found : where it is."""
+    """A file a result was made from.
+
+    state : "unchanged", "changed" or "not found". found : where it is, if unchanged. places : every file
+    that was read to look for it.
+    """
 
     path: str
     sha256: str
     state: str
     found: Path | None
+    places: tuple[Path, ...] = ()
 
 
 @dataclass(frozen=True)
@@ -106,22 +112,7 @@ def load_results(paths: Sequence[Path]) -> list[Entry]:
     """
     entries = []
     for path in paths:
-        try:
-            if path.stat().st_size > LARGEST:
-                raise UpstrokeError("is too large for a result", where=str(path), remedy=REMEDY)
-            data = path.read_bytes()
-        except OSError as error:
-            raise UpstrokeError(
-                f"cannot be read: {error.strerror}", where=str(path), remedy="name a file that can"
-            ) from error
-        try:
-            parsed = json.loads(data)
-        except (ValueError, RecursionError) as error:
-            raise UpstrokeError(
-                "is no JSON; a report is made from results written with --json",
-                where=str(path),
-                remedy=REMEDY,
-            ) from error
+        parsed, data = read_json(path, remedy=REMEDY)
         digest = hashlib.sha256(data).hexdigest()
         for payload in parsed if isinstance(parsed, list) else [parsed]:
             entries.append(_entry(path, digest, payload))
@@ -131,19 +122,29 @@ def load_results(paths: Sequence[Path]) -> list[Entry]:
 def _entry(path: Path, digest: str, payload: Any) -> Entry:
     schema = payload.get("schema") if isinstance(payload, dict) else None
     known = {f"upstroke.{kind}/1" for kind in ORDER}
-    if not isinstance(payload, dict) or schema not in known:
+    if not isinstance(schema, str) or schema not in known:
         found = f"schema {schema}" if schema else "no schema"
         raise UpstrokeError(
             f"is no result this report can join ({found})", where=str(path), remedy=REMEDY
         )
     try:
-        answer = tuple(answer_of(payload))
-        tables_of(payload)
-    except (KeyError, TypeError, AttributeError, ValueError, IndexError) as error:
+        entry = Entry(path, digest, payload, tuple(answer_of(payload)), _states(path, payload))
+        _render(entry)
+    except UNFIT as error:
         raise UpstrokeError(
             f"lacks a part of a result ({schema}): {error}", where=str(path), remedy=REMEDY
         ) from error
-    return Entry(path, digest, payload, answer, _states(path, payload))
+    return entry
+
+
+def _render(entry: Entry) -> None:
+    """Try everything a report says of one result, so that a part that is no such part is told here."""
+    from cli.page import section_html
+    from cli.report_text import report_text
+
+    alone = Dossier(entry.title, (entry,), (), ())
+    report_text(alone, 80)
+    section_html(entry.payload)
 
 
 def _states(path: Path, payload: dict[str, Any]) -> tuple[InputState, ...]:
@@ -167,18 +168,19 @@ def _states(path: Path, payload: dict[str, Any]) -> tuple[InputState, ...]:
 
 def _state(path: Path, name: str, digest: str) -> InputState:
     """Look for an input where it was named, then beside the result."""
-    state = "not found"
+    read: list[Path] = []
     for place in (Path(name), path.parent / name, path.parent / Path(name).name):
         try:
             if not place.is_file():
                 continue
-            same = hashlib.sha256(place.read_bytes()).hexdigest() == digest
+            with place.open("rb") as file:
+                same = hashlib.file_digest(file, "sha256").hexdigest() == digest
         except (OSError, ValueError):
             continue
+        read.append(place)
         if same:
-            return InputState(name, digest, "unchanged", place)
-        state = "changed"
-    return InputState(name, digest, state, None)
+            return InputState(name, digest, "unchanged", place, tuple(read))
+    return InputState(name, digest, "changed" if read else "not found", None, tuple(read))
 
 
 def join_results(entries: Sequence[Entry], title: str | None) -> Dossier:
@@ -209,7 +211,7 @@ def join_results(entries: Sequence[Entry], title: str | None) -> Dossier:
 def _pressures(entries: Sequence[Entry]) -> list[Fact]:
     """Hold the pressure of each build against the window of each choice of pressure."""
     facts = []
-    windows = [e for e in entries if e.kind == "target" and e.payload.get("window")]
+    windows = [e for e in entries if e.kind == "target" and _is_window(e.payload.get("window"))]
     for entry in entries:
         held = entry.payload.get("pressure_target")
         if entry.kind not in ("transfer", "audit") or not isinstance(held, (int, float)):
@@ -226,3 +228,10 @@ def _pressures(entries: Sequence[Entry]) -> list[Fact]:
                 )
             )
     return facts
+
+
+def _is_window(value: Any) -> bool:
+    """Whether it is a pair of pressures, each of them a number or null."""
+    if not isinstance(value, list) or len(value) != 2:
+        return False
+    return all(end is None or isinstance(end, (int, float)) for end in value)

@@ -9,7 +9,7 @@ from cli.page import Section, page_bytes
 from cli.page_figure import Picture, picture_of
 from cli.page_html import facts_html, warnings_html
 from cli.page_plots import isotherm_picture, result_pictures
-from cli.report_join import Dossier, Entry
+from cli.report_join import UNFIT, Dossier, Entry
 from isotherm.errors import UpstrokeError
 
 __all__ = ["dossier_page"]
@@ -27,20 +27,20 @@ def dossier_page(dossier: Dossier) -> bytes:
 
 
 def _pictures(entry: Entry) -> tuple[Picture, ...]:
-    drawn = result_pictures(entry.payload)
-    if drawn or entry.kind not in ("isotherm", "hold"):
-        return drawn
-    if any(item.state != "unchanged" for item in entry.inputs):
-        return ()
     try:
-        return _again(entry)
-    except UpstrokeError:
-        # the numbers stand as they are; only the drawing cannot be made from these files any more
+        return result_pictures(entry.payload) or _again(entry)
+    except (UpstrokeError, *UNFIT):
+        # the numbers stand as they are; only the drawing cannot be made of them, or not from these files
+        # any more, or not as the recorded settings say
         return ()
 
 
 def _again(entry: Entry) -> tuple[Picture, ...]:
-    """Read the unchanged inputs once more, as the recorded settings say, and draw."""
+    """Read the inputs once more where they are unchanged, as the recorded settings say, and draw."""
+    if entry.kind not in ("isotherm", "hold"):
+        return ()
+    if any(item.state != "unchanged" for item in entry.inputs):
+        return ()
     from cli.inputs import load_sheet
 
     places = {item.path: item.found for item in entry.inputs}

@@ -131,7 +131,8 @@ def input_stamp(path: Path) -> dict[str, str]:
         The file cannot be read.
     """
     try:
-        digest = hashlib.sha256(path.read_bytes()).hexdigest()
+        with path.open("rb") as file:
+            digest = hashlib.file_digest(file, "sha256").hexdigest()
     except OSError as error:
         raise UpstrokeError(
             f"cannot be read: {error.strerror}", where=str(path), remedy="name a file that can"

@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import json
 import math
 from dataclasses import dataclass, field
 from pathlib import Path
@@ -12,6 +11,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from isotherm.errors import UpstrokeError
+from isotherm.json_file import read_json
 from isotherm.quantity import Quantity
 from isotherm.source import Source
 
@@ -178,17 +178,7 @@ def load_check(path: str | Path) -> CheckResult:
         When the file cannot be read or is not such a result.
     """
     where = str(path)
-    try:
-        text = Path(path).read_text(encoding="utf-8")
-    except (OSError, UnicodeDecodeError) as error:
-        reason = error.strerror if isinstance(error, OSError) and error.strerror else "not text"
-        raise UpstrokeError(
-            f"cannot read the check: {reason}", where=where, remedy="check the path"
-        ) from None
-    try:
-        data = json.loads(text)
-    except (ValueError, RecursionError):
-        data = None
+    data, _ = read_json(path, remedy=_REMEDY)
     items = data.get("items", []) if isinstance(data, dict) else None
     if not isinstance(data, dict) or data.get("schema") != _SCHEMA or not isinstance(items, list):
         raise UpstrokeError("not the result of a check", where=where, remedy=_REMEDY)

@@ -5,6 +5,7 @@ from __future__ import annotations
 import csv
 import io
 import json
+import random
 import shutil
 from pathlib import Path
 from typing import Any
@@ -148,3 +149,50 @@ def test_results_of_different_versions_are_told(sample: Path, tmp_path: Path) ->
     old.write_text(json.dumps(payload), encoding="utf-8")
     dossier = join_results(load_results([old, sample / "build.json"]), None)
     assert any("different versions of upstroke" in text for text in dossier.warnings)
+
+
+def test_a_file_a_result_was_made_from_is_never_written_to(
+    sample: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    for name in ("spacer_isotherm.txt", "spacer.toml"):
+        before = (sample / name).read_bytes()
+        assert run(["report", str(sample / "iso.json"), "-o", str(sample / name), "--force"]) == 1
+        assert "never written to" in capsys.readouterr().err
+        assert (sample / name).read_bytes() == before
+
+
+def wrecked(value: Any, rng: random.Random) -> Any:
+    """A JSON value with one part left out, or another kind of value in its place."""
+    odd = (None, "", "x", "</script>", -1, 1e308, 10**400, True, [], {}, [1, "2"], {"value": "a"})
+    if isinstance(value, (dict, list)) and value and rng.random() < 0.9:
+        copy = value.copy()
+        key = rng.choice(list(copy) if isinstance(copy, dict) else range(len(copy)))
+        if rng.random() < 0.1:
+            del copy[key]
+        else:
+            copy[key] = wrecked(copy[key], rng)
+        return copy
+    return rng.choice(odd)
+
+
+@pytest.mark.parametrize("name", ["iso", "hold", "target", "build"])
+def test_wrecked_results_are_joined_or_refused_in_one_line(
+    name: str, sample: Path, tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    rng = random.Random(name)
+    sound = json.loads((sample / f"{name}.json").read_text(encoding="utf-8"))
+    path, page = tmp_path / "bad.json", tmp_path / "page.html"
+    seen = set()
+    for turn in range(60):
+        bad = sound
+        for _ in range(rng.randint(1, 3)):
+            bad = wrecked(bad, rng)
+        path.write_text(json.dumps(bad), encoding="utf-8")
+        # a page takes longer, as it is drawn
+        output = ["-o", str(page), "--force"] if turn % 12 == 0 else ["--json", "-"]
+        status = run(["report", str(path), str(sample / "target.json"), *output])
+        said = capsys.readouterr().err
+        assert (status, said.count("\n")) in ((0, 0), (1, 1)), said
+        assert "fault" not in said
+        seen.add(status)
+    assert seen == {0, 1}
