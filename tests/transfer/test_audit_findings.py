@@ -313,4 +313,4 @@ def test_the_mean_takes_the_covariance_of_its_own_strokes() -> None:
     covariance = np.diag([1e-4, 25.0, 9e-4])
     found = rule_mean.check(context(made, design=Stack(type="X"), ratio_covariance=covariance))
     assert said(found) == [(None, "mean ratio", "pass")]
-    assert found[0].found == "1.000 ± 0.032"
+    assert found[0].found == "1.00 ± 0.03"
