@@ -52,7 +52,6 @@ SAMPLE: dict[str, tuple[str, ...]] = {
     "transfer/strokes.py": (
         "tests/transfer/test_strokes.py",
         "tests/transfer/test_contact.py",
-        "tests/transfer/test_strokes_by_hand.py",
     ),
     "transfer/strokes_pressure.py": (
         "tests/transfer/test_pressure.py",
