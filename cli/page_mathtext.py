@@ -22,12 +22,14 @@ def plain_label(label: str) -> str:
     'surface pressure Π / mN m⁻¹'
     >>> plain_label(r"$\Pi-\Pi_0$ of $A_\mathrm{ex}$")
     'Π-Π₀ of A_ex'
+    >>> plain_label(r"a run of 5 \$")
+    'a run of 5 $'
     """
-    parts = label.split("$")
+    parts = re.split(r"(?<!\\)\$", label)
     if len(parts) % 2 == 0:  # a lone dollar sign is one
-        return " ".join(label.split())
+        return " ".join(label.replace(r"\$", "$").split())
     written = [part if n % 2 == 0 else _math(part) for n, part in enumerate(parts)]
-    return " ".join("".join(written).split())
+    return " ".join("".join(written).replace(r"\$", "$").split())
 
 
 def _math(text: str) -> str:

@@ -186,7 +186,7 @@ def limits_picture(payload: dict[str, Any]) -> Picture | None:
         return None
     from matplotlib.figure import Figure
 
-    from isotherm.figures_style import ACCENT, BAND_SHADED, INK, style
+    from isotherm.figures_style import ACCENT, BAND_SHADED, INK, plain, style
 
     known = [
         end for rule in limits for pair in rule["intervals"] for end in pair if end is not None
@@ -217,7 +217,7 @@ def limits_picture(payload: dict[str, Any]) -> Picture | None:
         if best:
             axes.axvline(best["value"], color=ACCENT, linewidth=1.2, linestyle=(0, (5, 2)))
         axes.set_ylim(len(limits) - 0.5, -0.5)
-        axes.set_yticks(range(len(limits)), [str(rule["label"]) for rule in limits])
+        axes.set_yticks(range(len(limits)), [plain(str(rule["label"])) for rule in limits])
         axes.set_xlabel("surface pressure Π (mN/m)")
         x, y = place(axes, *np.array(places, dtype=np.float64).reshape(-1, 2).T)
         return picture_of(
@@ -236,7 +236,7 @@ def evidence_picture(payload: dict[str, Any]) -> Picture | None:
         return None
     from matplotlib.figure import Figure
 
-    from isotherm.figures_style import ACCENT, INK, SECOND, style
+    from isotherm.figures_style import ACCENT, INK, SECOND, plain, style
 
     with style():
         figure = Figure(figsize=(PAPER[0], 2.3 * len(kinds)))
@@ -263,7 +263,7 @@ def evidence_picture(payload: dict[str, Any]) -> Picture | None:
             )  # fmt: skip
             unit = unit_text(points[0]["unit"]) if points else ""
             name = str(kind.get("label") or kind["kind"])
-            axes.set_ylabel(f"{name[:26]} ({unit})" if unit else name[:26])
+            axes.set_ylabel(plain(f"{name[:26]} ({unit})" if unit else name[:26]))
             said = tuple(
                 f"{p['layers']:.4g} layers: {_text(float(p['value']), p['u'])} {unit}".strip()
                 for p in points

@@ -6,7 +6,7 @@ from pathlib import PurePath
 from typing import TYPE_CHECKING, Final
 
 from isotherm.check_result import CheckCurve, CheckItem, CheckResult
-from isotherm.figures_style import ACCENT, BAND_SHADED, FAINT, INK, SECOND, style
+from isotherm.figures_style import ACCENT, BAND_SHADED, FAINT, INK, SECOND, plain, style
 from isotherm.series_figure import PRESSURE_LABEL, blank_figure, note, tidy
 
 if TYPE_CHECKING:
@@ -38,7 +38,7 @@ def _record(curve: CheckCurve, axes: Axes) -> None:
         axes.axvline(
             curve.hinge.value, color=ACCENT, linestyle=(0, (5, 2)), label="rise begins (± 2 u)"
         )
-    tidy(axes, label, PRESSURE_LABEL, PurePath(curve.record).name)
+    tidy(axes, label, PRESSURE_LABEL, plain(PurePath(curve.record).name))
     low, high = axes.get_ylim()
     axes.set_ylim(low, high + 0.4 * (high - low))
     axes.legend(framealpha=0.9, edgecolor="none", fontsize=8, loc="upper right")
@@ -86,6 +86,9 @@ def figure_check(result: CheckResult) -> Figure:
         if not items:
             note(below, "no item has a limit")
         figure.suptitle(
-            f"{result.title or 'Before the film'}: {result.verdict}", x=0.01, ha="left", fontsize=11
+            f"{plain(result.title) or 'Before the film'}: {result.verdict}",
+            x=0.01,
+            ha="left",
+            fontsize=11,
         )
     return figure

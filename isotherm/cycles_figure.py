@@ -5,7 +5,7 @@ from __future__ import annotations
 from typing import TYPE_CHECKING, Final
 
 from isotherm.cycles_result import CyclesResult, molar
-from isotherm.figures_style import ACCENT, INK, RUN_COLOURS, RUN_DASHES, SECOND, style
+from isotherm.figures_style import ACCENT, INK, RUN_COLOURS, RUN_DASHES, SECOND, plain, style
 from isotherm.quantity import Quantity
 from isotherm.series_figure import AREA_LABEL, MARKS, PRESSURE_LABEL, blank_figure, note, tidy
 
@@ -102,5 +102,5 @@ def figure_cycles(result: CyclesResult) -> Figure:
         _works(result, work)
         shift = figure.add_subplot(grid[1, 1], sharex=work)
         _shifts(result, shift)
-        figure.suptitle(result.title or "Cycles", x=0.01, ha="left", fontsize=11)
+        figure.suptitle(plain(result.title) or "Cycles", x=0.01, ha="left", fontsize=11)
     return figure

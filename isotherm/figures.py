@@ -17,6 +17,7 @@ from isotherm.figures_style import (
     RUN_COLOURS,
     RUN_DASHES,
     SECOND,
+    plain,
     style,
 )
 from isotherm.quantity import COVERAGE_FACTOR, Quantity, format_quantity
@@ -87,7 +88,7 @@ def _draw_one(result: IsothermResult, upper: Axes, lower: Axes) -> None:
     side_rail(upper, labels)
     foot_rail(upper, _mark_baseline(branch, upper), drop=18.0)
     draw_modulus(result, lower)
-    upper.set_title(result.title or result.source.path, pad=22)
+    upper.set_title(plain(result.title or result.source.path), pad=22)
     upper.legend(
         loc="lower left", bbox_to_anchor=(-0.02, 1.0), ncols=3, frameon=False, fontsize=7.5,
         handlelength=2.6, columnspacing=1.4, borderpad=0.2,
@@ -241,7 +242,11 @@ def _draw_several(results: tuple[IsothermResult, ...], upper: Axes, lower: Axes)
         name = f"{number + 1}  {result.title or result.source.path}"
         labels.append(
             RailLabel(
-                float(curve.area[top]), float(curve.pressure[top]), (name[:34],), colour, dash
+                float(curve.area[top]),
+                float(curve.pressure[top]),
+                (plain(name[:34]),),
+                colour,
+                dash,
             )
         )
         upper.plot(

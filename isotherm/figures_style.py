@@ -19,6 +19,7 @@ __all__ = [
     "RUN_DASHES",
     "SECOND",
     "figure_bytes",
+    "plain",
     "style",
 ]
 
@@ -90,6 +91,19 @@ def style() -> AbstractContextManager[None]:
     settings.update(_STYLE)
     context: AbstractContextManager[None] = matplotlib.rc_context(settings)
     return context
+
+
+def plain(text: str) -> str:
+    r"""Return words from an input as a figure shows them: no mathematics, no control characters.
+
+    >>> plain("100 $ of $x_1$")
+    '100 \\$ of \\$x_1\\$'
+    >>> plain("_run1\n")
+    ' _run1\\n'
+    """
+    shown = "".join(c if c.isprintable() else c.encode("unicode_escape").decode() for c in text)
+    # matplotlib leaves labels that begin with an underscore out of legends
+    return (" " if shown.startswith("_") else "") + shown.replace("$", r"\$")
 
 
 def figure_bytes(figure: Figure, suffix: str) -> bytes:

@@ -6,7 +6,7 @@ from typing import TYPE_CHECKING, Final
 
 import numpy as np
 
-from isotherm.figures_style import ACCENT, BAND_SHADED, FAINT, INK, SECOND, style
+from isotherm.figures_style import ACCENT, BAND_SHADED, FAINT, INK, SECOND, plain, style
 from isotherm.hold_average import level_curve
 from isotherm.hold_result import Hold, HoldResult
 from isotherm.quantity import Quantity
@@ -129,7 +129,7 @@ def figure_hold(result: HoldResult) -> Figure:
             else:
                 top.set_axis_off()
                 bottom.set_axis_off()
-        title = result.title or "Film stability"
+        title = plain(result.title) or "Film stability"
         if len(result.holds) > _MOST:
             title += f" (first {_MOST} of {len(result.holds)} holds)"
         figure.suptitle(title, x=0.01, ha="left", fontsize=11)

@@ -7,7 +7,7 @@ from typing import TYPE_CHECKING, Final
 import numpy as np
 from numpy.typing import NDArray
 
-from isotherm.figures_style import FAINT, RUN_COLOURS, RUN_DASHES, style
+from isotherm.figures_style import FAINT, RUN_COLOURS, RUN_DASHES, plain, style
 from isotherm.mixture_result import MixtureResult, MixturesAt, SurfacePhaseRule
 from isotherm.series_figure import MARKS, PRESSURE_LABEL, blank_figure, tidy
 
@@ -50,8 +50,8 @@ def _spread_out(groups: tuple[MixturesAt, ...]) -> list[MixturesAt]:
 
 def _axis_label(result: MixtureResult) -> str:
     if len(result.components) == 2:
-        return f"mole fraction of {result.components[1]}"
-    return f"composition: fractions of {', '.join(result.components)}"
+        return f"mole fraction of {plain(result.components[1])}"
+    return f"composition: fractions of {plain(', '.join(result.components))}"
 
 
 def _places(result: MixtureResult, fractions: list[tuple[float, ...]]) -> FloatArray:

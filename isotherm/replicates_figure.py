@@ -6,7 +6,7 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
-from isotherm.figures_style import FAINT, RUN_COLOURS, RUN_DASHES, SECOND, style
+from isotherm.figures_style import FAINT, RUN_COLOURS, RUN_DASHES, SECOND, plain, style
 from isotherm.replicates_result import FeatureSpread, ReplicatesResult
 from isotherm.series import spoken
 from isotherm.series_figure import AREA_LABEL, PRESSURE_LABEL, blank_figure, tidy
@@ -47,7 +47,7 @@ def _curves(axes: Axes, result: ReplicatesResult) -> None:
             color=RUN_COLOURS[1] if run.kept else RUN_COLOURS[3],
             linestyle=RUN_DASHES[1 + marked % (len(RUN_DASHES) - 1)],
             linewidth=1.3,
-            label=f"{run.name}: {state}",
+            label=plain(f"{run.name}: {state}"),
         )
         marked += 1
     axes.fill_betweenx(

@@ -7,7 +7,7 @@ from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
-from isotherm.figures_style import ACCENT, BAND_SHADED, FAINT, INK, SECOND, style
+from isotherm.figures_style import ACCENT, BAND_SHADED, FAINT, INK, SECOND, plain, style
 from isotherm.quantity import COVERAGE_FACTOR, format_quantity
 from transfer.evidence_result import EvidenceResult, KindResult
 
@@ -67,7 +67,7 @@ def draw_evidence(result: EvidenceResult) -> Figure:
             _draw_kind(axis, kind)
         _draw_layers(axes[-1], result)
         figure.suptitle(
-            _wrapped(result.joint.statement, 36 * columns), fontsize=10.0, x=0.01, ha="left"
+            _wrapped(plain(result.joint.statement), 36 * columns), fontsize=10.0, x=0.01, ha="left"
         )
         return figure
 
@@ -139,7 +139,7 @@ def _draw_kind(axis: Axes, kind: KindResult) -> None:
             ha="center",
         )
     verdict = "agrees" if kind.consistent else "disagrees"
-    title = f"{kind.label}: {verdict}"
+    title = plain(f"{kind.label}: {verdict}")
     axis.set_title(title, color=colour, fontsize=9.5, pad=14.0 if kind.bend is not None else 6.0)
     _room(axis, kind, factor)
     if kind.drawn is not None:
@@ -207,7 +207,7 @@ def _draw_layers(axis: Axes, result: EvidenceResult) -> None:
             ha="center",
             va="bottom",
         )
-    axis.set_yticks([-float(n) for n in range(len(names))], names)
+    axis.set_yticks([-float(n) for n in range(len(names))], [plain(name) for name in names])
     axis.set_ylim(-len(names) + 0.4, 0.6)
     axis.set_xlabel("layers implied at the end (bars: ± 2 u)")
     axis.set_title("Together", fontsize=9.5, pad=14.0)

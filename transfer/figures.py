@@ -6,7 +6,7 @@ from typing import TYPE_CHECKING, Final
 
 import numpy as np
 
-from isotherm.figures_style import ACCENT, BAND_SHADED, FAINT, INK, SECOND, style
+from isotherm.figures_style import ACCENT, BAND_SHADED, FAINT, INK, SECOND, plain, style
 from isotherm.quantity import COVERAGE_FACTOR
 from transfer.figures_stack import draw_stack
 
@@ -58,7 +58,7 @@ def transfer_figure(result: TransferResult) -> Figure:
         ratios = figure.add_subplot(grid[1, :])
         along = figure.add_subplot(grid[2, 0])
         stack = figure.add_subplot(grid[2, 1])
-        figure.suptitle(result.title or "Dipping log", x=0.095, ha="left", fontsize=11)
+        figure.suptitle(plain(result.title) or "Dipping log", x=0.095, ha="left", fontsize=11)
         _draw_log(area, dipper, result)
         _draw_ratios(ratios, result)
         _draw_profile(along, result)

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from typing import TYPE_CHECKING, Final
 
-from isotherm.figures_style import ACCENT, BAND_SHADED, FAINT, INK
+from isotherm.figures_style import ACCENT, BAND_SHADED, FAINT, INK, plain
 
 if TYPE_CHECKING:
     from matplotlib.axes import Axes
@@ -66,7 +66,7 @@ def draw_stack(axes: Axes, result: TransferResult) -> None:
             continue
         if k % every == 0:
             words = f"{layer.stroke} {layer.film}" if several else f"stroke {layer.stroke}"
-            axes.text(1.06, level + 0.5 * height, words, fontsize=7, va="center")
+            axes.text(1.06, level + 0.5 * height, plain(words), fontsize=7, va="center")
         level += height
     said = f"{result.stack.layers} layers"
     if result.stack.thickness is not None:

@@ -7,7 +7,7 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
-from isotherm.figures_style import ACCENT, BAND_LIGHT, FAINT, INK, SECOND, style
+from isotherm.figures_style import ACCENT, BAND_LIGHT, FAINT, INK, SECOND, plain, style
 from isotherm.quantity import COVERAGE_FACTOR, format_quantity
 from transfer.target_limits import GASEOUS_BELOW
 from transfer.target_result import Limit, TargetResult
@@ -178,7 +178,7 @@ def _head(result: TargetResult, figure: Figure, axes: Axes) -> None:
             fontsize=_HEAD - 3, fontweight="bold", color=ACCENT, zorder=5,
         )  # fmt: skip
     figure.text(0.02, 0.925, words, fontsize=_HEAD, fontweight="bold", color=colour)
-    figure.text(0.02, 0.885, result.title or result.source.path, fontsize=_TEXT)
+    figure.text(0.02, 0.885, plain(result.title or result.source.path), fontsize=_TEXT)
 
 
 def _notes(result: TargetResult, figure: Figure) -> None:
@@ -187,7 +187,7 @@ def _notes(result: TargetResult, figure: Figure) -> None:
     else:
         first = f"Binding: {result.binding}."
     lines = [
-        *textwrap.wrap(first, _NOTE_WIDTH),
+        *textwrap.wrap(plain(first), _NOTE_WIDTH),
         *textwrap.wrap(
             "Bars: solid where a rule allows, hatched where it does not (its u, k\u00a0=\u00a02, already "
             "taken off); dark bars bind. Arrows: margin in mN/m to the rule's nearest end. ± is "

@@ -7,13 +7,13 @@ import hashlib
 import json
 import re
 import tomllib
-from html.parser import HTMLParser
 from pathlib import Path
 from typing import Any
 
 import pytest
 from dipping_export import write_log
 from isotherm_results import result as acid_result
+from page_outline import outline
 
 from cli.main import run
 from cli.page import Section, one_page, page_bytes
@@ -26,46 +26,6 @@ from cli.page_words import QUESTIONS, answer_of, question_of
 from isotherm.figures_style import style
 
 DEMO = Path(__file__).resolve().parents[2] / "demo"
-VOID = {"meta", "link", "br", "img", "input", "hr", "use", "path"}
-
-
-class Outline(HTMLParser):
-    """Checks that every element is closed, and collects text, addresses and handlers."""
-
-    def __init__(self) -> None:
-        super().__init__()
-        self.open: list[str] = []
-        self.text: list[str] = []
-        self.addresses: list[str] = []
-        self.handlers: list[str] = []
-        self.scripts: list[dict[str, str | None]] = []
-
-    def handle_starttag(self, tag: str, attrs: list[tuple[str, str | None]]) -> None:
-        if tag not in VOID:
-            self.open.append(tag)
-        if tag == "script":
-            self.scripts.append(dict(attrs))
-        for name, value in attrs:
-            if name in ("href", "src", "action", "data", "poster", "srcset"):
-                self.addresses.append(value or "")
-            if name.startswith("on"):
-                self.handlers.append(name)
-
-    def handle_endtag(self, tag: str) -> None:
-        if tag in VOID:
-            return
-        assert self.open[-1:] == [tag], (tag, self.open[-3:])
-        self.open.pop()
-
-    def handle_data(self, data: str) -> None:
-        self.text.append(data)
-
-
-def outline(page: bytes) -> Outline:
-    seen = Outline()
-    seen.feed(page.decode("utf-8"))
-    assert seen.open == []
-    return seen
 
 
 @pytest.fixture(scope="module")
