@@ -3,8 +3,8 @@
     python tests/fuzz_commands.py --inputs 100000 --jobs 2 --seed 1
     python tests/fuzz_commands.py --coverage --minutes 60
 
-Every input is a small run of one kind (isotherm, target, transfer, hold, check, evidence) with its columns,
-rows, run sheet or bytes damaged, given to the command line in this process with warnings as errors. Wanted
+Every input is a small run for one of the commands with its columns, rows, run sheet, evidence or bytes
+damaged, given to the command line in this process with warnings as errors. Wanted
 is status 0 with JSON free of NaN, or one line of refusal; anything else is written down as a finding, to
 become a test; so is an input that takes longer than `SLOW`. With `--coverage` (where the package atheris is
 installed) the bytes of the export are chosen by the code they reach.
@@ -61,13 +61,19 @@ class Bench:
         self.data = folder / "run.csv"
         self.sheet = folder / "run.toml"
         self.evidence = folder / "evidence.toml"
-        self._build: object = None
+        self.others: list[Path] = []
 
     def write(self, run: Run, data: bytes | None = None) -> None:
         """Put the input where the commands find it."""
         self.data.write_bytes(run.text().encode() if data is None else data)
         self.sheet.write_text(run.sheet, encoding="utf-8")
         self.evidence.write_text(run.evidence, encoding="utf-8", errors="replace")
+        self.others = []
+        for number, (export, sheet) in enumerate(run.others):
+            path = self.folder / f"other{number}.csv"
+            path.write_text(export, encoding="utf-8")
+            path.with_suffix(".toml").write_text(sheet, encoding="utf-8")
+            self.others.append(path)
 
     def attempt(self, run: Run, data: bytes | None = None, more: tuple[str, ...] = ()) -> str:
         """Return "done", "refused", "usage", or a traceback."""
@@ -80,11 +86,16 @@ class Bench:
 
     def _command(self, run: Run, more: tuple[str, ...]) -> str:
         out, err = io.StringIO(), io.StringIO()
-        argv = [run.command, str(self.data), "-s", str(self.sheet), *(more or ("--json", "-"))]
+        argv = [run.command, *map(str, (self.data, *self.others))]
+        if not run.others:  # else each run has the sheet beside it
+            argv += ["-s", str(self.sheet)]
+        if run.evidence:
+            argv += ["-e", str(self.evidence)]
+        argv += more or ("--json", "-")
         with contextlib.redirect_stdout(out), contextlib.redirect_stderr(err):
             status = run_command(argv)
         said = err.getvalue()
-        if status == 0:
+        if status == 0 or (run.command == "audit" and status == 3):
             if not more:
                 json.loads(out.getvalue(), parse_constant=_no_constant)
             return "done"
@@ -113,7 +124,9 @@ class Bench:
         return "done"
 
 
-_REPORTS: tuple[tuple[str, ...], ...] = (("--csv", "out.csv"), ("--report", "out.html"))
+_FILES: tuple[tuple[str, ...], ...] = (
+    ("--csv", "out.csv"), ("--report", "out.html"), ("--figure", "out.svg"),
+)  # fmt: skip
 
 
 def _worker(
@@ -137,7 +150,7 @@ def _worker(
         data = mutated(rng, [run.text().encode()]) if rng.random() < 0.2 else None
         more: tuple[str, ...] = ()
         if run.command != "evidence" and rng.random() < 0.1:
-            kind = rng.choice((*_REPORTS, ()))
+            kind = rng.choice((*_FILES, ()))
             more = (*kind, "--force") if kind else ("--force",)  # the last prints the table
         outcome = bench.attempt(run, data, more)
         label = outcome if outcome in ("done", "refused", "usage") else "finding"
@@ -221,7 +234,7 @@ def main() -> int:
         outcomes.update(result[1])
     print(f"{tried} runs in {time.monotonic() - begin:.0f} s")
     for name, count in sorted(outcomes.items()):
-        print(f"  {name:18s} {count}")
+        print(f"  {name:20s} {count}")
     print(f"findings: {found}" + (f", in {options.findings}" if found else ""))
     return 1 if found else 0
 

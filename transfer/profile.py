@@ -20,6 +20,8 @@ FloatArray = NDArray[np.float64]
 # Numbers of windows to try, finest first.
 _MOST_WINDOWS = (10, 7, 5, 3, 1)
 _LEAST_MM = 2.0
+# cm^4; below, the film is gone to nothing and the inverse is no number.
+_LEAST_VARIANCE = 1e-100
 # A window is worth having when its own uncertainty is below this.
 _WANTED_U = 0.03
 # Local ratio below this part of the stroke's usual one: film is not taken there.
@@ -125,7 +127,7 @@ def _fit(
     if direction == "up":
         path = path[::-1]
     steps = np.diff(path)
-    if (steps <= 0).any():
+    if (steps <= 0).any() or (variance < _LEAST_VARIANCE).any():
         return None
     # film removed at a place = sum of slope x part of each window already crossed
     basis = np.clip(crossed[:, None] - path[None, :-1], 0.0, steps[None, :])

@@ -48,11 +48,32 @@ def test_damaged_runs(command: str, seed: int, tmp_path: Path) -> None:
 
 
 @pytest.mark.parametrize("command", sorted(SOUND))
-@pytest.mark.parametrize("column", [0, 1, 2])
 @pytest.mark.parametrize("factor", [1e9, 1e200, -1.0])
-def test_columns_of_absurd_size(command: str, column: int, factor: float, tmp_path: Path) -> None:
-    values = np.array(list(SOUND[command].columns.values())[column])
-    outcome(with_column(command, column, values * factor), tmp_path)
+def test_columns_of_absurd_size(command: str, factor: float, tmp_path: Path) -> None:
+    for column, values in enumerate(SOUND[command].columns.values()):
+        outcome(with_column(command, column, np.array(values) * factor), tmp_path)
+
+
+def test_an_input_that_takes_too_long_is_a_finding(
+    tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    monkeypatch.setattr("fuzz_commands.SLOW", 0.01)
+    found = Bench(tmp_path).attempt(SOUND["isotherm"])
+    assert "took longer than 0.01 s" in found
+    assert "in _command" in found  # with the place it was stopped in
+
+
+def test_one_row_an_age_before_the_others(tmp_path: Path) -> None:
+    """A film followed through the creep of a dwell to that moment is larger than any number."""
+    time = np.array(SOUND["transfer"].columns["Time (s)"])
+    time[164] = -1e12
+    outcome(with_column("transfer", 0, time), tmp_path)
+
+
+def test_a_film_that_is_gone_at_once(tmp_path: Path) -> None:
+    """Areas of 1e-300 cm^2, whose squares are no numbers."""
+    time = np.array(SOUND["transfer"].columns["Time (s)"])
+    outcome(with_column("transfer", 2, 200.0 * np.exp(-1.5 * (time % 1000.0))), tmp_path)
 
 
 @pytest.mark.parametrize("command", ["check", "hold", "transfer"])

@@ -62,34 +62,6 @@ def _sheet(path: Path, text: str, roles: dict[str, str]) -> Path:
     return path
 
 
-def _waves() -> Columns:
-    rng = np.random.default_rng(3)
-    t = np.arange(0.0, 400.0, 1.0)
-    angle = 2.0 * np.pi * 0.03 * t
-    area = 211.6 * np.exp(0.01 * np.sin(angle)) + rng.normal(0.0, 0.01, t.size)
-    pressure = 30.0 - np.sin(angle + 0.2) + rng.normal(0.0, 0.03, t.size)
-    return {"t": t.tolist(), "a": area.tolist(), "p": pressure.tolist()}
-
-
-def _loops() -> Columns:
-    rng = np.random.default_rng(4)
-    down = np.linspace(0.45, 0.21, 200)
-    area = np.concatenate([down, down[::-1], down, down[::-1]])
-    lag = np.concatenate([np.zeros(200), np.full(200, 0.004)] * 2)
-    pressure = np.interp(area + lag, [0.20, 0.215, 0.25, 0.50], [50.0, 26.0, 0.2, 0.0])
-    pressure += rng.normal(0.0, 0.03, area.size)
-    time = np.arange(area.size) * 2.0
-    return {"t": time.tolist(), "a": (area * 529.0).tolist(), "p": pressure.tolist()}
-
-
-def _fluid() -> Columns:
-    rng = np.random.default_rng(1)
-    area = np.linspace(1.2, 0.45, 400)
-    pressure = np.clip(4.075 / (area - 0.40) - 7.0, 0.0, None) + rng.normal(0.0, 0.03, area.size)
-    potential = np.where(area < 1.0, 320.0 - 300.0 * area, 20.0) + rng.normal(0.0, 2.0, area.size)
-    return {"a": (area * 529.0).tolist(), "p": pressure.tolist(), "v": potential.tolist()}
-
-
 def _evidence(folder: Path) -> tuple[Path, tuple[Path, ...]]:
     """Capacitance after 0, 2 and 4 layers, from raw voltammograms."""
     rng = np.random.default_rng(7)
@@ -149,8 +121,9 @@ def every_command(folder: Path) -> dict[str, Invocation]:
     held = _export(folder / "held.csv", sound["hold"].columns)
     bare = _export(folder / "bare.csv", sound["check"].columns)
     build = _export(folder / "build.csv", sound["transfer"].columns)
-    waves, loops = _export(folder / "waves.csv", _waves()), _export(folder / "loops.csv", _loops())
-    vapour = _export(folder / "fluid.csv", _fluid())
+    waves = _export(folder / "waves.csv", sound["oscillation"].columns)
+    loops = _export(folder / "loops.csv", sound["cycles"].columns)
+    vapour = _export(folder / "fluid.csv", sound["fluid"].columns)
     known = folder / "known.csv"  # the trace's columns say nothing of the hold's
     known.write_text(sound["hold"].text(), encoding="utf-8")
     evidence, raw = _evidence(folder)

@@ -3,13 +3,15 @@
 from __future__ import annotations
 
 import random
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
+from series_films import Lipid
 
 __all__ = ["Run", "damaged", "scrambled", "seed_runs"]
 
 Columns = dict[str, list[float]]
+_TIME, _AREA, _PRESSURE = "Time (s)", "Area (cm^2)", "Pressure (mN/m)"
 
 _SHEET = """\
 title = "Invented"
@@ -94,12 +96,16 @@ _WORDS = (
 
 @dataclass(frozen=True)
 class Run:
-    """A command, its data as columns, its run sheet, and evidence where it takes any."""
+    """A command, its data as columns, its run sheet, and evidence where it takes any.
+
+    others : exports and sheets of further runs, which stay as they are.
+    """
 
     command: str
     columns: Columns
     sheet: str
     evidence: str = ""
+    others: tuple[tuple[str, str], ...] = ()
 
     def text(self, separator: str = ",", line: str = "\n") -> str:
         """Return the export."""
@@ -164,8 +170,77 @@ def _bare() -> Columns:
     }
 
 
+def _waves() -> Columns:
+    rng = np.random.default_rng(3)
+    t = np.arange(0.0, 400.0, 1.0)
+    angle = 2.0 * np.pi * 0.03 * t
+    area = 211.6 * np.exp(0.01 * np.sin(angle)) + rng.normal(0.0, 0.01, t.size)
+    pressure = 30.0 - np.sin(angle + 0.2) + rng.normal(0.0, 0.03, t.size)
+    return {_TIME: t.tolist(), _AREA: area.tolist(), _PRESSURE: pressure.tolist()}
+
+
+def _loops() -> Columns:
+    rng = np.random.default_rng(4)
+    down = np.linspace(0.45, 0.21, 200)
+    area = np.concatenate([down, down[::-1], down, down[::-1]])
+    lag = np.concatenate([np.zeros(200), np.full(200, 0.004)] * 2)
+    pressure = np.interp(area + lag, [0.20, 0.215, 0.25, 0.50], [50.0, 26.0, 0.2, 0.0])
+    pressure += rng.normal(0.0, 0.03, area.size)
+    time = np.arange(area.size) * 2.0
+    return {_TIME: time.tolist(), _AREA: (area * 529.0).tolist(), _PRESSURE: pressure.tolist()}
+
+
+def _fluid() -> Columns:
+    rng = np.random.default_rng(1)
+    area = np.linspace(1.2, 0.45, 400)
+    pressure = np.clip(4.075 / (area - 0.40) - 7.0, 0.0, None) + rng.normal(0.0, 0.03, area.size)
+    potential = np.where(area < 1.0, 320.0 - 300.0 * area, 20.0) + rng.normal(0.0, 2.0, area.size)
+    return {
+        _AREA: (area * 529.0).tolist(),
+        _PRESSURE: pressure.tolist(),
+        "Surface potential (mV)": potential.tolist(),
+    }
+
+
+def _lipid(film: Lipid, *, seed: int, shrink: float = 0.0) -> Columns:
+    """A film with a coexistence, in area per molecule."""
+    rng = np.random.default_rng(seed)
+    top = film.collapse if film.collapse is not None else film.last
+    pressure = np.linspace(0.0, top, 5000)
+    area = np.asarray(film.area(pressure)) - shrink
+    grid = np.linspace(area[0] * 1.25, area[-1] * 0.985, 250)
+    value = np.interp(-grid, -area, pressure, left=0.0, right=top) + rng.normal(0.0, 0.03, 250)
+    return {"Area (nm^2)": grid.tolist(), _PRESSURE: value.tolist()}
+
+
+def _series(command: str) -> Run:
+    """Three runs, each with a sheet of its own; the first is the one that will be damaged."""
+    runs = []
+    for n in range(3):
+        film, shrink, sheet = Lipid(), 0.002 * n, _SHEET
+        if command == "mixture":
+            film = Lipid(omega=0.40 - 0.02 * n, transition=None, collapse=50.0)
+            shrink, x = (0.0, 0.015, 0.0)[n], 0.5 * n
+            sheet = "".join(
+                f'[[film.component]]\nname = "{name}"\nmolar_mass = "700 g/mol"\nmole_fraction = {part}\n'
+                for name, part in (("a", 1.0 - x), ("b", x))
+                if part > 0
+            )
+            sheet += '[subphase]\ntemperature = "22.0 ± 0.1 degC"\n'
+        elif command == "temperature":
+            t = 15 + 5 * n
+            film = Lipid(
+                transition=5 + 1.3 * (t - 15), gap=0.2 - 0.006 * (t - 15), kelvin=273.15 + t
+            )
+            sheet = f'[subphase]\ntemperature = "{t} ± 0.1 degC"\n'
+        runs.append((_lipid(film, seed=n, shrink=shrink), sheet))
+    first, sheet = runs[0]
+    others = tuple((Run("", columns, "").text(), own) for columns, own in runs[1:])
+    return Run(command, first, sheet, others=others)
+
+
 def seed_runs() -> list[Run]:
-    """One sound run for each command that is tried; the isotherm twice, as it serves most of them."""
+    """One sound run for each command that analyses any; evidence is a second one for the audit's."""
     return [
         Run("isotherm", _isotherm(), _SHEET),
         Run("target", _isotherm(), _SHEET),
@@ -173,6 +248,12 @@ def seed_runs() -> list[Run]:
         Run("hold", _hold(), _SHEET),
         Run("check", _bare(), _SHEET),
         Run("evidence", _log(), _SHEET, _EVIDENCE),
+        Run("audit", _log(), _SHEET, _EVIDENCE),
+        Run("cycles", _loops(), _SHEET),
+        Run("oscillation", _waves(), _SHEET),
+        Run("fluid", _fluid(), _SHEET),
+        Run("potential", _fluid(), _SHEET),
+        *(_series(command) for command in ("batch", "replicates", "mixture", "temperature")),
     ]
 
 
@@ -265,7 +346,7 @@ def damaged(run: Run, rng: random.Random) -> Run:
     columns, sheet, evidence = run.columns, run.sheet, run.evidence
     choice = rng.random()
     if evidence and choice < 0.7:
-        return Run(run.command, columns, sheet, scrambled(evidence, rng))
+        return replace(run, evidence=scrambled(evidence, rng))
     if choice < 0.25:
         sheet = scrambled(sheet, rng)
     if choice > 0.15:
@@ -275,4 +356,4 @@ def damaged(run: Run, rng: random.Random) -> Run:
             columns[name] = _twist(columns[name], rng)
         if rng.random() < 0.5:
             columns = _cut(columns, rng)
-    return Run(run.command, columns, sheet, evidence)
+    return replace(run, columns=columns, sheet=sheet)

@@ -11,9 +11,9 @@ from types import FrameType
 
 __all__ = ["TookTooLong", "time_limit"]
 
-# Code that never comes back to Python cannot be interrupted from it: after so many times the limit, on
-# the clock of the wall, the stack is printed and the process ends, with its input still on the disk.
-_LAST_RESORT = 30.0
+# Code that never comes back to Python cannot be interrupted from it: after this time on the clock of the
+# wall (s) the stack is printed and the process ends, with its input still on the disk.
+_LAST_RESORT = 600.0
 
 
 class TookTooLong(BaseException):
@@ -39,7 +39,7 @@ def time_limit(seconds: float) -> Iterator[None]:
 
     before = signal.signal(signal.SIGPROF, stop)
     signal.setitimer(signal.ITIMER_PROF, seconds)
-    faulthandler.dump_traceback_later(seconds * _LAST_RESORT, exit=True, file=sys.__stderr__)
+    faulthandler.dump_traceback_later(_LAST_RESORT + seconds, exit=True, file=sys.__stderr__)
     try:
         yield
     finally:
