@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import math
 from dataclasses import dataclass
 from itertools import pairwise
 from typing import Final
@@ -108,10 +107,9 @@ def _stretches(
         if k < len(halves):
             period = float(np.median(halves[members]))
             swing = float(np.median(swings[members]))
-            together = abs(math.log(halves[k] / period)) < math.log(_SAME_PERIOD) and abs(
-                math.log(swings[k] / swing)
-            ) < math.log(_SAME_AMPLITUDE)
-            if together:
+            if _alike(halves[k], period, _SAME_PERIOD) and _alike(
+                swings[k], swing, _SAME_AMPLITUDE
+            ):
                 continue
         if k - start >= _FEWEST_HALF_CYCLES:
             cuts = [start, *_changes(halves[members], swings[members], start), k]
@@ -127,6 +125,11 @@ def _stretches(
             )
         start = k
     return tuple(found)
+
+
+def _alike(one: float, other: float, factor: float) -> bool:
+    """Whether two lengths differ by less than a factor; a clock that stands still makes them 0 or less."""
+    return max(one, other) < factor * min(one, other)
 
 
 def _between_rows(

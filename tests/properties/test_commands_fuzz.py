@@ -70,6 +70,13 @@ def test_one_row_an_age_before_the_others(tmp_path: Path) -> None:
     outcome(with_column("transfer", 0, time), tmp_path)
 
 
+@pytest.mark.parametrize("still", [slice(0, 200), slice(100, 300), slice(0, 400)])
+def test_waves_while_the_clock_stands_still(still: slice, tmp_path: Path) -> None:
+    time = np.array(SOUND["oscillation"].columns["Time (s)"])
+    time[still] = time[still][0]
+    outcome(with_column("oscillation", 0, time), tmp_path)
+
+
 def test_a_film_that_is_gone_at_once(tmp_path: Path) -> None:
     """Areas of 1e-300 cm^2, whose squares are no numbers."""
     time = np.array(SOUND["transfer"].columns["Time (s)"])

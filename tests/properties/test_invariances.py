@@ -2,21 +2,30 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable
+from functools import partial
 from pathlib import Path
 from typing import Any
 
 import numpy as np
 import pytest
+from hostile_runs import seed_runs
 from numpy.typing import NDArray
 from property_runs import agree, numbers_of, write_export
 
 from isotherm.analysis import analyse
+from isotherm.check import read_check
+from isotherm.cycles import analyse_cycles
+from isotherm.fluid import analyse_fluid
 from isotherm.hold import analyse_hold
 from isotherm.hold_read import read_hold
+from isotherm.oscillation import analyse_oscillation
+from isotherm.potential import analyse_potential
 from isotherm.sheet_read import parse_sheet
 from isotherm.trace_read import read_trace
 from transfer.analysis import analyse_log
 from transfer.log import read_log
+from transfer.target import choose_target
 
 FloatArray = NDArray[np.float64]
 Columns = dict[str, FloatArray]
@@ -44,6 +53,15 @@ position_reads = "{reads}"
 surface_at = "{surface} ± 0.05 mm"
 modulus = "200 ± 10 mN/m"
 """
+TARGET = """
+[target]
+collapse_margin = "5 mN/m"
+guard_band = "2 mN/m"
+"""
+# What each kind's result must hold for a comparison to say anything.
+FINDINGS = (
+    "branches", "holds", "strokes", "items", "cycles", "segments", "whole_branch", "onset", "limits",
+)  # fmt: skip
 DRESSES: dict[str, dict[str, Any]] = {
     "semicolons and decimal commas": {"separator": ";", "decimal": ","},
     "tabs": {"separator": "\t"},
@@ -92,8 +110,32 @@ def build_run() -> Columns:
     }
 
 
-UNITS = {"time": "s", "area": "cm^2", "pressure": "mN/m", "dipper position": "mm"}
-RUNS = {"isotherm": film_run, "hold": hold_run, "transfer": build_run}
+def seed_run(command: str) -> Columns:
+    """One of the small runs of all commands, with a time where it has none."""
+    run = next(each for each in seed_runs() if each.command == command)
+    columns = {name.partition(" (")[0].lower(): np.array(v) for name, v in run.columns.items()}
+    rows = len(next(iter(columns.values())))
+    named = {name.replace("surface ", ""): values for name, values in columns.items()}
+    return {"time": np.arange(rows) * 2.0, **named}
+
+
+UNITS = {
+    "time": "s",
+    "area": "cm^2",
+    "pressure": "mN/m",
+    "dipper position": "mm",
+    "potential": "mV",
+}
+RUNS: dict[str, Callable[[], Columns]] = {
+    "isotherm": film_run,
+    "target": film_run,
+    "hold": hold_run,
+    "transfer": build_run,
+    **{
+        command: partial(seed_run, command)
+        for command in ("check", "cycles", "fluid", "oscillation", "potential")
+    },
+}
 
 
 def headed(columns: Columns, units: dict[str, str] = UNITS) -> Columns:
@@ -102,14 +144,30 @@ def headed(columns: Columns, units: dict[str, str] = UNITS) -> Columns:
 
 def numbers(kind: str, path: Path, **sheet: Any) -> dict[str, Any]:
     """What the analysis says of an export, in its JSON form."""
-    if kind == "isotherm":
-        text = FILM.format(**({"volume": 25.0, "area_u": 0.3} | sheet))
-        return numbers_of(analyse(read_trace(path, parse_sheet(text))).to_json())
+    if kind == "transfer":
+        run_sheet = parse_sheet(BUILD.format(**({"reads": "depth", "surface": 5.0} | sheet)))
+        return numbers_of(analyse_log(read_log(path, run_sheet), run_sheet).to_json())
+    text = FILM.format(**({"volume": 25.0, "area_u": 0.3} | sheet))
+    run_sheet = parse_sheet(text)
     if kind == "hold":
-        run_sheet = parse_sheet(FILM.format(volume=25.0, area_u=0.3))
         return numbers_of(analyse_hold(read_hold(path, run_sheet), run_sheet).to_json())
-    run_sheet = parse_sheet(BUILD.format(**({"reads": "depth", "surface": 5.0} | sheet)))
-    return numbers_of(analyse_log(read_log(path, run_sheet), run_sheet).to_json())
+    if kind == "check":
+        found = numbers_of(read_check([path], run_sheet).to_json())
+        items = [{k: v for k, v in item.items() if k != "record"} for item in found.pop("items")]
+        return {**found, "items": items}
+    if kind == "cycles":
+        return numbers_of(analyse_cycles(read_trace(path, run_sheet)).to_json())
+    if kind == "oscillation":
+        return numbers_of(analyse_oscillation(read_trace(path, run_sheet)).to_json())
+    trace = read_trace(path, run_sheet)
+    film = analyse(trace)
+    if kind == "fluid":
+        return numbers_of(analyse_fluid(trace, film).to_json())
+    if kind == "potential":
+        return numbers_of(analyse_potential(film).to_json())
+    if kind == "target":
+        return numbers_of(choose_target(film, parse_sheet(text + TARGET)).to_json())
+    return numbers_of(film.to_json())
 
 
 @pytest.fixture(params=sorted(RUNS))
@@ -120,7 +178,7 @@ def kind(request: pytest.FixtureRequest) -> str:
 @pytest.fixture
 def usual(kind: str, tmp_path: Path) -> dict[str, Any]:
     out = numbers(kind, write_export(tmp_path / "usual.csv", headed(RUNS[kind]())))
-    assert any(out[name] for name in ("branches", "holds", "strokes") if name in out)
+    assert any(out.get(name) for name in FINDINGS)
     return out
 
 
@@ -136,6 +194,7 @@ def test_units(kind: str, usual: dict[str, Any], tmp_path: Path) -> None:
         "area": ("mm^2", 100.0),
         "pressure": ("N/m", 1e-3),
         "dipper position": ("cm", 0.1),
+        "potential": ("V", 1e-3),
     }
     columns = {
         f"{name} ({factors[name][0]})": values * factors[name][1]
@@ -205,12 +264,30 @@ def test_area_and_molecules_together(tmp_path: Path) -> None:
             assert agree(one[name], other[name], within=0.2, path=name) == []
 
 
-def test_a_timeless_trace_reversed(tmp_path: Path) -> None:
-    columns = headed(film_run())
+@pytest.mark.parametrize("kind", ["cycles", "fluid", "potential"])
+def test_area_and_molecules_together_in_what_is_made_of_isotherms(
+    kind: str, tmp_path: Path
+) -> None:
+    columns = headed(RUNS[kind]())
+    usual = numbers(kind, write_export(tmp_path / "usual.csv", columns))
+    columns["area (cm^2)"] = columns["area (cm^2)"] * 2.0
+    path = write_export(tmp_path / "twice.csv", columns, digits=17)
+    twice = numbers(kind, path, volume=50.0, area_u=0.6)
+    if kind == "cycles":
+        usual, twice = (
+            {**each, "cycles": [{"hysteresis": c["hysteresis"]["molar"]} for c in each["cycles"]]}
+            for each in (usual, twice)
+        )
+    assert agree(usual, twice, within=0.2) == []
+
+
+@pytest.mark.parametrize("kind", ["isotherm", "fluid", "potential", "target"])
+def test_a_timeless_trace_reversed(kind: str, tmp_path: Path) -> None:
+    columns = headed(RUNS[kind]())
     del columns["time (s)"]
-    usual = numbers("isotherm", write_export(tmp_path / "usual.csv", columns))
+    usual = numbers(kind, write_export(tmp_path / "usual.csv", columns))
     path = write_export(tmp_path / "back.csv", {k: v[::-1] for k, v in columns.items()})
-    assert numbers("isotherm", path) == usual
+    assert numbers(kind, path) == usual
 
 
 def test_depth_read_as_height(tmp_path: Path) -> None:

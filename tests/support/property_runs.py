@@ -83,9 +83,8 @@ def write_export(
 
 def numbers_of(payload: dict[str, Any]) -> dict[str, Any]:
     """A result's JSON without where it came from and what was said of it."""
-    return {
-        k: v for k, v in payload.items() if k not in ("source", "warnings", "title", "settings")
-    }
+    where = ("source", "sources", "warnings", "title", "settings", "name", "path")
+    return {k: v for k, v in payload.items() if k not in where}
 
 
 def agree(one: Any, other: Any, *, within: float = 1.0, path: str = "") -> list[str]:
