@@ -109,7 +109,7 @@ def _branch(trace: Trace, rows: BranchRows, at: tuple[float, ...]) -> Branch:
     area, pressure = steady_area(trace.area[order]), trace.pressure[order]
     warnings: list[str] = []
     noise = row_noise(area, pressure)
-    spikes = despike(pressure, noise)
+    spikes = despike(area, pressure, noise)
     n_spikes = int(spikes.sum())
     if n_spikes:
         warnings.append(f"{n_spikes} isolated spike(s) in pressure left out")
@@ -187,10 +187,14 @@ def _fit_until(model: KneeModel, reading: Reading, nodes: Nodes) -> float:
     )
     after = int(np.searchsorted(nodes.x, float(model.knots[knee]))) + COLLAPSED_NODES
     stop = max(stop, float(nodes.x[min(after, nodes.x.size - 1)]))
-    if knee + 1 < model.knots.size:
-        gap = float(model.knots[knee + 1] - model.knots[knee])
-        rounded = min(2.0 * float(model.widths[knee + 1]), 0.5 * gap)
-        stop = min(stop, float(model.knots[knee + 1]) - rounded)
+    for k in range(knee + 1, model.knots.size):
+        start, knot = float(model.knots[k - 1]), float(model.knots[k])
+        edge = knot - min(2.0 * float(model.widths[k]), 0.5 * (knot - start))
+        begin, end, at = (int(np.searchsorted(nodes.x, value)) for value in (start, edge, knot))
+        if end - begin >= COLLAPSED_NODES:
+            return min(stop, edge)
+        # too near to be cut off (a peak that falls at once): it is fitted too, with what follows it
+        stop = max(stop, float(nodes.x[min(at + COLLAPSED_NODES, nodes.x.size - 1)]))
     return stop
 
 

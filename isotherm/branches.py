@@ -11,7 +11,7 @@ from numpy.typing import NDArray
 
 from isotherm.trace import Trace
 
-__all__ = ["BranchRows", "find_branches", "quantum", "robust_noise", "steady_area"]
+__all__ = ["BranchRows", "find_branches", "quantum", "robust_noise", "steady_area", "uneven"]
 
 FloatArray = NDArray[np.float64]
 IntArray = NDArray[np.int64]
@@ -26,6 +26,12 @@ CLEAR_SIGMAS: Final = (
     17.0  # travel between two readings, in σ of one, at which standing still shows
 )
 PAUSE_SPEED: Final = 0.08  # 1
+# Rows are uneven where the usual departure from the usual step is more than UNEVEN of it, and departures of
+# neighbours are less against one another than half of what jitter makes them (our choices).
+UNEVEN: Final = 0.15  # 1
+JITTER: Final = -0.25  # 1
+STRETCH: Final = 16  # rows
+STRETCHES: Final = 256  # looked at, at most twice as many
 # MAD of a normal distribution is 0.6745 standard deviations.
 MAD_TO_SIGMA: Final = 1.0 / 0.6745  # 1
 
@@ -73,6 +79,27 @@ def quantum(values: FloatArray) -> float:
     return float(np.quantile(steps[moving], 0.02))
 
 
+def uneven(area: FloatArray) -> bool:
+    """Whether the steps between rows of (n,) area differ because the travel does, not by jitter.
+
+    Jitter of the reading sends one step long and the next one short: neighbouring steps have a correlation
+    of -1/2 then, and none where each row was taken at another moment. Compared within short stretches,
+    so that a change of the barrier's speed does not count.
+    """
+    steps = np.diff(area)
+    blocks = steps.size // STRETCH
+    if blocks < 4:
+        return False
+    stretches = steps[: blocks * STRETCH].reshape(blocks, STRETCH)
+    stretches = stretches[:: max(1, blocks // STRETCHES)]
+    apart = stretches - np.median(stretches, axis=1)[:, None]
+    usual = float(np.median(np.abs(apart)))
+    if usual <= UNEVEN * abs(float(np.median(steps))):
+        return False
+    apart = np.clip(apart, -6.0 * usual, 6.0 * usual)
+    return float(np.sum(apart[:, 1:] * apart[:, :-1])) > JITTER * float(np.sum(apart**2))
+
+
 def steady_area(area: FloatArray) -> FloatArray:
     """Area along one branch with the jitter of the encoder averaged out.
 
@@ -84,12 +111,13 @@ def steady_area(area: FloatArray) -> FloatArray:
     -------
     (n,) array
         A running mean over a few steps of the barrier, which keeps a steady travel as it is; the input
-        itself where its steps stand clear of its scatter, or where there are too few rows.
+        itself where its steps stand clear of its scatter, where the rows lie unevenly along the travel, or
+        where there are too few.
     """
     n = area.size
     noise = robust_noise(area)
     step = abs(float(area[-1] - area[0])) / max(n - 1, 1)
-    if n < 200 or noise < 0.3 * step or step <= 0:
+    if n < 200 or noise < 0.3 * step or step <= 0 or uneven(area):
         return area
     half = int(np.clip(np.ceil(3.0 * noise / step), 2, n // 100))
     totals = np.concatenate([[0.0], np.cumsum(area)])

@@ -8,7 +8,7 @@ from typing import Final
 import numpy as np
 from numpy.typing import NDArray
 
-from isotherm.branches import MAD_TO_SIGMA, quantum
+from isotherm.branches import MAD_TO_SIGMA, quantum, uneven
 
 __all__ = ["DENSE", "Nodes", "condense", "despike", "row_noise"]
 
@@ -18,9 +18,6 @@ SKELETON: Final = 320  # blocks that measure the curve's length
 NODES: Final = 256  # nodes the search works on
 DIGITS: Final = 1e-6  # smallest scatter of a row, as a share of the pressure range
 SPIKE_SIGMAS: Final = 6.0  # a row this far from the median of its neighbours is a spike
-# u of a line through five rows, extended five rows from its middle, and of the row itself, in σ of a row:
-# sqrt(1 + 1/5 + 5²/10).
-EXTRAPOLATED: Final = 1.92
 # So few points do not tell scatter from shape; a point read off a figure is good to about this share of
 # the axis (common practice: the thickness of a drawn line).
 FEW: Final = 30  # rows
@@ -57,9 +54,15 @@ def row_noise(area: FloatArray, pressure: FloatArray) -> float:
     if pressure.size < 5:
         return 0.0
     if pressure.size > DENSE:
-        # in a dense run the area's own jitter would mislead: rows are evenly spaced
+        # in a dense run the area's own jitter would mislead: rows are taken as evenly spaced
         residual = pressure[1:-1] - 0.5 * (pressure[:-2] + pressure[2:])
         scaled = [residual / np.sqrt(1.5)]
+        if uneven(area):
+            gap = area[2:] - area[:-2]
+            share = (area[1:-1] - area[:-2]) / np.where(gap == 0.0, np.inf, gap)
+            share = np.clip(share, -1.0, 2.0)
+            residual = pressure[1:-1] - (1.0 - share) * pressure[:-2] - share * pressure[2:]
+            scaled.append(residual / np.sqrt(1.0 + share**2 + (1.0 - share) ** 2))
     else:
         scaled = [_left_out(area, pressure, reach) for reach in (1, 2)]
     # the higher order follows a curved branch, the lower one a bent one: the better of the two
@@ -90,11 +93,16 @@ def _left_out(area: FloatArray, pressure: FloatArray, reach: int) -> FloatArray:
     return np.asarray(residual / np.sqrt(size))
 
 
-def despike(pressure: FloatArray, noise: float) -> NDArray[np.bool_]:
+def despike(area: FloatArray, pressure: FloatArray, noise: float) -> NDArray[np.bool_]:
     """Mark isolated outliers of (n,) pressure, mN/m: True where a row is a spike.
 
     A spike stands out, to the same side, from the lines through the rows before and after it, each
     extended to it; a knee or a peak lies on at least one of them. Sparse runs are never despiked.
+
+    Parameters
+    ----------
+    area, pressure : (n,) nm^2 and mN/m, in the order of travel.
+    noise : scatter of one row, mN/m.
     """
     n = pressure.size
     spikes = np.zeros(n, dtype=np.bool_)
@@ -103,21 +111,38 @@ def despike(pressure: FloatArray, noise: float) -> NDArray[np.bool_]:
     suspects = _suspects(pressure, noise)
     if suspects.size == 0:
         return spikes
-    # five rows each side, three to seven away, so that a spike of up to three rows is in neither line
-    steps = np.arange(3, 8)
+    along = area if uneven(area) else np.arange(n, dtype=np.float64)
     misses = []
     for side in (-1, 1):
-        index = np.clip(suspects[:, None] + side * steps, 0, n - 1)
-        window = pressure[index]
-        slope = (window @ (steps - 5.0)) / 10.0
-        misses.append(pressure[suspects] - (window.mean(axis=1) - 5.0 * slope))
+        # five rows, three to seven away, so that a spike of up to three rows is in neither line
+        index = np.clip(suspects[:, None] + side * np.arange(3, 8), 0, n - 1)
+        misses.append(_miss(along, pressure, suspects, index))
     left, right = misses
     # within seven rows of an end only the line from inside can be asked
     left = np.where(suspects < 7, right, left)
     right = np.where(suspects >= n - 7, left, right)
-    off = np.minimum(np.abs(left), np.abs(right)) > SPIKE_SIGMAS * EXTRAPOLATED * noise
+    off = np.minimum(np.abs(left), np.abs(right)) > SPIKE_SIGMAS * noise
     spikes[suspects] = off & (left * right > 0)
+    # rows that leave the line and never come back are a bend just before the run stops
+    for rows in (spikes, spikes[::-1]):
+        run = int(np.argmin(rows))
+        if run > 1:
+            rows[:run] = False
     return spikes
+
+
+def _miss(
+    along: FloatArray, pressure: FloatArray, rows: NDArray[np.int64], index: NDArray[np.int64]
+) -> FloatArray:
+    """How far each of (k,) rows lies off the line through its (k, 5) others, in u of that per σ of a row."""
+    x, p = along[index], pressure[index]
+    middle = x.mean(axis=1)
+    spread = x - middle[:, None]
+    size = np.maximum(np.sum(spread**2, axis=1), 1e-300)
+    reach = along[rows] - middle
+    slope = np.sum(spread * p, axis=1) / size
+    u = np.sqrt(1.0 + 1.0 / index.shape[1] + reach**2 / size)
+    return np.asarray((pressure[rows] - p.mean(axis=1) - slope * reach) / u)
 
 
 def _suspects(pressure: FloatArray, noise: float) -> NDArray[np.int64]:

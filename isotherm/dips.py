@@ -1,4 +1,4 @@
-"""Coexistences too rounded, or told by too few points, to show two knees: a dip of the modulus."""
+"""Bends too gradual to show a knee: a dip of the modulus, and a branch that ends soft."""
 
 from __future__ import annotations
 
@@ -7,12 +7,13 @@ from dataclasses import dataclass
 from typing import Final
 
 import numpy as np
+from numpy.lib.stride_tricks import sliding_window_view
 from numpy.typing import NDArray
 
 from isotherm.knee_evidence import Candidate
 from isotherm.modulus import local_regression
 
-__all__ = ["Dip", "find_dip", "with_dips"]
+__all__ = ["Dip", "find_dip", "with_dips", "with_yield"]
 
 FloatArray = NDArray[np.float64]
 
@@ -24,6 +25,13 @@ RISEN: Final = 1.0  # mN/m by which the branch has risen where a coexistence beg
 RISEN_SIGMAS: Final = 5.0
 DOUBT: Final = 0.05  # of a fitted modulus, relative, when looking for a dip in it
 ROUNDED: Final = 0.15  # first guess of a rounding, as a share of the dip's half-width
+
+
+SOFTENED: Final = (
+    0.25  # modulus at the end of a branch that has yielded, a share of its largest at most
+)
+YIELDED: Final = 0.4  # the share at which it counts as yielding
+WINDOW: Final = 9  # nodes by which slopes along the branch are judged
 
 
 @dataclass(frozen=True)
@@ -111,3 +119,42 @@ def with_dips(
     out.append(Candidate(dip.onset, ROUNDED * reach, dip.before, dip.within, np.inf))
     out.append(Candidate(dip.end, ROUNDED * reach, dip.within, dip.after, np.inf))
     return sorted(out, key=lambda c: c.x)
+
+
+def with_yield(
+    candidates: list[Candidate], x: FloatArray, y: FloatArray, sigma: FloatArray
+) -> list[Candidate]:
+    """The candidates, with a knee put in where the branch rolls over to a level end and none falls there.
+
+    A film may give way so gradually that smooth polynomials describe it; it has collapsed all the same.
+    """
+    slope, u = _window_slopes(x, y, sigma)
+    if slope.size < 2:
+        return candidates
+    sure = slope - SIGMAS * u
+    peak = int(np.argmax(sure))
+    stiffest = float(sure[peak])
+    if stiffest <= 0 or slope[-1] + SIGMAS * u[-1] > SOFTENED * stiffest:
+        return candidates
+    middle = 0.5 * (x[: slope.size] + x[WINDOW - 1 :])
+    if any(c.x >= middle[peak] and c.after < YIELDED * c.before for c in candidates):
+        return candidates
+    soft = peak + int(np.argmax(slope[peak:] < YIELDED * stiffest))
+    at = float(middle[soft])
+    reach = float(x[-1]) - at
+    kept = [c for c in candidates if abs(c.x - at) > 0.5 * reach]
+    kept.append(Candidate(at, ROUNDED * reach, stiffest, float(slope[-1]), np.inf))
+    return sorted(kept, key=lambda c: c.x)
+
+
+def _window_slopes(
+    x: FloatArray, y: FloatArray, sigma: FloatArray
+) -> tuple[FloatArray, FloatArray]:
+    """Slope of a weighted line through every `WINDOW` nodes in a row, and its u."""
+    if x.size < WINDOW:
+        return np.empty(0), np.empty(0)
+    px, py, w = (sliding_window_view(v, WINDOW) for v in (x, y, sigma**-2.0))
+    total = w.sum(axis=1)
+    dx = px - (np.sum(w * px, axis=1) / total)[:, None]
+    size = np.maximum(np.sum(w * dx**2, axis=1), 1e-300)
+    return np.sum(w * dx * py, axis=1) / size, size**-0.5

@@ -27,6 +27,7 @@ __all__ = [
 FloatArray = NDArray[np.float64]
 
 CORNER_SHARE: Final = 0.15  # standard uncertainty of a knee's pressure, of the corner cut off
+PEAK_CUT: Final = 1.0  # mN/m that a probe's rounding may cut off a sharp peak, as an u (our choice)
 LIFT_OFF_SIGMAS: Final = 3.0  # a gradual lift-off: pressure above zero by this many σ of one row
 
 
@@ -73,8 +74,24 @@ def collapse(view: BranchView) -> Collapse | None:
     if knee is None:
         return None
     point = knee_point(view, knee)
-    kind = "constant-area" if view.reading.falls else "constant-pressure"
-    return Collapse(kind, point.area, point.pressure)
+    if not view.reading.falls:
+        return Collapse("constant-pressure", point.area, point.pressure)
+    return Collapse("constant-area", point.area, _peak(point.pressure, highest_pressure(view)))
+
+
+def _peak(met: Quantity, seen: Quantity) -> Quantity:
+    """Pressure of a peak: where its extended sides meet, and the highest seen, by their weights.
+
+    A sharp peak is told by few rows, and its sides then extend anywhere; the highest pressure seen bounds it
+    from below. Where the sides are well known they decide.
+    """
+    if not met.u_random or not math.isfinite(met.value + met.u_random):
+        return met
+    weight, other = met.u_random**-2.0, PEAK_CUT**-2.0
+    value = (weight * met.value + other * seen.value) / (weight + other)
+    return Quantity.combine(
+        value, met.unit, u_random=(weight + other) ** -0.5, u_systematic=met.u_systematic
+    )
 
 
 def gradual_lift_off(view: BranchView) -> Quantity | None:

@@ -115,7 +115,7 @@ def _points(trace: Trace, branch: Branch, path: str) -> _Points:
     rows = found[0].rows if branch.direction == "compression" else found[0].rows[::-1]
     area, pressure = steady_area(trace.area[rows]), trace.pressure[rows]
     noise = row_noise(area, pressure)
-    good = ~despike(pressure, noise)
+    good = ~despike(area, pressure, noise)
     nodes = condense(area[good], pressure[good], noise)
     measured = nodes.pressure - branch.zero_offset.value
     stop = branch.highest_pressure.value - _KNEE_ROUNDING

@@ -8,7 +8,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from isotherm.condense import DENSE, Nodes
-from isotherm.dips import with_dips
+from isotherm.dips import with_dips, with_yield
 from isotherm.knee_evidence import Candidate
 from isotherm.knee_fit import INDIFFERENT, WIDEST, choose_degrees, fit_knees
 from isotherm.knee_model import KneeModel
@@ -23,6 +23,12 @@ FloatArray = NDArray[np.float64]
 HIGHEST_DEGREE: Final = 5  # of a stretch; a fluid branch from lift-off to collapse needs about 4
 MODEST_DEGREE: Final = 3  # of the first fit
 CLOSEST: Final = 2e-3  # share of the branch's range of ln A that two knees are apart at least
+# Two knees nearer in ln A that bend the same way are one that is rounded: no phase is so narrow, and a
+# probe's lag or an uneven barrier makes such pairs (our choice, that of the narrowest plateau).
+TWICE: Final = 0.01
+OFF_CURVE: Final = (
+    0.25  # of the pressure range; neighbours that meet further off are no tangents (our choice)
+)
 COARSE: Final = 10  # iterations of a fit that will be refined
 ROUNDS: Final = 2  # of enriching shapes
 NODES_PER_DEGREE: Final = 8  # nodes a stretch must have for each degree
@@ -53,6 +59,16 @@ def find_knees(nodes: Nodes, read: SparseRead | None = None) -> KneeModel:
     if dipped is not candidates:
         dipped = _in_order(dipped, x)
         candidates, model = dipped, _fit(x, y, sigma, dipped)
+    ending = with_yield(candidates, x, y, scatter)
+    if ending is not candidates:
+        candidates = _in_order(ending, x)
+        model = _fit(x, y, sigma, candidates)
+    while (pair := _one_knee_twice(model)) is not None:
+        candidates = [*candidates[:pair], _merged(model, pair), *candidates[pair + 2 :]]
+        model = _fit(x, y, sigma, candidates)
+    while (astray := _astray(model)) is not None:
+        candidates = candidates[:astray] + candidates[astray + 1 :]
+        model = _fit(x, y, sigma, candidates)
     while True:
         weak = _weakest(model)
         if weak is None:
@@ -131,6 +147,39 @@ def _weakest(model: KneeModel) -> int | None:
     return worst if ratios[worst] < STEP_SIGMAS else None
 
 
+def _one_knee_twice(model: KneeModel) -> int | None:
+    """The first of two neighbouring knees that bend the same way within a hundredth of ln A, if any."""
+    for k in range(model.knots.size - 1):
+        near = float(model.knots[k + 1] - model.knots[k]) < TWICE
+        if near and model.slope_step(k)[0] * model.slope_step(k + 1)[0] > 0:
+            return k
+    return None
+
+
+def _astray(model: KneeModel) -> int | None:
+    """The knee furthest off the curve, when it is further than any rounding cuts off a corner."""
+    if not model.knots.size:
+        return None
+    met = np.array([model.knee_pressure(k)[0] for k in range(model.knots.size)])
+    off = np.abs(met - model.pressure(model.knots))
+    ends = model.pressure(np.array([model.start, model.stop]))
+    worst = int(np.argmax(off))
+    return (
+        worst
+        if off[worst] > OFF_CURVE * float(np.ptp([*ends, *model.pressure(model.knots)]))
+        else None
+    )
+
+
+def _merged(model: KneeModel, k: int) -> Candidate:
+    """One knee, rounded over both, in place of knees `k` and `k` + 1."""
+    (first, _), (second, _) = model.slope_step(k), model.slope_step(k + 1)
+    a, b = float(model.knots[k]), float(model.knots[k + 1])
+    share = second / (first + second)
+    width = max(0.5 * (b - a), float(model.widths[k]), float(model.widths[k + 1]))
+    return Candidate(a + share * (b - a), width, np.nan, np.nan, np.inf)
+
+
 def refine_knees(
     model: KneeModel, nodes: Nodes, area: FloatArray, pressure: FloatArray, stop: float
 ) -> KneeModel:
@@ -150,6 +199,12 @@ def refine_knees(
         x, y, sigma = _with_rows(nodes, keep, knots, model.widths, area, pressure)
     k = knots.size
     degrees = model.degrees[: k + 1]
+    if k and model.knots.size >= k:
+        # rows tell more of the last stretch, which may fall from a peak in a curve, than its nodes did
+        inside = int(np.sum(x > knots[-1])) // NODES_PER_DEGREE
+        highest = (*degrees[:k], int(np.clip(inside, degrees[k], HIGHEST_DEGREE)))
+        chosen = choose_degrees(x, y, sigma, knots, model.widths[:k], highest)
+        degrees = (*degrees[:k], max(degrees[k], chosen[k]))
     fitted = fit_knees(x, y, sigma, knots, model.widths[:k], degrees)
     return with_model_doubt(fitted, x, y, sigma)
 

@@ -25,6 +25,7 @@ KINK_RATIO: Final = 1.3  # a kink is a step up by at least this factor
 YIELD_RATIO: Final = (
     0.4  # a film that softens to this share of its stiffest and stays there has collapsed
 )
+STEEPEST_END: Final = 4.0  # of a stretch's end modulus against its mean that is believed
 BASELINE_RISE: Final = (
     0.5  # mN/m; a baseline rises by less, or by less than BASELINE_SHARE of the whole
 )
@@ -105,7 +106,9 @@ def read_stretches(model: KneeModel) -> Reading:
     open_coexistence: int | None = None
     if collapse is not None:
         falls = any(s.modulus < 0 for s in stretches[last + 1 : last + 2])
-        fluid = stretches[last].last < EXPANDED_BELOW and not falls
+        rising = stretches[first : last + 1]
+        fluid = max(stretches[last].last, *(s.modulus for s in rising)) < EXPANDED_BELOW
+        fluid = fluid and not falls
         if fluid and last + 2 == n:
             open_coexistence, collapse = collapse, None
             notes.append(OPEN_NOTE)
@@ -186,9 +189,10 @@ def _last_rising(stretches: tuple[Stretch, ...], first: int) -> int:
     last, stiffest = first, 0.0
     for j in range(first, len(stretches)):
         stiff = stretches[j].modulus
-        stiffest = max(stiffest, stiff)
         if stiff > 0 and stiff >= YIELD_RATIO * stiffest:
             last = j
+        # a fluid branch is far stiffer at its end than on the whole
+        stiffest = max(stiffest, stiff, min(stretches[j].last, STEEPEST_END * stiff))
     return last
 
 

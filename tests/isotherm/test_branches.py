@@ -5,7 +5,7 @@ from dataclasses import replace
 import numpy as np
 import pytest
 
-from isotherm.branches import find_branches, quantum, robust_noise, steady_area
+from isotherm.branches import find_branches, quantum, robust_noise, steady_area, uneven
 from tests.support.isotherm_traces import make_trace
 
 
@@ -151,3 +151,19 @@ def test_steady_area_is_a_running_mean_of_jitter() -> None:
     assert smooth[1] == pytest.approx(area[:3].mean())
     assert np.std(smooth[inner] - line[inner]) < 0.5 * noise
     assert steady_area(line) is line
+
+
+def test_odd_moments_are_told_from_jitter() -> None:
+    random = np.random.default_rng(12)
+    line = np.linspace(2.0, 0.5, 3000)
+    step = 1.5 / 2999
+    odd = np.sort(random.uniform(0.5, 2.0, 3000))[::-1]
+    assert uneven(odd)
+    assert uneven(odd + 0.3 * step * random.standard_normal(3000))
+    assert not uneven(line)
+    assert not uneven(line + step * random.standard_normal(3000))
+    # a barrier that changes its speed is even in between; so is a quantised reading
+    speeds = np.concatenate([np.linspace(2.0, 1.0, 500), np.linspace(1.0, 0.5, 2500)])
+    assert not uneven(speeds + 0.2 * step * random.standard_normal(3000))
+    assert not uneven(np.round(line / (3.0 * step)) * 3.0 * step)
+    assert steady_area(odd) is odd

@@ -46,11 +46,11 @@ def test_few_rows_are_kept_as_they_are() -> None:
 
 @pytest.mark.parametrize("length", [1, 2, 3])
 def test_spikes_are_marked_and_nothing_else(length: int) -> None:
-    _area, pressure = _line(2000)
+    area, pressure = _line(2000)
     random = np.random.default_rng(length)
     noisy = pressure + 0.05 * random.standard_normal(2000)
     noisy[700 : 700 + length] += 4.0
-    marked = np.flatnonzero(despike(noisy, 0.05))
+    marked = np.flatnonzero(despike(area, noisy, 0.05))
     assert list(marked) == list(range(700, 700 + length))
 
 
@@ -58,13 +58,14 @@ def test_a_sharp_collapse_is_not_a_spike() -> None:
     rows = np.arange(2000.0)
     pressure = np.where(rows < 1500, 0.04 * rows, 60.0 - 0.4 * (rows - 1500))
     random = np.random.default_rng(9)
-    assert despike(pressure + 0.05 * random.standard_normal(2000), 0.05).sum() == 0
+    noisy = pressure + 0.05 * random.standard_normal(2000)
+    assert despike(3000.0 - rows, noisy, 0.05).sum() == 0
 
 
 def test_sparse_runs_are_never_despiked() -> None:
     pressure = np.zeros(60)
     pressure[30] = 20.0
-    assert despike(pressure, 0.05).sum() == 0
+    assert despike(np.linspace(1.0, 0.5, 60), pressure, 0.05).sum() == 0
 
 
 def test_nodes_are_means_of_consecutive_rows() -> None:
@@ -131,7 +132,30 @@ def test_few_points_scatter_no_more_than_a_figure_is_read() -> None:
 
 @pytest.mark.parametrize("at", [0, 3, 1994, 1999])
 def test_spikes_near_the_ends_are_marked_too(at: int) -> None:
-    _area, pressure = _line(2000)
+    area, pressure = _line(2000)
     noisy = pressure + 0.05 * np.random.default_rng(at).standard_normal(2000)
     noisy[at] -= 4.0
-    assert np.flatnonzero(despike(noisy, 0.05)).tolist() == [at]
+    assert np.flatnonzero(despike(area, noisy, 0.05)).tolist() == [at]
+
+
+@pytest.mark.parametrize("backwards", [False, True])
+def test_the_last_rows_beyond_a_bend_are_no_spikes(backwards: bool) -> None:
+    """A run that stops five rows after a kink keeps them."""
+    area = np.linspace(1.0, 0.5, 800)
+    pressure = 40.0 * (1.0 - area)
+    pressure[-5:] += 2.0 * np.arange(1, 6)
+    pressure = pressure + 0.02 * np.random.default_rng(2).standard_normal(800)
+    if backwards:
+        area, pressure = area[::-1], pressure[::-1]
+    assert despike(area, pressure, 0.02).sum() == 0
+
+
+def test_rows_taken_at_odd_moments_are_no_spikes() -> None:
+    """A steep line read at random moments; by row number it would look like scatter of 2 mN/m."""
+    random = np.random.default_rng(4)
+    area = np.sort(random.uniform(0.2, 0.3, 600))[::-1]
+    pressure = 600.0 * (0.3 - area) + 0.03 * random.standard_normal(600)
+    assert row_noise(area, pressure) == pytest.approx(0.03, rel=0.15)
+    assert despike(area, pressure, 0.03).sum() == 0
+    pressure[300:302] -= 3.0
+    assert np.flatnonzero(despike(area, pressure, 0.03)).tolist() == [300, 301]
