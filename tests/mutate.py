@@ -46,7 +46,10 @@ SAMPLE: dict[str, tuple[str, ...]] = {
         "tests/isotherm/test_quantity_text.py",
     ),
     "isotherm/trace_order.py": ("tests/isotherm/test_trace_order.py",),
-    "transfer/geometry.py": ("tests/transfer/test_geometry.py", "tests/transfer/test_ratio.py"),
+    "transfer/geometry.py": (
+        "tests/transfer/test_geometry.py",
+        "tests/outside/test_transfer_ratio.py",
+    ),
     "transfer/log_cleaning.py": ("tests/transfer/test_log.py",),
     "transfer/contact.py": ("tests/transfer/test_contact.py", "tests/transfer/test_strokes.py"),
     "transfer/strokes.py": (

@@ -183,3 +183,15 @@ def test_a_contact_without_a_place_counts_from_zero() -> None:
     assert immersion(contact, np.asarray([2.0, -1.0])).tolist() == [-2.0, 1.0]
     moved = replace(contact, reads="depth", at=Quantity(1.5, None, "mm"))
     assert immersion(moved, np.asarray([2.0, 1.0])).tolist() == [0.5, -0.5]
+
+
+@pytest.mark.parametrize(("high", "levels"), [(-3.0, 1.0), (4.0, 2.0)])
+def test_the_encoder_s_step_at_each_level_that_counts(high: float, levels: float) -> None:
+    """Steps of 0.2 mm leave 0.2 / sqrt(12) at each level under water: one if the edge comes out, else two."""
+    log = oscillation(high, 24.0).log()
+    coarse = replace(log, position=0.2 * np.round(log.position / 0.2))
+    stroke = analyse_log(coarse, sheet()).strokes[0]
+    assert stroke.ratio is not None
+    each = 0.42 * 0.2 / np.sqrt(12.0)
+    want = stroke.ratio.value * each * np.sqrt(levels) / stroke.coated_area.value
+    assert stroke.budget["position"] == pytest.approx(want, rel=0.02)

@@ -117,3 +117,39 @@ def test_wider_than_the_trough(wide: str) -> None:
 def test_just_narrower_than_the_trough() -> None:
     sheet = parse_sheet(f'[trough]\nwidth = "20.1 mm"\n[substrate]\n{PLATE}')
     assert substrate_geometry(sheet).shape == "plate"
+
+
+def profiled(*points: tuple[float, float]) -> Geometry:
+    made = tuple(SimpleNamespace(height=h, width=w) for h, w in points)
+    substrate = Substrate(
+        shape="table",
+        thickness=Quantity(1.0, 0.02, "mm"),
+        profile=made,  # type: ignore[arg-type]
+    )
+    return substrate_geometry(RunSheet(substrate=substrate))
+
+
+@pytest.mark.parametrize(
+    "points",
+    [
+        ((0.0, 10.0),),
+        ((0.0, 10.0), (0.0, 12.0)),
+        ((0.0, 10.0), (5.0, 0.0)),
+        ((0.0, -1.0), (5.0, 10.0)),
+    ],
+)
+def test_a_table_that_is_no_shape(points: tuple[tuple[float, float], ...]) -> None:
+    with pytest.raises(UpstrokeError, match="two or more rising heights"):
+        profiled(*points)
+
+
+def test_a_table_in_any_order_that_begins_above_the_edge() -> None:
+    """10 mm wide up to 2 mm, then to 20 mm at 12 mm: the part below the first height goes on unchanged."""
+    table = profiled((12.0, 20.0), (2.0, 10.0))
+    assert table.heights.tolist() == [0.0, 2.0, 12.0]
+    # faces 2 x (20 + 150) mm^2, lower face 10 mm^2, edges 1 mm thick between 12 mm and the slant's length
+    area = float(table.coated(np.array([12.0]))[0])
+    assert 3.5 + 2 * 0.12 < area < 3.5 + 2 * 0.01 * (2.0 + math.hypot(10.0, 5.0)) + 1e-9
+    # one u of the thickness: both edges' length and the width of the lower face
+    edges = area - 3.4 - 0.1
+    assert table.u_coated(-1.0, 12.0) == pytest.approx(0.02 * (edges + 0.1))
