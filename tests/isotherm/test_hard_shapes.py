@@ -5,12 +5,15 @@ from __future__ import annotations
 import numpy as np
 import pytest
 from isotherm_traces import make_trace
+from numpy.typing import NDArray
 
 from isotherm.analysis import analyse
 from isotherm.dips import with_yield
 from isotherm.knee_evidence import Candidate
 from isotherm.result import Branch
 from isotherm.trace import Trace
+
+FloatArray = NDArray[np.float64]
 
 COLLAPSE = (0.2, 50.0)  # nm^2, mN/m
 LIFT_OFF = 0.28  # nm^2
@@ -20,11 +23,10 @@ def _branch(trace: Trace) -> Branch:
     return analyse(trace).branches[0]
 
 
-def _condensed(area: np.ndarray) -> np.ndarray:
+def _condensed(area: FloatArray) -> FloatArray:
     """A gas-like level, then a straight rise in ln A to the collapse."""
-    area = np.asarray(area, dtype=float)
     modulus = COLLAPSE[1] / np.log(LIFT_OFF / COLLAPSE[0])
-    return np.maximum(0.0, modulus * np.log(LIFT_OFF / area))
+    return np.asarray(np.maximum(0.0, modulus * np.log(LIFT_OFF / area)))
 
 
 @pytest.mark.parametrize("rows", [600, 4000])
