@@ -20,7 +20,8 @@ from isotherm.errors import UpstrokeError
 __all__ = ["COMMANDS", "app", "main", "run"]
 
 INTERRUPTED = 130  # what a shell reports for a program ended by Ctrl-C (128 + SIGINT)
-COLLECT_AFTER = 50_000  # objects made, before Python looks for garbage among them (700 if left alone)
+# objects made before Python looks for garbage among them; 700 if left alone
+COLLECT_AFTER = 50_000
 
 
 @dataclass(frozen=True)

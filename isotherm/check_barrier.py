@@ -9,6 +9,7 @@ from numpy.typing import NDArray
 
 from isotherm.branches import robust_noise
 from isotherm.quantity import Quantity
+from isotherm.straight_line import straight_line
 from isotherm.table import Table
 
 __all__ = ["BarrierCheck", "check_barrier"]
@@ -52,9 +53,9 @@ def check_barrier(table: Table) -> BarrierCheck | None:
     if area.size < _FEWEST_ROWS or np.ptp(area) == 0 or np.ptp(columns) == 0:
         return None
     # both barriers of a pair move together: one travel, the mean of what each covers towards the other
-    signs = [np.sign(np.polyfit(area, columns[:, i], 1)[0]) or 1.0 for i in range(columns.shape[1])]
+    signs = [np.sign(straight_line(area, columns[:, i])[0]) or 1.0 for i in range(columns.shape[1])]
     travel = (columns * np.array(signs)).sum(axis=1)
-    slope, level = np.polyfit(travel, area, 1)
+    slope, level = straight_line(travel, area)
     residual = area - slope * travel - level
     order = np.argsort(travel, kind="stable")
     parts = np.array_split(residual[order], min(_PARTS, area.size // 3))

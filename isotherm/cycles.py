@@ -20,6 +20,7 @@ from isotherm.cycles_shift import area_shifts
 from isotherm.errors import UpstrokeError
 from isotherm.hold_blocks import spikes
 from isotherm.quantity import Quantity
+from isotherm.straight_line import straight_line
 from isotherm.trace import Trace
 
 if TYPE_CHECKING:
@@ -128,7 +129,7 @@ def _zero(trace: Trace, first: BranchRows, warnings: list[str]) -> Quantity:
         warnings.append("zero not subtracted: too few rows at the largest areas")
         return none
     x = np.linspace(-0.5, 0.5, pressure.size)
-    slope, level = np.polyfit(x, pressure, 1)
+    slope, level = straight_line(x, pressure)
     parts = np.array([part.mean() for part in np.array_split(pressure - slope * x, 6)])
     # block means hold the noise that is correlated from row to row
     u = max(

@@ -6,6 +6,7 @@ import numpy as np
 
 from isotherm.cycles_result import AreaShift, BranchCurve, BranchWork
 from isotherm.quantity import Quantity
+from isotherm.straight_line import straight_line
 
 __all__ = ["area_at", "area_shifts"]
 
@@ -35,7 +36,7 @@ def area_at(curve: BranchCurve, pressure: float) -> Quantity | None:
     part = slice(max(crossing - _REACH, 0), crossing + _REACH)
     area, level = curve.area[part], curve.pressure[part]
     centre = float(area.mean())
-    slope, middle = np.polyfit(area - centre, level, 1)
+    slope, middle = straight_line(area - centre, level)
     if slope >= 0:
         return None
     shift = (pressure - middle) / slope
@@ -87,7 +88,7 @@ def area_shifts(
             continue
         near = int(np.argmin(np.abs(work.curve.area - found.value)))
         part = slice(max(near - _REACH, 0), near + _REACH + 1)
-        slope = np.polyfit(work.curve.area[part], work.curve.pressure[part], 1)[0]
+        slope = straight_line(work.curve.area[part], work.curve.pressure[part])[0]
         by_pressure = pressure_u / abs(float(slope)) if slope else 0.0
         scale = (relative_u or 0.0) * found.value
         area = Quantity.combine(

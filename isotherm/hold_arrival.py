@@ -7,6 +7,7 @@ from numpy.typing import NDArray
 
 from isotherm.branches import robust_noise
 from isotherm.hold_condense import Condensed
+from isotherm.straight_line import straight_line
 
 __all__ = ["barrier_arrival", "pressure_arrival"]
 
@@ -60,7 +61,7 @@ def barrier_arrival(
     stop, limit = int(data.edges[far + 1]), int(data.edges[first + 1])
     if stop - begin < 3:
         return min(stop, limit)
-    slope, level = np.polyfit(time[begin:stop] - time[stop - 1], area[begin:stop], 1)
+    slope, level = straight_line(time[begin:stop] - time[stop - 1], area[begin:stop])
     if slope == 0.0:
         return min(stop, limit)
     meets = time[stop - 1] + (target - level) / slope

@@ -83,8 +83,9 @@ def find_onset(area: FloatArray, potential: FloatArray, noise: float) -> Onset |
     rest = min(float(fine.fun), float(rests[best]))
     freedom = n - 4
     # the rival: one cubic without any beginning, as many parameters
-    smooth = np.polynomial.legendre.Legendre.fit(a, v, 3)
-    rival = float(np.sum((v - smooth(a)) ** 2))
+    powers = np.polynomial.legendre.legvander((a - a.mean()) / max(float(np.ptp(a)), 1e-300), 3)
+    smooth = powers @ np.linalg.lstsq(powers, v, rcond=None)[0]
+    rival = float(np.sum((v - smooth) ** 2))
     flat = float(np.sum((v - v.mean()) ** 2))
     if rest <= 0:
         rest = max(rest, (1e-9 * max(abs(furthest), 1e-9)) ** 2 * n)

@@ -12,6 +12,7 @@ from numpy.typing import NDArray
 from isotherm.errors import UpstrokeError
 from isotherm.quantity import Quantity
 from isotherm.series import COVERAGE, student_factor
+from isotherm.straight_line import straight_line
 
 __all__ = ["Crossing", "StraightLine", "fit_straight_line"]
 
@@ -146,7 +147,7 @@ def fit_straight_line(
     known = bool(np.all(np.isfinite(u_y) & (u_y > 0)))
     wy = 1.0 / u_y**2 if known else np.ones(len(y))
     var_x = np.zeros(len(x)) if u_x is None or not known else np.asarray(u_x) ** 2
-    slope = float(np.polyfit(x - x.mean(), y, 1)[0])
+    slope = straight_line(x, y)[0]
     for _ in range(_ITERATIONS):  # converges in a few steps; not over rows
         w = wy / (1.0 + slope * slope * wy * var_x)
         mean_x, mean_y = float(w @ x / w.sum()), float(w @ y / w.sum())
