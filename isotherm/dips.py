@@ -31,6 +31,7 @@ SOFTENED: Final = (
     0.25  # modulus at the end of a branch that has yielded, a share of its largest at most
 )
 YIELDED: Final = 0.4  # the share at which it counts as yielding
+NEAR_YIELD: Final = 0.3  # share of the softened end within which another knee is the same
 WINDOW: Final = 9  # nodes by which slopes along the branch are judged
 
 
@@ -124,9 +125,10 @@ def with_dips(
 def with_yield(
     candidates: list[Candidate], x: FloatArray, y: FloatArray, sigma: FloatArray
 ) -> list[Candidate]:
-    """The candidates, with a knee put in where the branch rolls over to a level end and none falls there.
+    """The candidates, with a knee put in where the branch rolls over to a level end.
 
-    A film may give way so gradually that smooth polynomials describe it; it has collapsed all the same.
+    To be asked where none of them gives way: a film may do so so gradually that smooth polynomials
+    describe it, and has collapsed all the same.
     """
     slope, u = _window_slopes(x, y, sigma)
     if slope.size < 2:
@@ -137,12 +139,10 @@ def with_yield(
     if stiffest <= 0 or slope[-1] + SIGMAS * u[-1] > SOFTENED * stiffest:
         return candidates
     middle = 0.5 * (x[: slope.size] + x[WINDOW - 1 :])
-    if any(c.x >= middle[peak] and c.after < YIELDED * c.before for c in candidates):
-        return candidates
     soft = peak + int(np.argmax(slope[peak:] < YIELDED * stiffest))
     at = float(middle[soft])
     reach = float(x[-1]) - at
-    kept = [c for c in candidates if abs(c.x - at) > 0.5 * reach]
+    kept = [c for c in candidates if abs(c.x - at) > NEAR_YIELD * reach]
     kept.append(Candidate(at, ROUNDED * reach, stiffest, float(slope[-1]), np.inf))
     return sorted(kept, key=lambda c: c.x)
 

@@ -106,9 +106,9 @@ def judge_knee(x: FloatArray, y: FloatArray, sigma: FloatArray) -> Verdict | Non
     if coarse is None:
         return None
     gap = float((positions[1:] - positions[:-1]).max()) if positions.size > 1 else 0.1
-    fine = fitter.best(
-        coarse.at + gap * _SHIFTS, coarse.width * (_FACTORS if n >= 16 else _FACTORS[1:2])
-    )
+    # never beyond the window's own positions: what lies outside is another window's knee
+    shifted = np.clip(coarse.at + gap * _SHIFTS, float(positions[0]), float(positions[-1]))
+    fine = fitter.best(shifted, coarse.width * (_FACTORS if n >= 16 else _FACTORS[1:2]))
     best = fine if fine is not None and fine.bic < coarse.bic else coarse
     return Verdict(
         centre + half * best.at, half * best.width, smooth[0] - best.bic, best, smooth[1]

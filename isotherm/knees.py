@@ -14,6 +14,7 @@ from isotherm.knee_fit import INDIFFERENT, WIDEST, choose_degrees, fit_knees
 from isotherm.knee_model import KneeModel
 from isotherm.knee_search import search
 from isotherm.knee_uncertainty import with_model_doubt
+from isotherm.phases import read_stretches
 from isotherm.sparse_fit import SparseRead, read_sparse, refine_sparse, sparse_model
 
 __all__ = ["find_knees", "refine_knees"]
@@ -59,10 +60,12 @@ def find_knees(nodes: Nodes, read: SparseRead | None = None) -> KneeModel:
     if dipped is not candidates:
         dipped = _in_order(dipped, x)
         candidates, model = dipped, _fit(x, y, sigma, dipped)
-    ending = with_yield(candidates, x, y, scatter)
-    if ending is not candidates:
-        candidates = _in_order(ending, x)
-        model = _fit(x, y, sigma, candidates)
+    if not _gives_way(model):
+        ending = _in_order(with_yield(candidates, x, y, scatter), x)
+        if ending != candidates:
+            yielded = _fit(x, y, sigma, ending)
+            if _gives_way(yielded):
+                candidates, model = ending, yielded
     while (pair := _one_knee_twice(model)) is not None:
         candidates = [*candidates[:pair], _merged(model, pair), *candidates[pair + 2 :]]
         model = _fit(x, y, sigma, candidates)
@@ -145,6 +148,12 @@ def _weakest(model: KneeModel) -> int | None:
     ]
     worst = int(np.argmin(ratios))
     return worst if ratios[worst] < STEP_SIGMAS else None
+
+
+def _gives_way(model: KneeModel) -> bool:
+    """Whether the branch ends collapsed, or inside a coexistence."""
+    reading = read_stretches(model)
+    return reading.collapse is not None or any(end is None for _, end in reading.coexistences)
 
 
 def _one_knee_twice(model: KneeModel) -> int | None:

@@ -72,8 +72,12 @@ def test_a_branch_that_ends_stiff_is_not_given_a_collapse() -> None:
     (knee,) = with_yield([], x, rolled, sigma)
     assert knee.before > 20.0
     assert 0.5 < knee.x < 0.9
-    there = [Candidate(0.6, 0.01, 30.0, 5.0, 50.0)]
-    assert with_yield(there, x, rolled, sigma) is there
+    # a knee well before stays, one beside it is the same
+    early, beside = (
+        Candidate(0.2, 0.01, 30.0, 35.0, 50.0),
+        Candidate(knee.x, 0.01, 30.0, 20.0, 50.0),
+    )
+    assert with_yield([early, beside], x, rolled, sigma) == [early, knee]
 
 
 def test_rows_at_random_moments_are_read_like_even_ones() -> None:
