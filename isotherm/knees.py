@@ -30,6 +30,7 @@ TWICE: Final = 0.01
 OFF_CURVE: Final = (
     0.25  # of the pressure range; neighbours that meet further off are no tangents (our choice)
 )
+NARROW: Final = 0.04  # largest rounding, as WIDEST, where a wide one led astray
 COARSE: Final = 10  # iterations of a fit that will be refined
 ROUNDS: Final = 2  # of enriching shapes
 NODES_PER_DEGREE: Final = 8  # nodes a stretch must have for each degree
@@ -70,8 +71,12 @@ def find_knees(nodes: Nodes, read: SparseRead | None = None) -> KneeModel:
         candidates = [*candidates[:pair], _merged(model, pair), *candidates[pair + 2 :]]
         model = _fit(x, y, sigma, candidates)
     while (astray := _astray(model)) is not None:
-        candidates = candidates[:astray] + candidates[astray + 1 :]
-        model = _fit(x, y, sigma, candidates)
+        fewer = candidates[:astray] + candidates[astray + 1 :]
+        ways = [(fewer, _fit(x, y, sigma, fewer))]
+        narrow = _fit(x, y, sigma, candidates, widest=NARROW)
+        if _astray(narrow) is None:
+            ways.append((candidates, narrow))
+        candidates, model = min(ways, key=lambda way: _bic(way[1], y, sigma))
     while True:
         weak = _weakest(model)
         if weak is None:
@@ -99,13 +104,14 @@ def _fit(
     y: FloatArray,
     sigma: FloatArray,
     candidates: list[Candidate],
+    *,
+    widest: float = WIDEST,
 ) -> KneeModel:
     knots = np.array([c.x for c in candidates])
     widths = np.array([c.width for c in candidates])
     edges = np.concatenate([[x[0] - 1.0], knots, [x[-1] + 1.0]])
     inside = np.diff(np.searchsorted(x, edges))
     highest = tuple(int(np.clip(c // NODES_PER_DEGREE, 1, HIGHEST_DEGREE)) for c in inside)
-    widest = WIDEST
     # modest shapes first: a rich polynomial would explain a rounding that the knee has yet to fit
     modest = tuple(min(h, MODEST_DEGREE) for h in highest)
     degrees = choose_degrees(x, y, sigma, knots, widths, modest)
