@@ -24,6 +24,10 @@ FloatArray = NDArray[np.float64]
 
 _NEEDS = ("time", "area|molecular_area|barrier_position", "pressure|tension")
 _FEWEST_ROWS = 60  # a dozen blocks of a few rows: fewer cannot tell the laws apart
+# mN/m. Surface pressure cannot exceed the tension of the liquid the film lies on, and that of mercury, the
+# largest near room temperature, is about 486 mN/m (handbook value, from memory).
+_HIGHEST_PRESSURE = 600.0
+_AGE = 100.0  # times what eight in ten rows span: no hold has readings so far off
 
 
 @dataclass(frozen=True)
@@ -142,7 +146,12 @@ def hold_record(table: Table, sheet: RunSheet) -> HoldRecord:
     kept = np.isfinite(time) & np.isfinite(area) & np.isfinite(pressure)
     if not kept.all():
         warnings.append(f"{int((~kept).sum())} rows with a missing cell left out")
-        time, area, pressure = time[kept], area[kept], pressure[kept]
+    beyond = kept & (np.abs(pressure) > _HIGHEST_PRESSURE)
+    if beyond.any():
+        warnings.append(f"{int(beyond.sum())} rows of a pressure no film has left out")
+        kept &= ~beyond
+    _check_areas(area, kept, table)
+    time, area, pressure = time[kept], area[kept], pressure[kept]
     sorting = time_order(time)
     if sorting.warning:
         warnings.append(sorting.warning)
@@ -153,6 +162,12 @@ def hold_record(table: Table, sheet: RunSheet) -> HoldRecord:
     if not fresh.all():
         warnings.append(f"{int((~fresh).sum())} rows whose time repeats the row before left out")
         time, area, pressure = time[fresh], area[fresh], pressure[fresh]
+    near = _one_age(time)
+    if not near.all():
+        apart = int((~near).sum())
+        rows = "1 row" if apart == 1 else f"{apart} rows"
+        warnings.append(f"{rows} whose time stands apart from all others left out")
+        time, area, pressure = time[near], area[near], pressure[near]
     if time.size < _FEWEST_ROWS:
         raise UpstrokeError(
             f"{time.size} rows are too few to judge a hold",
@@ -169,6 +184,27 @@ def hold_record(table: Table, sheet: RunSheet) -> HoldRecord:
     return HoldRecord(
         table.source, time, area, unit, pressure, stretches, sheet.title, tuple(warnings)
     )
+
+
+def _check_areas(area: FloatArray, kept: NDArray[np.bool_], table: Table) -> None:
+    """Refuse areas that are none."""
+    bad = np.flatnonzero(kept & (area <= 0))
+    if bad.size:
+        rows = "1 row" if bad.size == 1 else f"{bad.size} rows"
+        raise UpstrokeError(
+            f"{rows} with an area not above zero",
+            where=f"{table.source.path}, line {int(table.lines[bad[0]])}",
+            remedy="check the zero of the barriers and which column is the area",
+        )
+
+
+def _one_age(time: FloatArray) -> NDArray[np.bool_]:
+    """Rows but those whose time is an age before or after nearly all others, as a reset clock writes it.
+
+    time : (n,) s.
+    """
+    low, middle, high = np.percentile(time, [10.0, 50.0, 90.0]) if time.size else (0.0, 0.0, 0.0)
+    return np.asarray(np.abs(time - middle) <= _AGE * (high - low))
 
 
 def read_hold(path: str | Path, sheet: RunSheet | None = None) -> HoldRecord:

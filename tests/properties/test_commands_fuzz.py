@@ -70,6 +70,28 @@ def test_one_row_an_age_before_the_others(tmp_path: Path) -> None:
     outcome(with_column("transfer", 0, time), tmp_path)
 
 
+@pytest.mark.parametrize("row", [0, 60, 149])
+def test_a_hold_with_one_row_of_another_age(row: int, tmp_path: Path) -> None:
+    from isotherm.hold_read import read_hold
+
+    time = np.array(SOUND["hold"].columns["t (s)"])
+    time[row] = -1e12 if row else 1e15
+    assert outcome(with_column("hold", 0, time), tmp_path) == "done"
+    record = read_hold(tmp_path / "run.csv")
+    assert record.time.size == 149
+    assert any("1 row whose time stands apart" in warning for warning in record.warnings)
+
+
+def test_a_hold_at_pressures_no_film_has(tmp_path: Path) -> None:
+    pressure = np.random.default_rng(1).normal(0.0, 3000.0, 150)
+    assert outcome(with_column("hold", 2, pressure), tmp_path) == "refused"
+
+
+def test_a_hold_of_negative_area(tmp_path: Path) -> None:
+    area = np.array(SOUND["hold"].columns["A (cm^2)"]) - 110.0
+    assert outcome(with_column("hold", 1, area), tmp_path) == "refused"
+
+
 @pytest.mark.parametrize("still", [slice(0, 200), slice(100, 300), slice(0, 400)])
 def test_waves_while_the_clock_stands_still(still: slice, tmp_path: Path) -> None:
     time = np.array(SOUND["oscillation"].columns["Time (s)"])
