@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from typing import Final
 
 import numpy as np
@@ -196,10 +197,11 @@ class _Pruning:
             if one is None:
                 continue
             p, q = stops[k + 1], stops[k + 2]
-            apart = self._apart(a, p, q, b)
             if self._rounding(stops, k):
-                apart = np.inf
-            elif not self._adequate(one.hinge.rss, a, b):
+                apart = math.inf
+            elif self._adequate(one.hinge.rss, a, b):
+                apart = self._apart(a, p, q, b)
+            else:
                 continue
             m = b - a
             floor = self._floor(a, b)

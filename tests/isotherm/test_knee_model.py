@@ -11,7 +11,7 @@ import pytest
 from numpy.typing import NDArray
 
 from isotherm.knee_evidence import INDIFFERENT, judge_knee, rounding_floor, with_slopes
-from isotherm.knee_fit import choose_degrees, fit_knees
+from isotherm.knee_fit import _median, choose_degrees, fit_knees
 from isotherm.knee_model import (
     KneeModel,
     coordinates,
@@ -248,3 +248,9 @@ def test_the_cheapest_partition_is_that_of_trying_all(seed: int) -> None:
             if total < best:
                 best, chosen = total, inner
     assert best_subset(costs, edges, penalty, shortest) == [int(edges[i]) for i in chosen]
+
+
+@pytest.mark.parametrize("size", [1, 2, 3, 8, 101])
+def test_the_quick_median_is_the_median(size: int) -> None:
+    values = np.random.default_rng(size).normal(size=size)
+    assert _median(values) == np.median(values)
