@@ -81,8 +81,13 @@ def analyse_mixture(
     warnings.append(
         f"below {areas.lowest:.2f} mN/m the excess area is taken constant for the Gibbs energy"
     )
+    # a run may reach a pressure and yet have no area there, as where its readings jump over it
+    known = np.isfinite(areas.area).all(axis=0) & np.isfinite(areas.var_area).all(axis=0)
+    if not known.all():
+        lost = ", ".join(f"{p:g}" for p in areas.pressure[~known])
+        warnings.append(f"{lost} mN/m left out: not every run has an area there")
     at = tuple(
-        _at(names, compositions, areas, column, kelvin) for column in range(len(areas.pressure))
+        _at(names, compositions, areas, int(column), kelvin) for column in np.flatnonzero(known)
     )
     rules = tuple(
         rule

@@ -21,6 +21,9 @@ FloatOrArray = TypeVar("FloatOrArray", float, NDArray[np.float64])
 
 _LONGEST: Final = 60  # characters; no unit of the bench is longer, and hostile headers stop here
 _LARGEST_EXPONENT: Final = 30
+_LARGEST_SIZE: Final = (
+    120  # decimal places of a unit against the SI's; powers of powers have no end
+)
 _TOKEN: Final = re.compile(
     r"(?P<number>\d+(?:\.\d+)?(?:[eE][-+]?\d+)?)|(?P<symbol>[^\W\d_]+|[%‰])|(?P<power>\^)|"
     r"(?P<sign>[-+])|(?P<divide>/)|(?P<multiply>[·.])|(?P<open>\()|(?P<close>\))"
@@ -105,9 +108,16 @@ def _readings(word: str) -> tuple[Symbol, ...]:
 
 def _times(a: Unit, b: Unit, power: int) -> Unit:
     dims = tuple(x + power * y for x, y in zip(a.dims, b.dims, strict=True))
+    try:
+        mantissa = a.mantissa * b.mantissa**power
+    except OverflowError:
+        raise _Bad from None
+    exponent = a.exponent + power * b.exponent
+    if not 10.0**-_LARGEST_SIZE < mantissa < 10.0**_LARGEST_SIZE or abs(exponent) > _LARGEST_SIZE:
+        raise _Bad
     return Unit(
-        a.mantissa * b.mantissa**power,
-        a.exponent + power * b.exponent,
+        mantissa,
+        exponent,
         dims,  # type: ignore[arg-type]
         a.per_molecule or b.per_molecule,
         False,

@@ -46,6 +46,7 @@ from watched_code import watch  # noqa: E402
 from cli.main import run as run_command  # noqa: E402
 from isotherm.errors import UpstrokeError  # noqa: E402
 
+WIDTH = 80
 SLOW = 5.0  # s of processor time for one small input
 
 
@@ -98,6 +99,10 @@ class Bench:
         if status == 0 or (run.command == "audit" and status == 3):
             if not more:
                 json.loads(out.getvalue(), parse_constant=_no_constant)
+            elif wide := [line for line in out.getvalue().splitlines() if len(line) > WIDTH]:
+                wide = [line for line in wide if str(self.folder) not in line]
+                if wide:
+                    raise AssertionError(f"wider than {WIDTH} columns: {wide[0]}")
             return "done"
         if status == 2:
             return "usage"

@@ -11,6 +11,7 @@ import pytest
 from isotherm.check import check_records, load_check, read_check
 from isotherm.check_barrier import check_barrier
 from isotherm.check_plate import two_point_calibration, wilhelmy_tension
+from isotherm.check_record import bare_record
 from isotherm.check_result import CheckItem, CheckResult, verdict_of
 from isotherm.errors import UpstrokeError
 from isotherm.quantity import Quantity
@@ -231,3 +232,41 @@ def test_reading_files(tmp_path: Path) -> None:
     lines = "\n".join("\t".join(f"{x:.3f}" for x in row) for row in rows)
     path.write_text("Time (s)\tTrough area (cm2)\tSurface pressure (mN/m)\n" + lines + "\n")
     assert read_check([path]).verdict == "pass"
+
+
+def test_a_record_finds_its_area_where_the_export_has_it() -> None:
+    position = np.linspace(0.0, 120.0, 400)  # mm, in from the open end
+    pressure = np.random.default_rng(2).normal(0.1, 0.02, 400)
+    time = np.arange(400.0)
+    barrier = table(time=time, barrier_position=position, pressure=pressure)
+    unknown = bare_record(barrier, RunSheet())
+    assert unknown.area is None
+    assert any("without [trough] width" in text for text in unknown.warnings)
+    trough = Trough(width=Quantity(75.0, None, "mm"), largest_area=Quantity(240.0, None, "cm^2"))
+    known = bare_record(barrier, RunSheet(trough=trough))
+    assert known.area is not None
+    assert known.area_unit == "cm^2"
+    # pressure does not say which way the barriers count, so position x width is the area: 7.5 cm x 12 cm
+    assert np.ptp(known.area) == pytest.approx(90.0, abs=2.0)
+    each = bare_record(
+        table(time=time, molecular_area=position + 1.0, pressure=pressure), RunSheet()
+    )
+    assert each.area_unit == "nm^2"
+
+
+def test_rows_of_a_bare_record_are_put_in_order_and_glitches_left_out() -> None:
+    time = np.arange(400.0)
+    pressure = np.random.default_rng(3).normal(0.1, 0.02, 400)
+    area = np.linspace(240.0, 60.0, 400)
+    usual = bare_record(table(time=time, area=area, pressure=pressure), RunSheet())
+    turned = np.r_[200:400, 0:200]
+    mixed = table(time=time[turned], area=area[turned], pressure=pressure[turned])
+    again = bare_record(mixed, RunSheet())
+    np.testing.assert_array_equal(again.pressure, usual.pressure)
+    np.testing.assert_array_equal(again.area, usual.area)
+    assert any("order" in text for text in again.warnings)
+    wild = pressure.copy()
+    wild[100] = 40.0
+    cleaned = bare_record(table(time=time, area=area, pressure=wild), RunSheet())
+    assert cleaned.pressure.max() < 1.0
+    assert "1 rows far off their neighbours left out" in cleaned.warnings

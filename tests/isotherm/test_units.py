@@ -184,3 +184,22 @@ def test_any_pile_of_symbols_is_a_unit_or_none(text: str) -> None:
         except UpstrokeError:
             continue
         assert factor >= 0
+
+
+@pytest.mark.parametrize(
+    "text",
+    [
+        "(min^30)^30",
+        "(min^30)^5 (min^30)^5/(s^30)^10 s",
+        "(km^30)^30/(m^30)^30 m",
+        "(nm^30)^30/(m^30)^30 mm",
+        "45.3^30 (45.3^30)^30 s",
+        "(0.001^30)^30 s",
+        "s/(0.001^30)^30",
+    ],
+)
+def test_powers_of_powers_beyond_any_number_are_no_units(text: str) -> None:
+    assert parse_unit(text) == ()
+    for dimension in ("mm", "s"):
+        with pytest.raises(UpstrokeError, match="unknown unit"):
+            conversion(text, dimension)

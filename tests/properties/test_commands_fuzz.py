@@ -17,8 +17,8 @@ from fuzz_commands import Bench
 SOUND = {run.command: run for run in seed_runs()}
 
 
-def outcome(run: Run, folder: Path) -> str:
-    found = Bench(folder).attempt(run)
+def outcome(run: Run, folder: Path, more: tuple[str, ...] = ()) -> str:
+    found = Bench(folder).attempt(run, more=more)
     assert found in ("done", "refused", "usage"), found
     return found
 
@@ -41,10 +41,22 @@ def test_the_sound_run_is_done(command: str, tmp_path: Path) -> None:
 
 @pytest.mark.parametrize("seed", range(3))
 @pytest.mark.parametrize("command", sorted(SOUND))
-def test_damaged_runs(command: str, seed: int, tmp_path: Path) -> None:
+def test_damaged_runs(
+    command: str, seed: int, tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
     rng = random.Random(f"{command} {seed}")
-    for _ in range(4):
-        outcome(damaged(SOUND[command], rng), tmp_path)
+    monkeypatch.chdir(tmp_path)
+    for more in ((), (), ("--force",), ("--csv", "out.csv", "--report", "out.html", "--force")):
+        run = damaged(SOUND[command], rng)
+        outcome(run, tmp_path, () if command == "evidence" else more)
+
+
+@pytest.mark.parametrize("command", sorted(set(SOUND) - {"evidence"}))
+def test_the_printed_table_fits_80_columns(command: str, tmp_path: Path) -> None:
+    """Bench refuses longer lines, but for those that hold a path; with damage of every kind."""
+    rng = random.Random(f"table of {command}")
+    for _ in range(6):
+        outcome(damaged(SOUND[command], rng), tmp_path, ("--force",))
 
 
 @pytest.mark.parametrize("command", sorted(SOUND))
@@ -97,6 +109,14 @@ def test_waves_while_the_clock_stands_still(still: slice, tmp_path: Path) -> Non
     time = np.array(SOUND["oscillation"].columns["Time (s)"])
     time[still] = time[still][0]
     outcome(with_column("oscillation", 0, time), tmp_path)
+
+
+def test_a_mixture_that_jumps_over_a_pressure(tmp_path: Path) -> None:
+    """A run that reaches 5 mN/m in a gap of its readings has no area there; the other pressures stand."""
+    rng = random.Random("table of mixture")
+    for _ in range(5):
+        run = damaged(SOUND["mixture"], rng)
+    assert outcome(run, tmp_path) == "done"
 
 
 def test_a_film_that_is_gone_at_once(tmp_path: Path) -> None:
