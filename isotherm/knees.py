@@ -31,6 +31,7 @@ OFF_CURVE: Final = (
     0.25  # of the pressure range; neighbours that meet further off are no tangents (our choice)
 )
 NARROW: Final = 0.04  # largest rounding, as WIDEST, where a wide one led astray
+FEWEST_BEYOND: Final = 6  # rows beyond a knee
 COARSE: Final = 10  # iterations of a fit that will be refined
 ROUNDS: Final = 2  # of enriching shapes
 NODES_PER_DEGREE: Final = 8  # nodes a stretch must have for each degree
@@ -207,8 +208,10 @@ def refine_knees(
     if nodes.x.size < DENSE:
         return refine_sparse(model, nodes, stop)
     keep = nodes.x <= stop
-    last = nodes.x[keep][-min(3, int(keep.sum()))]
-    knots = model.knots[model.knots < last]
+    # rows stand in for nodes near a knee: so many must follow it, for a knee at the very end to be told
+    beyond = np.cumsum((nodes.count * keep)[::-1])[::-1]
+    follow = beyond[np.minimum(np.searchsorted(nodes.x, model.knots), nodes.x.size - 1)]
+    knots = model.knots[(model.knots < nodes.x[keep][-1]) & (follow >= FEWEST_BEYOND)]
     x, y, sigma = nodes.x[keep], nodes.pressure[keep], nodes.sigma[keep]
     if not np.all(nodes.count == 1):
         x, y, sigma = _with_rows(nodes, keep, knots, model.widths, area, pressure)

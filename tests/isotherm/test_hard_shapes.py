@@ -125,3 +125,16 @@ def test_an_open_coexistence_is_called_on_fluid_films_only() -> None:
     branch = _branch(make_trace(area, pressure, noise=0.03))
     assert branch.collapse is not None
     assert branch.transitions == ()
+
+
+@pytest.mark.parametrize("rows", [8, 20])
+def test_a_collapse_a_few_rows_before_the_run_stops_is_called(rows: int) -> None:
+    """The barrier is stopped as soon as the pressure no longer rises."""
+    step = (0.4 - COLLAPSE[0]) / 1500
+    area = np.concatenate(
+        [np.linspace(0.4, COLLAPSE[0], 1501), COLLAPSE[0] - step * np.arange(1, rows + 1)]
+    )
+    branch = _branch(make_trace(area, np.minimum(_condensed(area), COLLAPSE[1]), noise=0.03))
+    assert branch.collapse is not None
+    assert branch.collapse.pressure.value == pytest.approx(COLLAPSE[1], abs=0.3)
+    assert branch.collapse.area.value == pytest.approx(COLLAPSE[0], rel=0.002)
