@@ -237,6 +237,10 @@ def _potential(trace: Trace, order: NDArray[np.int64], nodes: Nodes) -> FloatArr
     if trace.potential is None:
         return None
     values = trace.potential[order]
-    totals = np.concatenate([[0.0], np.cumsum(values)])
+    known = np.isfinite(values)  # a row without it still has area and pressure
+    totals = np.concatenate([[0.0], np.cumsum(np.where(known, values, 0.0))])
+    counts = np.concatenate([[0], np.cumsum(known)])
     stops = nodes.first + nodes.count.astype(np.int64)
-    return np.asarray((totals[stops] - totals[nodes.first]) / nodes.count)
+    count = counts[stops] - counts[nodes.first]
+    total = totals[stops] - totals[nodes.first]
+    return np.where(count > 0, total / np.maximum(count, 1), np.nan)

@@ -109,3 +109,20 @@ def test_json_rows_and_figure_agree() -> None:
     figure.draw_without_rendering()
     drawn = figure.axes[2].get_lines()[0]
     np.testing.assert_allclose(np.asarray(drawn.get_ydata()), result.moment)
+
+
+@pytest.mark.parametrize("cell", [np.nan, np.inf])
+def test_a_cell_without_potential_costs_its_own_row_only(cell: float) -> None:
+    rng = np.random.default_rng(4)
+    trace = with_potential(volmer_trace(rng), rng, onset=1.2, noise=3.0)
+    assert trace.potential is not None
+    usual = analyse_potential(analyse(trace))
+    values = trace.potential.copy()
+    values[[100, 101, 400]] = cell
+    holed = analyse_potential(analyse(replace(trace, potential=values)))
+    assert usual.onset is not None
+    assert holed.onset is not None
+    assert usual.onset.area.u is not None
+    assert abs(holed.onset.area.value - usual.onset.area.value) < 0.2 * usual.onset.area.u
+    assert np.isfinite(holed.moment).all()
+    assert len(holed.moment) == pytest.approx(len(usual.moment), abs=3)
