@@ -22,6 +22,9 @@ FloatArray = NDArray[np.float64]
 
 # A straight line through each of two branches, a knee between them and a spread to judge it by.
 FEWEST_ROWS: Final = 8
+_LEAST_AREA: Final = (
+    1e-6  # nm^2; an atom covers some 0.01: less is none, and its logarithm means nothing
+)
 _NEEDS: Final = ("molecular_area|area|barrier_position", "pressure|tension")
 
 
@@ -120,10 +123,10 @@ def _check_range(
     """Refuse what cannot be an isotherm: areas not above zero, constant area or pressure."""
     where = table.source.path
     lowest = float(area.min())
-    if lowest <= 0:
+    if lowest <= _LEAST_AREA:
         row = int(np.argmin(area))
         line = int(table.lines[row if order is None else order[row]])
-        count = int(np.count_nonzero(area <= 0))
+        count = int(np.count_nonzero(area <= _LEAST_AREA))
         rows = "1 row" if count == 1 else f"{count} rows"
         raise UpstrokeError(
             f"{rows} with an area not above zero",

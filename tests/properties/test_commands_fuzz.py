@@ -111,6 +111,16 @@ def test_waves_while_the_clock_stands_still(still: slice, tmp_path: Path) -> Non
     outcome(with_column("oscillation", 0, time), tmp_path)
 
 
+@pytest.mark.parametrize("command", ["isotherm", "replicates"])
+def test_areas_next_to_nothing_are_none(command: str, tmp_path: Path) -> None:
+    column = list(SOUND[command].columns).index(
+        next(name for name in SOUND[command].columns if name.startswith("Area"))
+    )
+    area = np.array(list(SOUND[command].columns.values())[column])
+    area[100:103] = 1e-300
+    assert outcome(with_column(command, column, area), tmp_path) == "refused"
+
+
 def test_a_mixture_that_jumps_over_a_pressure(tmp_path: Path) -> None:
     """A run that reaches 5 mN/m in a gap of its readings has no area there; the other pressures stand."""
     rng = random.Random("table of mixture")
