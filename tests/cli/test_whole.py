@@ -8,7 +8,9 @@ import shutil
 import signal
 import subprocess
 import sys
+from collections.abc import Callable
 from pathlib import Path
+from typing import Any
 
 import pytest
 
@@ -113,6 +115,79 @@ def test_no_hard_links_is_no_obstacle(tmp_path: Path, monkeypatch: pytest.Monkey
     monkeypatch.undo()
     assert names(tmp_path) == {"a.json", "b.csv"}
     assert (tmp_path / "a.json").read_text() == "new"
+
+
+def failing(number: int) -> Callable[..., None]:
+    """A call to the system that fails."""
+
+    def call(*args: object, **kwargs: object) -> None:
+        raise OSError(number, os.strerror(number))
+
+    return call
+
+
+@pytest.mark.parametrize("call", ["link", "replace"])
+@pytest.mark.parametrize("number", [errno.EIO, errno.EROFS, errno.EACCES])
+def test_a_name_that_cannot_be_given_leaves_all_as_it_was(
+    way: str, call: str, number: int, tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    for name in ("a.json", "b.csv"):
+        (tmp_path / name).write_text("old")
+    monkeypatch.setattr(os, call, failing(number))
+    with pytest.raises(UpstrokeError, match="cannot be written"):
+        stage((tmp_path / "a.json", b"new"), (tmp_path / "b.csv", b"new"), replace=True)
+    monkeypatch.undo()
+    assert names(tmp_path) == {"a.json", "b.csv"}
+    assert {(tmp_path / name).read_text() for name in ("a.json", "b.csv")} == {"old"}
+
+
+def test_an_interruption_while_names_are_given_takes_them_back(
+    way: str, tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    real, calls = os.link, 0
+
+    def interrupted(*args: Any, **kwargs: Any) -> None:
+        nonlocal calls
+        calls += 1
+        if calls == 2:
+            raise KeyboardInterrupt
+        real(*args, **kwargs)
+
+    monkeypatch.setattr(os, "link", interrupted)
+    with pytest.raises(KeyboardInterrupt):
+        stage((tmp_path / "a.json", b"1"), (tmp_path / "b.csv", b"2"), replace=False)
+    monkeypatch.undo()
+    assert names(tmp_path) == set()
+
+
+@pytest.mark.skipif(not hasattr(os, "O_TMPFILE"), reason="no unnamed files on this system")
+def test_a_file_system_without_unnamed_files_gets_passing_ones(
+    tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    real = os.open
+
+    def without(path: Any, flags: int, *args: Any, **kwargs: Any) -> int:
+        if flags & os.O_TMPFILE == os.O_TMPFILE:
+            raise OSError(errno.EOPNOTSUPP, os.strerror(errno.EOPNOTSUPP))
+        return real(path, flags, *args, **kwargs)
+
+    monkeypatch.setattr(os, "open", without)
+    stage((tmp_path / "a.json", b"1"), (tmp_path / "empty.csv", b""), replace=False)
+    monkeypatch.undo()
+    assert names(tmp_path) == {"a.json", "empty.csv"}
+    assert (tmp_path / "a.json").read_bytes() == b"1"
+
+
+@pytest.mark.skipif(not hasattr(os, "O_TMPFILE"), reason="no unnamed files on this system")
+def test_a_directory_closed_meanwhile_is_told(
+    tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    with StagedFiles(replace=False) as staged:
+        monkeypatch.setattr(os, "open", failing(errno.EACCES))
+        with pytest.raises(UpstrokeError, match="a directory you may write to"):
+            staged.add(tmp_path / "a.json", b"1")
+        monkeypatch.undo()
+    assert names(tmp_path) == set()
 
 
 WRITER = """
