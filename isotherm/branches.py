@@ -31,7 +31,7 @@ PAUSE_SPEED: Final = 0.08  # 1
 UNEVEN: Final = 0.15  # 1
 JITTER: Final = -0.25  # 1
 STRETCH: Final = 16  # rows
-STRETCHES: Final = 256  # looked at, at most twice as many
+STRETCHES: Final = 64  # looked at, at most twice as many
 # MAD of a normal distribution is 0.6745 standard deviations.
 MAD_TO_SIGMA: Final = 1.0 / 0.6745  # 1
 
