@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Sequence
+from functools import partial
 from typing import TYPE_CHECKING, Any
 
 from cli.outputs import OutputPlan, Renderers
@@ -17,7 +18,7 @@ __all__ = ["deliver_one"]
 
 def deliver_one(
     plan: OutputPlan,
-    payload: dict[str, Any] | list[dict[str, Any]],
+    payload: dict[str, Any],
     settings: dict[str, Any],
     *,
     text: Callable[[int], str],
@@ -31,8 +32,8 @@ def deliver_one(
     ----------
     plan : OutputPlan
         Checked outputs.
-    payload : dict or list of dict
-        JSON forms of the result or results.
+    payload : dict
+        JSON form of the result.
     settings : dict
         What the JSON records of the options.
     text : callable
@@ -42,14 +43,12 @@ def deliver_one(
     figure : callable, optional
         Returns the figure.
     pictures : callable, optional
-        Returns the page's own pictures of each result; left out, those its JSON form allows.
+        Returns the page's own pictures of the result; left out, those its JSON form allows.
     """
     from cli.serialise import json_bytes, rows_csv, with_provenance
     from cli.terminal import terminal_width
 
-    def whole() -> dict[str, Any] | list[dict[str, Any]]:
-        if isinstance(payload, list):
-            return [with_provenance(one, settings) for one in payload]
+    def whole() -> dict[str, Any]:
         return with_provenance(payload, settings)
 
     def paged() -> bytes:
@@ -57,23 +56,21 @@ def deliver_one(
         from cli.page_plots import result_pictures
 
         told = whole()
-        results = told if isinstance(told, list) else [told]
-        drawn = [result_pictures(one) for one in results] if pictures is None else pictures()
+        drawn = [result_pictures(told)] if pictures is None else pictures()
         return one_page(told, figure, drawn)
-
-    def drawn(suffix: str) -> bytes:
-        from isotherm.figures_style import figure_bytes
-
-        if figure is None:
-            raise TypeError("this command draws no figure")
-        return figure_bytes(figure(), suffix)
 
     plan.deliver(
         Renderers(
             text=lambda: text(terminal_width()),
             json=lambda: json_bytes(whole()),
             csv=lambda: rows_csv(rows()),
-            figure=drawn,
+            figure=None if figure is None else partial(_drawn, figure),
             report=paged,
         )
     )
+
+
+def _drawn(figure: Callable[[], Figure], suffix: str) -> bytes:
+    from isotherm.figures_style import figure_bytes
+
+    return figure_bytes(figure(), suffix)

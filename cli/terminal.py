@@ -10,7 +10,7 @@ from typing import TextIO
 
 from isotherm.errors import UpstrokeError
 
-__all__ = ["complain", "paint_heading", "printable", "say", "terminal_width", "warn_line"]
+__all__ = ["complain", "paint_heading", "printable", "say", "terminal_width"]
 
 # A table is laid out for 80 columns; wider terminals gain nothing from longer lines.
 WIDEST = 100
@@ -111,8 +111,3 @@ def complain(text: str) -> None:
     line = printable(" ".join(text.split()))
     sys.stderr.write(_fit_encoding(f"upstroke: {line}\n", sys.stderr))
     sys.stderr.flush()
-
-
-def warn_line(text: str) -> None:
-    """Write one warning line to standard error."""
-    complain(f"warning: {text}")

@@ -55,3 +55,11 @@ def test_two_parts_by_the_headers_format() -> None:
     assert clock_seconds(["09:00", "09:01"], where="c", form="hh:mm").tolist() == [32400.0, 32460.0]
     # sixty and more cannot be hours
     assert clock_seconds(["59:00", "61:01"], where="c").tolist() == [3540.0, 3661.0]
+
+
+@pytest.mark.parametrize(
+    ("cell", "hours"),
+    [("12:30:00 AM", 0.5), ("1:00:00 am", 1.0), ("12:30:00 PM", 12.5), ("1:00:00 p.m.", 13.0)],
+)
+def test_halves_of_the_day(cell: str, hours: float) -> None:
+    assert clock_seconds([cell], where="Clock")[0] == 3600.0 * hours
