@@ -58,6 +58,9 @@ class Browser:
             "binary": CHROMIUM,
             "args": [
                 "--headless=new", "--no-sandbox", "--disable-gpu", "--disable-dev-shm-usage",
+                # it asks its maker's servers for news otherwise, and waits where there is no network
+                "--no-first-run", "--disable-background-networking", "--disable-component-update",
+                "--disable-sync", "--disable-quic",
                 f"--window-size={width},{height}",
             ],
         }  # fmt: skip
